@@ -1,0 +1,2 @@
+//! The trusted part.
+pub mod statement;

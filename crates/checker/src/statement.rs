@@ -1,0 +1,203 @@
+//! What is claimed: a system, its known inputs, its start, a keep-out zone, a window and a claim.
+//!
+//! A statement is the engineer's own declaration, over the names that the engineer gave. Nothing in it is
+//! derived: drives are not yet states, outputs are not yet substituted. All numbers are exact rationals.
+
+use num_rational::BigRational;
+
+/// An exact rational number.
+pub type Rational = BigRational;
+
+/// A named quantity that an expression may refer to, by position in the statement's lists.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub enum Variable {
+    /// The state at this position.
+    State(usize),
+    /// The known input at this position.
+    Drive(usize),
+    /// The named expression at this position.
+    Output(usize),
+    /// Time, counted from 0.
+    Time,
+}
+
+/// A state of the system.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct State {
+    /// The engineer's name for it.
+    pub name: String,
+    /// A label for people; no arithmetic is done with it.
+    pub unit: Option<String>,
+    /// Its value at t = 0.
+    pub start: Rational,
+}
+
+/// The periodic factor of one term of a known input.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Wave {
+    /// The factor 1.
+    One,
+    /// cos(w t), w > 0.
+    Cosine(Rational),
+    /// sin(w t), w > 0.
+    Sine(Rational),
+}
+
+/// One term `coefficient * t^power * exp(rate t) * wave` of a known input.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct SignalTerm {
+    /// The constant factor.
+    pub coefficient: Rational,
+    /// The exponent of t.
+    pub power: u32,
+    /// The growth rate, in 1/time.
+    pub rate: Rational,
+    /// The periodic factor.
+    pub wave: Wave,
+}
+
+/// A known input: the sum of its terms, exactly.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Drive {
+    /// The engineer's name for it.
+    pub name: String,
+    /// A label for people.
+    pub unit: Option<String>,
+    /// The terms whose sum the signal is. No term: the zero signal.
+    pub signal: Vec<SignalTerm>,
+}
+
+/// A named polynomial expression in states, drives and time.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Output {
+    /// The engineer's name for it.
+    pub name: String,
+    /// A label for people.
+    pub unit: Option<String>,
+    /// Its value; refers to no output.
+    pub value: Expression,
+}
+
+/// The sum `offset + sum of factor * variable` that a state's time derivative equals.
+#[derive(Clone, Debug, PartialEq, Eq, Default)]
+pub struct Affine {
+    /// Factor and variable (a state or a drive), no variable twice, no factor 0.
+    pub terms: Vec<(Rational, Variable)>,
+    /// The constant.
+    pub offset: Rational,
+}
+
+/// A stretch of time with its own dynamics: one rate for each state, in the order of the states.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Phase {
+    /// The time derivative of each state.
+    pub rates: Vec<Affine>,
+}
+
+/// One term of an [`Expression`].
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Term {
+    /// The factor, not 0.
+    pub coefficient: Rational,
+    /// Variables and their exponents >= 1, in increasing order of variable, none twice.
+    pub powers: Vec<(Variable, u32)>,
+}
+
+/// A polynomial with rational coefficients in the variables of a statement: the sum of its terms.
+#[derive(Clone, Debug, PartialEq, Eq, Default)]
+pub struct Expression {
+    /// The terms; no two with the same powers. None: the zero polynomial.
+    pub terms: Vec<Term>,
+}
+
+/// How an atom's polynomial compares with zero.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
+pub enum Relation {
+    /// p < 0
+    Negative,
+    /// p <= 0
+    NonPositive,
+    /// p = 0
+    Zero,
+    /// p >= 0
+    NonNegative,
+    /// p > 0
+    Positive,
+    /// not (p = 0)
+    NonZero,
+}
+
+/// One comparison of a polynomial with zero.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Atom {
+    /// The polynomial p: left side minus right side, as typed.
+    pub polynomial: Expression,
+    /// How it compares with zero.
+    pub relation: Relation,
+}
+
+/// A zone in negation normal form: `not` has been pushed into the atoms.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Formula {
+    /// A comparison.
+    Atom(Atom),
+    /// All of them hold; of none: true.
+    And(Vec<Formula>),
+    /// One of them holds; of none: false.
+    Or(Vec<Formula>),
+}
+
+/// A keep-out zone and the window of time in which it counts, both ends included.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Zone {
+    /// The engineer's name for it.
+    pub name: String,
+    /// The requirement that it comes from.
+    pub reference: Option<String>,
+    /// The states, drives, outputs and times that are hazardous.
+    pub inside: Formula,
+    /// The first instant that counts, >= 0.
+    pub from: Rational,
+    /// The last instant that counts; `None`: for all time.
+    pub until: Option<Rational>,
+}
+
+/// What is said about the system and the zone.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Claim {
+    /// The trajectory is in the zone at no instant of the window. With a margin m > 0 the zone is a single
+    /// comparison, and the same holds for the zone widened by m: `p >= -m` in place of `p >= 0` or `p > 0`,
+    /// `p <= m` in place of `p <= 0` or `p < 0`, `-m <= p <= m` in place of `p = 0`.
+    Never {
+        /// The margin, >= 0, in the unit of the zone's polynomial.
+        margin: Rational,
+    },
+    /// The trajectory is in the zone at some instant of the window between these two, ends included.
+    Enters {
+        /// Not after the instant.
+        from: Rational,
+        /// Not before the instant.
+        to: Rational,
+        /// Whether the trajectory is also claimed to be outside the zone at all instants of the window before `from`.
+        first: bool,
+    },
+}
+
+/// A claim about a system: what a certificate is evidence for.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Statement {
+    /// The engineer's title of the model.
+    pub title: String,
+    /// The states; at least one.
+    pub states: Vec<State>,
+    /// The known inputs.
+    pub drives: Vec<Drive>,
+    /// The named expressions.
+    pub outputs: Vec<Output>,
+    /// The dynamics, phase after phase; exactly one today.
+    pub phases: Vec<Phase>,
+    /// The keep-out zone.
+    pub zone: Zone,
+    /// The claim.
+    pub claim: Claim,
+}
