@@ -1,0 +1,233 @@
+//! Why a certificate is not accepted.
+
+use crate::number::{Interval, Rational};
+use std::fmt;
+
+/// The proof rules.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Rule {
+    /// Traces and their closed forms.
+    Trace,
+    /// Equality of algebraic numbers.
+    Equality,
+    /// A bounded stretch of time.
+    Cover,
+    /// All times from some instant on.
+    Cone,
+    /// An instant in the zone.
+    Entry,
+}
+
+/// The side conditions of the proof rules: one variant each.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Obligation {
+    /// The roots of a polynomial lie in pairwise disjoint discs, one in each.
+    RootsAreSeparated,
+    /// The product of the factors annihilates the trace.
+    FactorsAnnihilateTrace,
+    /// The closed form of a trace can be enclosed.
+    ClosedFormIsEnclosed,
+    /// A trace is the product that it is said to be.
+    ProductEqualsTrace,
+    /// The sums of the roots of two polynomials are the roots of the product of the listed ones.
+    SumsAreRoots,
+    /// A sum of two roots meets the disc of the named root and no other.
+    SumIsIdentified,
+    /// The polynomial is symmetric about the vertical line, and the root lies on it.
+    RootIsOnLine,
+    /// Two roots have equal real parts.
+    RealPartsAreEqual,
+    /// A root that does not lead has a smaller real part than those that lead.
+    LowerRealPartIsLess,
+    /// The angle of a root is the said integer combination of the base angles.
+    AngleIsCombination,
+    /// A lower term decreases from the cone's start on.
+    LowerTermDecreases,
+    /// A trace has the said sign on the cell.
+    SignOnCell,
+    /// A trace vanishes at t = 0 to the said order.
+    VanishesAtStart,
+    /// A trace has the said sign on the leaf of the torus.
+    SignOnLeaf,
+    /// The signs refute the zone on the cell.
+    ZoneIsRefutedOnCell,
+    /// The signs refute the zone on the leaf of the torus.
+    ZoneIsRefutedOnLeaf,
+    /// The cells cover the window up to the cone, or to the window's end.
+    CellsCoverWindow,
+    /// The bisection of the torus is complete.
+    LeavesCoverTorus,
+    /// The instant lies in the window and in the claimed bracket.
+    InstantIsInWindow,
+    /// The pivot has opposite signs at the two ends.
+    PivotChangesSign,
+    /// The signs prove the zone at the instant.
+    ZoneIsProvedAtInstant,
+    /// The evidence is of the kind that the claim needs.
+    EvidenceFitsClaim,
+}
+
+/// Why a certificate was not accepted.
+#[non_exhaustive]
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Rejection {
+    /// The text is not in the format. Exit status 3.
+    Malformed {
+        /// Where in the text: a path of keys, or a line.
+        place: String,
+        /// What the format has there.
+        expected: &'static str,
+        /// What was found.
+        found: String,
+    },
+    /// The certificate is for another statement. Exit status 3.
+    OtherStatement,
+    /// A limit is exceeded. Exit status 2.
+    LimitExceeded {
+        /// The name of the limit in [`crate::Limits`].
+        limit: &'static str,
+        /// The greatest accepted value.
+        max: u64,
+        /// The value found.
+        found: u64,
+    },
+    /// An obligation of this certificate is exactly false; this says nothing about the plant. Exit status 1.
+    Refuted {
+        /// The rule.
+        rule: Rule,
+        /// The obligation.
+        obligation: Obligation,
+        /// Which of several: the position of the polynomial, trace, cell or leaf.
+        position: usize,
+    },
+    /// The enclosure does not decide the obligation at the certificate's precision. Exit status 2.
+    Inconclusive {
+        /// The rule.
+        rule: Rule,
+        /// The obligation.
+        obligation: Obligation,
+        /// Which of several.
+        position: usize,
+    },
+}
+
+impl Rejection {
+    /// The exit status of `keepout-check`: 1 refuted, 2 inconclusive or beyond a limit, 3 malformed or for another statement.
+    pub fn exit_status(&self) -> u8 {
+        match self {
+            Self::Refuted { .. } => 1,
+            Self::Inconclusive { .. } | Self::LimitExceeded { .. } => 2,
+            Self::Malformed { .. } | Self::OtherStatement => 3,
+        }
+    }
+}
+
+/// One obligation of one rule, for one of its objects: where a check stands.
+#[derive(Clone, Copy, Debug)]
+pub(crate) struct Duty {
+    pub(crate) rule: Rule,
+    pub(crate) obligation: Obligation,
+    pub(crate) position: usize,
+}
+
+impl Duty {
+    pub(crate) fn new(rule: Rule, obligation: Obligation, position: usize) -> Self {
+        Self { rule, obligation, position }
+    }
+
+    pub(crate) fn refuted(self) -> Rejection {
+        Rejection::Refuted { rule: self.rule, obligation: self.obligation, position: self.position }
+    }
+
+    pub(crate) fn inconclusive(self) -> Rejection {
+        Rejection::Inconclusive { rule: self.rule, obligation: self.obligation, position: self.position }
+    }
+
+    /// Refutes the certificate unless the condition, which is decided exactly, holds.
+    pub(crate) fn ensure(self, condition: bool) -> Result<(), Rejection> {
+        if condition { Ok(()) } else { Err(self.refuted()) }
+    }
+
+    /// Leaves the certificate undecided unless the condition, which enclosures decide, holds.
+    pub(crate) fn decide(self, condition: bool) -> Result<(), Rejection> {
+        if condition { Ok(()) } else { Err(self.inconclusive()) }
+    }
+
+    /// Requires that all members of the enclosure have this sign.
+    pub(crate) fn sign(self, value: &Interval, wanted: std::cmp::Ordering) -> Result<(), Rejection> {
+        match value.certain_sign() {
+            Some(sign) if sign == wanted => Ok(()),
+            Some(_) => Err(self.refuted()),
+            None => Err(self.inconclusive()),
+        }
+    }
+}
+
+impl fmt::Display for Rule {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(match self {
+            Self::Trace => "trace",
+            Self::Equality => "equality",
+            Self::Cover => "cover",
+            Self::Cone => "cone",
+            Self::Entry => "entry",
+        })
+    }
+}
+
+impl fmt::Display for Obligation {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        f.write_str(match self {
+            Self::RootsAreSeparated => "the roots of polynomial {} lie one each in disjoint discs",
+            Self::FactorsAnnihilateTrace => "the listed factors annihilate trace {}",
+            Self::ClosedFormIsEnclosed => "the closed form of trace {} can be enclosed",
+            Self::ProductEqualsTrace => "product {} equals its trace",
+            Self::SumsAreRoots => "sum {}: the sums of the roots are the roots of the listed polynomials",
+            Self::SumIsIdentified => "sum {} meets the disc of the named root alone",
+            Self::RootIsOnLine => "root {} lies on the named vertical line",
+            Self::RealPartsAreEqual => "the leading roots of trace {} have equal real parts",
+            Self::LowerRealPartIsLess => "the other roots of trace {} have smaller real parts than the leading ones",
+            Self::AngleIsCombination => "the angle of root {} is the listed combination",
+            Self::LowerTermDecreases => "the lower terms of trace {} decrease from the start of the cone on",
+            Self::SignOnCell => "the listed signs hold on cell {}",
+            Self::VanishesAtStart => "the listed derivatives vanish at t = 0 on cell {}",
+            Self::SignOnLeaf => "the listed signs hold on leaf {}",
+            Self::ZoneIsRefutedOnCell => "the signs refute the zone on cell {}",
+            Self::ZoneIsRefutedOnLeaf => "the signs refute the zone on leaf {}",
+            Self::CellsCoverWindow => "the cells increase and cover the window (cell {})",
+            Self::LeavesCoverTorus => "the bisection of the torus is complete (node {})",
+            Self::InstantIsInWindow => "the instant lies in the window and in the claimed bracket",
+            Self::PivotChangesSign => "pivot {} has opposite signs at the ends",
+            Self::ZoneIsProvedAtInstant => "the signs prove the zone at the instant",
+            Self::EvidenceFitsClaim => "the evidence is of the kind that the claim needs",
+        })
+    }
+}
+
+impl fmt::Display for Rejection {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let duty = |obligation: &Obligation, position: &usize| obligation.to_string().replace("{}", &position.to_string());
+        match self {
+            Self::Malformed { place, expected, found } => write!(f, "at {place}: expected {expected}, found {found}"),
+            Self::OtherStatement => f.write_str("the certificate embeds another statement"),
+            Self::LimitExceeded { limit, max, found } => write!(f, "limit {limit}: at most {max}, found {found}"),
+            Self::Refuted { rule, obligation, position } => write!(
+                f,
+                "rule {rule}: not so: {}; the certificate is wrong, which says nothing about the plant",
+                duty(obligation, position)
+            ),
+            Self::Inconclusive { rule, obligation, position } => write!(
+                f,
+                "rule {rule}: not decided at the certificate's precision: {}",
+                duty(obligation, position)
+            ),
+        }
+    }
+}
+
+impl std::error::Error for Rejection {}
+
+/// Prints a rational the way the formats do: `p` or `p/q`.
+pub fn rational_text(value: &Rational) -> String {
+    value.to_string()
+}
