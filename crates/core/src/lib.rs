@@ -1,1 +1,20 @@
-//! Exact structure.
+//! The exact structure of exp(At) for a rational matrix A.
+//!
+//! Everything a certificate search needs to know about a linear system is here, exactly or by rigorous enclosure: integer
+//! polynomials and their factors, characteristic polynomials, root discs, order and equality of real parts, linear recurrences,
+//! matrix exponentials, and the ring of exponential polynomials. Floating-point numbers occur only in `approx` modules, in functions whose
+//! names start with `approx_`; what they return is a proposal that is proved before it is used.
+
+pub mod characteristic;
+mod error;
+pub mod integer_polynomial;
+pub mod linear_recurrence;
+pub mod matrix;
+mod modular;
+mod modular_polynomial;
+
+pub use characteristic::{characteristic_polynomial, minimal_polynomial_at};
+pub use error::CoreError;
+pub use integer_polynomial::IntegerPolynomial;
+pub use linear_recurrence::minimal_annihilator;
+pub use matrix::{IntegerMatrix, RationalMatrix};
