@@ -7,7 +7,9 @@
 
 pub mod characteristic;
 mod error;
+pub mod factor;
 pub mod integer_polynomial;
+pub mod lattice;
 pub mod linear_recurrence;
 pub mod matrix;
 mod modular;
@@ -15,6 +17,7 @@ mod modular_polynomial;
 
 pub use characteristic::{characteristic_polynomial, minimal_polynomial_at};
 pub use error::CoreError;
+pub use factor::{Factor, Factorization, Irreducibility, factorize};
 pub use integer_polynomial::IntegerPolynomial;
 pub use linear_recurrence::minimal_annihilator;
 pub use matrix::{IntegerMatrix, RationalMatrix};

@@ -21,12 +21,6 @@ pub(crate) fn sub(f: &Field, a: &[u64], b: &[u64]) -> Residues {
     trim((0..length).map(|i| f.sub(at(a, i), at(b, i))).collect())
 }
 
-pub(crate) fn add(f: &Field, a: &[u64], b: &[u64]) -> Residues {
-    let length = a.len().max(b.len());
-    let at = |s: &[u64], i: usize| s.get(i).copied().unwrap_or(0);
-    trim((0..length).map(|i| f.add(at(a, i), at(b, i))).collect())
-}
-
 pub(crate) fn mul(f: &Field, a: &[u64], b: &[u64]) -> Residues {
     if a.is_empty() || b.is_empty() {
         return Vec::new();
