@@ -1,8 +1,35 @@
-//! The trusted part.
+//! The trusted part of Keepout.
+//!
+//! **Promise.** If [`check`] returns a [`Verified`], then the claim of its statement is true: of the one solution of the
+//! statement's differential equation that has the statement's start, driven by exactly the statement's known inputs. The exact
+//! meaning of a claim stands at [`statement::Claim`].
+//!
+//! **Assumptions.** That the lines of this crate do what their comments say; that `num-bigint`, `num-integer`,
+//! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
+//! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
+//!
+//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `lead`, `sequence`, `formula`, `number/`.
+
+pub use check::{Verified, check};
+pub use error::Rejection;
+pub use limits::Limits;
+
+pub mod certificate;
+pub mod error;
+pub mod formula;
+pub mod json;
+pub mod lead;
+pub mod limits;
+pub mod model;
 pub mod number;
 pub mod polynomial;
+pub mod root;
+pub mod sequence;
 pub mod statement;
-pub mod error;
-pub mod json;
-pub mod limits;
-pub use limits::Limits;
+pub mod trace;
+
+mod certificate_text;
+mod check;
+mod field;
+mod rules;
+mod statement_text;

@@ -25,6 +25,8 @@ pub struct Limits {
     pub order: u64,
     /// Cells of a cover.
     pub cells: u64,
+    /// Splits above one leaf of a torus bisection.
+    pub depth: u64,
     /// Nodes of a torus bisection.
     pub nodes: u64,
     /// Base frequencies of a torus.
@@ -48,6 +50,7 @@ impl Default for Limits {
             bits: 20_000,
             order: 400,
             cells: 200_000,
+            depth: 200,
             nodes: 400_000,
             dimension: 8,
             multiplier_bits: 16,

@@ -1,0 +1,195 @@
+//! Evidence for a statement: everything that the checker would otherwise have to search for.
+//!
+//! A certificate is data. Nothing in it is trusted; each field is either an input to a computation whose result is then
+//! checked, or it is confirmed by one. Positions (`usize`) refer to the certificate's own lists.
+
+use crate::number::{Dyadic, Rational};
+use crate::polynomial::Polynomial;
+use crate::statement::Statement;
+use std::cmp::Ordering;
+
+/// A square-free monic polynomial, and an approximation of each of its roots with imaginary part >= 0.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct RootFamily {
+    /// The polynomial, monic.
+    pub polynomial: Polynomial,
+    /// Real and imaginary parts of the approximations; imaginary part 0 for the real roots. The conjugates are understood.
+    pub centres: Vec<(Dyadic, Dyadic)>,
+}
+
+/// A root: a position in the list of all centres of all families, in order; or the conjugate of that root.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, PartialOrd, Ord, Hash)]
+pub struct RootRef {
+    /// The position.
+    pub index: usize,
+    /// Whether the conjugate is meant.
+    pub conjugate: bool,
+}
+
+/// A family and the multiplicity of each of its roots.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Factor {
+    /// The position of the family.
+    pub family: usize,
+    /// The multiplicity, >= 1.
+    pub multiplicity: u32,
+}
+
+/// A function given by an annihilator (the product of the factors) and its first derivatives at 0.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Auxiliary {
+    /// The annihilator's factors.
+    pub factors: Vec<Factor>,
+    /// As many derivatives at 0 as the annihilator's degree.
+    pub derivatives: Vec<Rational>,
+}
+
+/// The identity `trace = pivot^power * cofactor`.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Product {
+    /// The position of the trace.
+    pub trace: usize,
+    /// The position of the auxiliary function that is raised to the power.
+    pub pivot: usize,
+    /// The power, >= 1.
+    pub power: u32,
+    /// The position of the auxiliary function that remains.
+    pub cofactor: usize,
+}
+
+/// The fact `root = sum of multiplier * part`, with one or two parts.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Sum {
+    /// The root that the sum is.
+    pub root: RootRef,
+    /// Multipliers and roots.
+    pub parts: Vec<(i64, RootRef)>,
+    /// The families whose roots, with multiplicity, are all sums of this kind.
+    pub factors: Vec<Factor>,
+}
+
+/// A sign of a trace: `Less` negative, `Equal` zero, `Greater` positive.
+pub type Sign = Ordering;
+
+/// How the signs on a cell depend on the sign of one function, the pivot.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Pivot {
+    /// They do not.
+    None,
+    /// The pivot is t, on a cell that starts at 0: `(trace, power, sign)` says that the trace vanishes at 0 to the order
+    /// `power`, and that trace / t^power has the sign on the cell.
+    Start(Vec<(usize, u32, Sign)>),
+    /// The pivot is the auxiliary function at this position: `(product, sign)` says that the cofactor of the product has
+    /// the sign on the cell.
+    Auxiliary(usize, Vec<(usize, Sign)>),
+}
+
+/// A closed stretch of time and the signs of traces on it. It begins where the cell before it ends.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Cell {
+    /// The end.
+    pub to: Rational,
+    /// The number of Taylor terms, >= 1.
+    pub order: u32,
+    /// Traces and their signs on the whole cell.
+    pub signs: Vec<(usize, Sign)>,
+    /// The signs that depend on a pivot.
+    pub pivot: Pivot,
+}
+
+/// A step of a bisection in preorder.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Node {
+    /// The box is halved along this axis; the lower half follows, then the upper half.
+    Split(usize),
+    /// The box is not split: traces and their signs on it, for all times from the cone's start on.
+    Leaf(Vec<(usize, Sign)>),
+}
+
+/// Why the leading roots of a trace have equal real parts.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum RealPart {
+    /// They lie on the vertical line through this rational number.
+    Line(Rational),
+    /// For each leading root r, the sum at the given position says `double = r + conj r` with one and the same root `double`.
+    Doubled(Vec<usize>),
+    /// There is one leading root up to conjugation.
+    Single,
+}
+
+/// The leading terms of one trace.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Lead {
+    /// The leading roots (positions of listed centres; conjugates are understood).
+    pub roots: Vec<usize>,
+    /// Why their real parts are equal.
+    pub real_part: RealPart,
+}
+
+/// The angle of a root as an integer combination of base angles.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Angle {
+    /// The position of the root.
+    pub root: usize,
+    /// One integer for each base root.
+    pub turns: Vec<i64>,
+    /// The position of the sum that shows it; `None` for a base root.
+    pub sum: Option<usize>,
+}
+
+/// Signs for all times from `from` on.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Cone {
+    /// The cone's start, > 0.
+    pub from: Rational,
+    /// The base roots: their imaginary parts are the base frequencies of the torus.
+    pub base: Vec<usize>,
+    /// The angles of the leading roots that are not real; each refers to sums of roots that stand before it.
+    pub angles: Vec<Angle>,
+    /// For each trace its leading terms; `None`: no sign of this trace is used.
+    pub leads: Vec<Option<Lead>>,
+    /// The bisection of the torus.
+    pub nodes: Vec<Node>,
+}
+
+/// The kind of evidence.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub enum Evidence {
+    /// For `never`: cells from the window's start to the cone's start or the window's end; the cone where there is no end.
+    Never {
+        /// The cells.
+        cells: Vec<Cell>,
+        /// The far field.
+        cone: Option<Cone>,
+    },
+    /// For `enters`: cells from the window's start to the bracket where the claim is about the first entry; then the instant.
+    Enters {
+        /// The cells before the bracket.
+        before: Vec<Cell>,
+        /// The start of the cell in which the zone is entered.
+        from: Rational,
+        /// That cell: with `to` = `from` an instant; with a pivot the instant at which the pivot changes its sign.
+        cell: Cell,
+    },
+}
+
+/// Evidence for one statement.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Certificate {
+    /// The statement that the evidence is for.
+    pub statement: Statement,
+    /// Mantissa bits of all enclosures.
+    pub bits: u32,
+    /// Roots of polynomials; all roots of all families are distinct.
+    pub families: Vec<RootFamily>,
+    /// For each distinct polynomial of the (widened) zone, in order of appearance: the factors of an annihilator.
+    pub traces: Vec<Vec<Factor>>,
+    /// Further functions.
+    pub auxiliaries: Vec<Auxiliary>,
+    /// Identities between traces and auxiliary functions.
+    pub products: Vec<Product>,
+    /// Relations among roots.
+    pub sums: Vec<Sum>,
+    /// The evidence.
+    pub evidence: Evidence,
+}

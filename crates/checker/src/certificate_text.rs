@@ -1,0 +1,381 @@
+//! Certificates as JSON: reading with all its refusals, and writing.
+
+use crate::certificate::{
+    Angle, Auxiliary, Cell, Certificate, Cone, Evidence, Factor, Lead, Node, Pivot, Product, RealPart, RootFamily,
+    RootRef, Sign, Sum,
+};
+use crate::error::Rejection;
+use crate::field::{Field, dyadic_text};
+use crate::json::Value;
+use crate::limits::{Limits, within};
+use crate::number::Rational;
+use crate::polynomial::Polynomial;
+use crate::statement_text::read_statement;
+use std::cmp::Ordering;
+
+/// The `format` of a certificate.
+pub(crate) const CERTIFICATE_FORMAT: &str = "keepout-certificate/1";
+
+const SIGNS: [(char, Sign); 3] = [('-', Ordering::Less), ('0', Ordering::Equal), ('+', Ordering::Greater)];
+
+impl Certificate {
+    /// Reads a certificate from its JSON text.
+    ///
+    /// # Errors
+    /// [`Rejection::Malformed`] with the place, or [`Rejection::LimitExceeded`].
+    pub fn from_json(text: &str, limits: &Limits) -> Result<Self, Rejection> {
+        read_certificate(&Field::root(&crate::json::read(text, limits)?, limits))
+    }
+
+    /// The certificate as a JSON value.
+    pub fn to_json(&self) -> Value {
+        object(vec![
+            ("format", Value::text(CERTIFICATE_FORMAT)),
+            ("statement", self.statement.to_json()),
+            ("bits", Value::text(self.bits)),
+            ("families", list(&self.families, write_family)),
+            ("traces", list(&self.traces, |factors| list(factors, write_factor))),
+            ("auxiliaries", list(&self.auxiliaries, write_auxiliary)),
+            ("products", list(&self.products, write_product)),
+            ("sums", list(&self.sums, write_sum)),
+            ("evidence", write_evidence(&self.evidence)),
+        ])
+    }
+}
+
+fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
+    field.only(
+        &["format", "statement", "bits", "families", "traces", "auxiliaries", "products", "sums", "evidence"],
+        "a certificate: format, statement, bits, families, traces, auxiliaries, products, sums, evidence",
+    )?;
+    let format = field.get("format")?;
+    if format.text()? != CERTIFICATE_FORMAT {
+        return Err(format.refuse("\"keepout-certificate/1\""));
+    }
+    let bits = field.get("bits")?.count()?;
+    within("bits", usize::try_from(bits).unwrap_or(usize::MAX), field.limits().bits)?;
+    if bits < 2 {
+        return Err(field.get("bits")?.refuse("at least 2 bits"));
+    }
+    let families = bounded(&field.get("families")?, "roots", field.limits().roots)?.each(read_family)?;
+    let roots = families.iter().map(|f| f.centres.len()).sum();
+    within("roots", roots, field.limits().roots)?;
+    let factors = |f: &Field| bounded(f, "roots", f.limits().roots)?.each(|f| read_factor(f, families.len()));
+    let lists = |key| bounded(&field.get(key)?, "statement_entries", field.limits().statement_entries);
+    let traces = lists("traces")?.each(factors)?;
+    let auxiliaries = lists("auxiliaries")?.each(|f| {
+        f.only(&["factors", "derivatives"], "an auxiliary function: factors, derivatives")?;
+        let derivatives = bounded(&f.get("derivatives")?, "roots", f.limits().roots)?.each(Field::rational)?;
+        Ok(Auxiliary { factors: factors(&f.get("factors")?)?, derivatives })
+    })?;
+    let products = lists("products")?.each(|f| read_product(f, traces.len(), auxiliaries.len()))?;
+    let sums = lists("sums")?.each(|f| {
+        f.only(&["root", "parts", "factors"], "a sum: root, parts, factors")?;
+        let parts = f.get("parts")?.each(|part| {
+            part.only(&["times", "root"], "a part: times, root")?;
+            Ok((read_integer(&part.get("times")?)?, read_root(&part.get("root")?, roots)?))
+        })?;
+        if parts.is_empty() || parts.len() > 2 {
+            return Err(f.get("parts")?.refuse("one or two parts"));
+        }
+        Ok(Sum { root: read_root(&f.get("root")?, roots)?, parts, factors: factors(&f.get("factors")?)? })
+    })?;
+    let counts = Counts { traces: traces.len(), roots, sums: sums.len(), products: products.len(), auxiliaries: auxiliaries.len() };
+    Ok(Certificate {
+        statement: read_statement(&field.get("statement")?)?,
+        evidence: read_evidence(&field.get("evidence")?, &counts)?,
+        bits,
+        families,
+        traces,
+        auxiliaries,
+        products,
+        sums,
+    })
+}
+
+/// The lengths of the lists that positions refer to.
+struct Counts {
+    traces: usize,
+    roots: usize,
+    sums: usize,
+    products: usize,
+    auxiliaries: usize,
+}
+
+fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
+    within(limit, field.list()?.len(), max)?;
+    Ok(Field::clone(field))
+}
+
+fn read_integer(field: &Field) -> Result<i64, Rejection> {
+    let value: i64 = field.text()?.parse().map_err(|_| field.refuse("a small integer"))?;
+    let bits = usize::try_from(u64::BITS - value.unsigned_abs().leading_zeros()).unwrap_or(usize::MAX);
+    within("multiplier_bits", bits, field.limits().multiplier_bits)?;
+    Ok(value)
+}
+
+fn read_family(field: &Field) -> Result<RootFamily, Rejection> {
+    field.only(&["polynomial", "centres"], "a family: polynomial, centres")?;
+    let coefficients = bounded(&field.get("polynomial")?, "roots", field.limits().roots + 1)?.each(Field::rational)?;
+    let polynomial = Polynomial::new(coefficients);
+    if !polynomial.is_monic() || polynomial.degree() == 0 {
+        return Err(field.get("polynomial")?.refuse("the coefficients of a monic polynomial, constant term first"));
+    }
+    let centres = bounded(&field.get("centres")?, "roots", field.limits().roots)?.each(|f| {
+        f.only(&["re", "im"], "a centre: re, im")?;
+        let (re, im) = (f.get("re")?.dyadic()?, f.get("im")?.dyadic()?);
+        if im.sign() == Ordering::Less { Err(f.refuse("an imaginary part >= 0")) } else { Ok((re, im)) }
+    })?;
+    let roots: usize = centres.iter().map(|(_, im)| if im.sign() == Ordering::Equal { 1 } else { 2 }).sum();
+    if roots != polynomial.degree() {
+        return Err(field.get("centres")?.refuse("as many roots as the degree, each conjugate pair once"));
+    }
+    Ok(RootFamily { polynomial, centres })
+}
+
+fn read_factor(field: &Field, families: usize) -> Result<Factor, Rejection> {
+    field.only(&["family", "multiplicity"], "a factor: family, multiplicity")?;
+    let multiplicity = field.get("multiplicity")?.count()?;
+    within("roots", usize::try_from(multiplicity).unwrap_or(usize::MAX), field.limits().roots)?;
+    if multiplicity == 0 {
+        return Err(field.get("multiplicity")?.refuse("at least 1"));
+    }
+    Ok(Factor { family: field.get("family")?.position(families)?, multiplicity })
+}
+
+fn read_product(field: &Field, traces: usize, auxiliaries: usize) -> Result<Product, Rejection> {
+    field.only(&["trace", "pivot", "power", "cofactor"], "a product: trace, pivot, power, cofactor")?;
+    let power = field.get("power")?.count()?;
+    within("degree", usize::try_from(power).unwrap_or(usize::MAX), field.limits().degree)?;
+    Ok(Product {
+        trace: field.get("trace")?.position(traces)?,
+        pivot: field.get("pivot")?.position(auxiliaries)?,
+        power: if power == 0 { Err(field.refuse("a power >= 1"))? } else { power },
+        cofactor: field.get("cofactor")?.position(auxiliaries)?,
+    })
+}
+
+/// `K` or `K*` for the conjugate.
+fn read_root(field: &Field, roots: usize) -> Result<RootRef, Rejection> {
+    let text = field.text()?;
+    let plain = text.strip_suffix('*');
+    let index = plain.unwrap_or(text).parse::<usize>().ok().filter(|i| *i < roots);
+    let index = index.ok_or_else(|| field.refuse("the position of a root, with * for its conjugate"))?;
+    Ok(RootRef { index, conjugate: plain.is_some() })
+}
+
+fn read_sign(field: &Field, symbol: &str) -> Result<Sign, Rejection> {
+    let found = SIGNS.iter().find(|(c, _)| symbol.len() == 1 && symbol.starts_with(*c));
+    found.map(|(_, sign)| *sign).ok_or_else(|| field.refuse("one of - 0 +"))
+}
+
+/// `K:S`, S one of - 0 +.
+fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection> {
+    let expected = "\"K:S\", K a position in a list above, S one of - 0 +";
+    let (position, symbol) = field.text()?.split_once(':').ok_or_else(|| field.refuse(expected))?;
+    let position = position.parse::<usize>().ok().filter(|p| *p < length).ok_or_else(|| field.refuse(expected))?;
+    Ok((position, read_sign(field, symbol)?))
+}
+
+fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
+    field.only(&["to", "order", "signs", "start", "pivot", "cofactors"], "a cell: to, order, signs; start, or pivot and cofactors")?;
+    let order = field.get("order")?.count()?;
+    within("order", usize::try_from(order).unwrap_or(usize::MAX), field.limits().order)?;
+    let pivot = match (field.optional("start"), field.optional("pivot")) {
+        (None, None) => Pivot::None,
+        (Some(start), None) => Pivot::Start(start.each(|f| {
+            f.only(&["sign", "power"], "a trace that vanishes at the start: sign, power")?;
+            let (trace, sign) = read_signed(&f.get("sign")?, counts.traces)?;
+            let power = f.get("power")?.count()?;
+            within("order", usize::try_from(power).unwrap_or(usize::MAX), f.limits().order)?;
+            Ok((trace, power, sign))
+        })?),
+        (None, Some(pivot)) => Pivot::Auxiliary(
+            pivot.position(counts.auxiliaries)?,
+            field.get("cofactors")?.each(|f| read_signed(f, counts.products))?,
+        ),
+        (Some(_), Some(_)) => return Err(field.refuse("start or pivot, not both")),
+    };
+    let signs = field.get("signs")?.each(|f| read_signed(f, counts.traces))?;
+    if order == 0 {
+        return Err(field.get("order")?.refuse("at least 1"));
+    }
+    Ok(Cell { to: field.get("to")?.rational()?, order, signs, pivot })
+}
+
+fn read_cells(field: &Field, counts: &Counts) -> Result<Vec<Cell>, Rejection> {
+    bounded(field, "cells", field.limits().cells)?.each(|f| read_cell(f, counts))
+}
+
+fn read_lead(field: &Field, counts: &Counts) -> Result<Option<Lead>, Rejection> {
+    if matches!(field.value(), Value::Bool(false)) {
+        return Ok(None);
+    }
+    field.only(&["roots", "line", "doubled"], "false, or a lead: roots, line or doubled")?;
+    let real_part = match (field.optional("line"), field.optional("doubled")) {
+        (None, None) => RealPart::Single,
+        (Some(line), None) => RealPart::Line(line.rational()?),
+        (None, Some(doubled)) => RealPart::Doubled(doubled.each(|f| f.position(counts.sums))?),
+        (Some(_), Some(_)) => return Err(field.refuse("line or doubled, not both")),
+    };
+    Ok(Some(Lead { roots: field.get("roots")?.each(|f| f.position(counts.roots))?, real_part }))
+}
+
+fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
+    field.only(&["from", "base", "angles", "leads", "nodes"], "a cone: from, base, angles, leads, nodes")?;
+    let base = bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
+    let angles = bounded(&field.get("angles")?, "roots", field.limits().roots)?.each(|f| {
+        f.only(&["root", "turns", "sum"], "an angle: root, turns, sum")?;
+        Ok(Angle {
+            root: f.get("root")?.position(counts.roots)?,
+            turns: bounded(&f.get("turns")?, "dimension", f.limits().dimension)?.each(read_integer)?,
+            sum: f.optional("sum").map(|s| s.position(counts.sums)).transpose()?,
+        })
+    })?;
+    let nodes = bounded(&field.get("nodes")?, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
+        Some(axis) => {
+            f.only(&["split"], "one key")?;
+            Ok(Node::Split(axis.position(base.len())?))
+        }
+        None => Ok(Node::Leaf(f.each(|s| read_signed(s, counts.traces))?)),
+    })?;
+    let leads = field.get("leads")?.each(|f| read_lead(f, counts))?;
+    if leads.len() != counts.traces {
+        return Err(field.get("leads")?.refuse("one entry for each trace"));
+    }
+    Ok(Cone { from: field.get("from")?.rational()?, base, angles, leads, nodes })
+}
+
+fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> {
+    if let Some(never) = field.optional("never") {
+        field.only(&["never"], "one key")?;
+        never.only(&["cells", "cone"], "evidence for never: cells, cone")?;
+        let cone = never.optional("cone").map(|f| read_cone(&f, counts)).transpose()?;
+        return Ok(Evidence::Never { cells: read_cells(&never.get("cells")?, counts)?, cone });
+    }
+    field.only(&["enters"], "evidence: never or enters")?;
+    let enters = field.get("enters")?;
+    enters.only(&["before", "from", "cell"], "evidence for enters: before, from, cell")?;
+    Ok(Evidence::Enters {
+        before: read_cells(&enters.get("before")?, counts)?,
+        from: enters.get("from")?.rational()?,
+        cell: read_cell(&enters.get("cell")?, counts)?,
+    })
+}
+
+fn object(fields: Vec<(&str, Value)>) -> Value {
+    Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
+}
+
+fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
+    Value::List(items.iter().map(write).collect())
+}
+
+fn number(value: &Rational) -> Value {
+    Value::text(value)
+}
+
+fn write_family(family: &RootFamily) -> Value {
+    let centre = |(re, im): &(_, _)| object(vec![("re", Value::text(dyadic_text(re))), ("im", Value::text(dyadic_text(im)))]);
+    object(vec![
+        ("polynomial", list(family.polynomial.coefficients(), number)),
+        ("centres", list(&family.centres, centre)),
+    ])
+}
+
+fn write_factor(factor: &Factor) -> Value {
+    object(vec![("family", Value::text(factor.family)), ("multiplicity", Value::text(factor.multiplicity))])
+}
+
+fn write_auxiliary(auxiliary: &Auxiliary) -> Value {
+    object(vec![
+        ("factors", list(&auxiliary.factors, write_factor)),
+        ("derivatives", list(&auxiliary.derivatives, number)),
+    ])
+}
+
+fn write_product(product: &Product) -> Value {
+    object(vec![
+        ("trace", Value::text(product.trace)),
+        ("pivot", Value::text(product.pivot)),
+        ("power", Value::text(product.power)),
+        ("cofactor", Value::text(product.cofactor)),
+    ])
+}
+
+fn write_root(root: RootRef) -> Value {
+    Value::Text(format!("{}{}", root.index, if root.conjugate { "*" } else { "" }))
+}
+
+fn write_sum(sum: &Sum) -> Value {
+    let part = |(times, root): &(i64, RootRef)| object(vec![("times", Value::text(times)), ("root", write_root(*root))]);
+    object(vec![
+        ("root", write_root(sum.root)),
+        ("parts", list(&sum.parts, part)),
+        ("factors", list(&sum.factors, write_factor)),
+    ])
+}
+
+fn write_signed(position: usize, sign: Sign) -> Value {
+    let symbol = SIGNS.iter().find(|(_, s)| *s == sign).map_or('?', |(c, _)| *c);
+    Value::Text(format!("{position}:{symbol}"))
+}
+
+fn write_cell(cell: &Cell) -> Value {
+    let signs = |signs: &[(usize, Sign)]| list(signs, |(position, sign)| write_signed(*position, *sign));
+    let mut fields = vec![("to", number(&cell.to)), ("order", Value::text(cell.order)), ("signs", signs(&cell.signs))];
+    match &cell.pivot {
+        Pivot::None => {}
+        Pivot::Start(start) => fields.push(("start", list(start, |(trace, power, sign)| {
+            object(vec![("sign", write_signed(*trace, *sign)), ("power", Value::text(power))])
+        }))),
+        Pivot::Auxiliary(pivot, cofactors) => {
+            fields.push(("pivot", Value::text(pivot)));
+            fields.push(("cofactors", signs(cofactors)));
+        }
+    }
+    object(fields)
+}
+
+fn write_cone(cone: &Cone) -> Value {
+    let angle = |angle: &Angle| {
+        let mut fields = vec![("root", Value::text(angle.root)), ("turns", list(&angle.turns, |n| Value::text(n)))];
+        fields.extend(angle.sum.map(|sum| ("sum", Value::text(sum))));
+        object(fields)
+    };
+    let lead = |lead: &Option<Lead>| {
+        let Some(lead) = lead else { return Value::Bool(false) };
+        let mut fields = vec![("roots", list(&lead.roots, |r| Value::text(r)))];
+        match &lead.real_part {
+            RealPart::Single => {}
+            RealPart::Line(line) => fields.push(("line", number(line))),
+            RealPart::Doubled(sums) => fields.push(("doubled", list(sums, |s| Value::text(s)))),
+        }
+        object(fields)
+    };
+    let node = |node: &Node| match node {
+        Node::Split(axis) => object(vec![("split", Value::text(axis))]),
+        Node::Leaf(signs) => list(signs, |(position, sign)| write_signed(*position, *sign)),
+    };
+    object(vec![
+        ("from", number(&cone.from)),
+        ("base", list(&cone.base, |b| Value::text(b))),
+        ("angles", list(&cone.angles, angle)),
+        ("leads", list(&cone.leads, lead)),
+        ("nodes", list(&cone.nodes, node)),
+    ])
+}
+
+fn write_evidence(evidence: &Evidence) -> Value {
+    match evidence {
+        Evidence::Never { cells, cone } => {
+            let mut fields = vec![("cells", list(cells, write_cell))];
+            fields.extend(cone.as_ref().map(|c| ("cone", write_cone(c))));
+            object(vec![("never", object(fields))])
+        }
+        Evidence::Enters { before, from, cell } => {
+            let fields = vec![("before", list(before, write_cell)), ("from", number(from)), ("cell", write_cell(cell))];
+            object(vec![("enters", object(fields))])
+        }
+    }
+}

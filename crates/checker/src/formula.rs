@@ -1,0 +1,119 @@
+//! Zones with unknown signs: three-valued evaluation of a formula in negation normal form.
+
+use crate::certificate::Sign;
+use crate::statement::{Atom, Claim, Expression, Formula, Rational, Relation, Statement, Term};
+use num_traits::{Signed, Zero};
+use std::cmp::Ordering;
+
+/// A formula whose atoms refer to traces by position.
+#[derive(Clone, Debug, PartialEq, Eq)]
+enum Shape {
+    Atom(usize, Relation),
+    And(Vec<Shape>),
+    Or(Vec<Shape>),
+}
+
+/// A formula, and the distinct polynomials of its atoms in order of first appearance.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct IndexedFormula {
+    shape: Shape,
+    /// The polynomials.
+    pub polynomials: Vec<Expression>,
+}
+
+impl IndexedFormula {
+    /// Numbers the distinct polynomials of a formula.
+    pub fn new(formula: &Formula) -> Self {
+        let mut polynomials = Vec::new();
+        let shape = number(formula, &mut polynomials);
+        Self { shape, polynomials }
+    }
+
+    /// The truth of the formula where it follows from the known signs alone; `None`: it does not.
+    ///
+    /// Lemma: in a formula without negation, a part whose truth is known to be true (false) whatever the unknown atoms are
+    /// decides as in Kleene's strong three-valued logic; the value is right for each assignment of the unknown atoms.
+    pub fn truth(&self, signs: &[Option<Sign>]) -> Option<bool> {
+        truth(&self.shape, signs)
+    }
+}
+
+fn number(formula: &Formula, polynomials: &mut Vec<Expression>) -> Shape {
+    match formula {
+        Formula::Atom(Atom { polynomial, relation }) => {
+            let known = polynomials.iter().position(|p| p == polynomial);
+            let index = known.unwrap_or_else(|| {
+                polynomials.push(polynomial.clone());
+                polynomials.len() - 1
+            });
+            Shape::Atom(index, *relation)
+        }
+        Formula::And(parts) => Shape::And(parts.iter().map(|p| number(p, polynomials)).collect()),
+        Formula::Or(parts) => Shape::Or(parts.iter().map(|p| number(p, polynomials)).collect()),
+    }
+}
+
+fn truth(shape: &Shape, signs: &[Option<Sign>]) -> Option<bool> {
+    match shape {
+        Shape::Atom(index, relation) => Some(holds(*relation, (*signs.get(*index)?)?)),
+        Shape::And(parts) => combine(parts, signs, false),
+        Shape::Or(parts) => combine(parts, signs, true),
+    }
+}
+
+/// `decisive` if one part has that truth, its opposite if all parts have the opposite.
+fn combine(parts: &[Shape], signs: &[Option<Sign>], decisive: bool) -> Option<bool> {
+    let mut all_known = true;
+    for part in parts {
+        match truth(part, signs) {
+            Some(value) if value == decisive => return Some(decisive),
+            Some(_) => {}
+            None => all_known = false,
+        }
+    }
+    all_known.then_some(!decisive)
+}
+
+/// Whether a number of this sign is in the relation to 0.
+pub fn holds(relation: Relation, sign: Sign) -> bool {
+    match relation {
+        Relation::Negative => sign == Ordering::Less,
+        Relation::NonPositive => sign != Ordering::Greater,
+        Relation::Zero => sign == Ordering::Equal,
+        Relation::NonNegative => sign != Ordering::Less,
+        Relation::Positive => sign == Ordering::Greater,
+        Relation::NonZero => sign != Ordering::Equal,
+    }
+}
+
+/// The formula that a claim is about: the zone, or the zone widened by the claim's margin.
+///
+/// `None`: a margin > 0 on a zone that is not a single comparison with one of < <= = >= >. A widened zone contains the zone
+/// (p >= 0 implies p >= -m, and so on), so that `never` of the widened zone implies `never` of the zone.
+pub fn claimed_formula(statement: &Statement) -> Option<Formula> {
+    let zone = &statement.zone.inside;
+    let margin = match &statement.claim {
+        Claim::Never { margin } if margin.is_positive() => margin,
+        Claim::Never { .. } | Claim::Enters { .. } => return Some(zone.clone()),
+    };
+    let Formula::Atom(Atom { polynomial, relation }) = zone else { return None };
+    let above = Formula::Atom(Atom { polynomial: shifted(polynomial, margin), relation: Relation::NonNegative });
+    let below = Formula::Atom(Atom { polynomial: shifted(polynomial, &-margin), relation: Relation::NonPositive });
+    match relation {
+        Relation::Positive | Relation::NonNegative => Some(above),
+        Relation::Negative | Relation::NonPositive => Some(below),
+        Relation::Zero => Some(Formula::And(vec![above, below])),
+        Relation::NonZero => None,
+    }
+}
+
+/// p + constant.
+fn shifted(p: &Expression, constant: &Rational) -> Expression {
+    let mut terms = p.terms.clone();
+    match terms.iter_mut().find(|t| t.powers.is_empty()) {
+        Some(term) => term.coefficient += constant,
+        None => terms.push(Term { coefficient: constant.clone(), powers: Vec::new() }),
+    }
+    terms.retain(|t| !t.coefficient.is_zero());
+    Expression { terms }
+}

@@ -1,0 +1,37 @@
+//! Rule `cover`: on a bounded stretch of time the trajectory is not in the zone.
+//!
+//! Needs: an increasing list of instants from the stretch's start to its end, and on each closed cell between neighbours
+//! signs of traces from which the zone is false, in each case of the cell's pivot.
+//! Not needed: that the cells are small, or that the listed signs are all that hold.
+//! Why: the closed cells cover the stretch because each begins where the one before it ends.
+//! Source: docs/theorems/cover.md.
+
+use super::cell::prove_signs;
+use crate::certificate::{Cell, Certificate};
+use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::limits::Budget;
+use crate::model::Model;
+use crate::number::Rational;
+
+/// Checks that the cells cover [from, to] and that the zone is false on each of them.
+pub(crate) fn check(
+    from: &Rational,
+    to: &Rational,
+    cells: &[Cell],
+    certificate: &Certificate,
+    model: &Model,
+    budget: &mut Budget,
+) -> Result<(), Rejection> {
+    let mut reached = from;
+    for (position, cell) in cells.iter().enumerate() {
+        Duty::new(Rule::Cover, Obligation::CellsCoverWindow, position).ensure(*reached <= cell.to)?;
+        let cases = prove_signs(Rule::Cover, position, reached, cell, certificate, model, budget)?;
+        let refuted = Duty::new(Rule::Cover, Obligation::ZoneIsRefutedOnCell, position);
+        for signs in cases.at_zero.iter().chain(&cases.elsewhere) {
+            refuted.ensure(model.formula.truth(signs) == Some(false))?;
+        }
+        reached = &cell.to;
+    }
+    // A stretch of one instant still needs a cell.
+    Duty::new(Rule::Cover, Obligation::CellsCoverWindow, cells.len()).ensure(reached == to && !cells.is_empty())
+}

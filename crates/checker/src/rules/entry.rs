@@ -1,0 +1,44 @@
+//! Rule `entry`: at some instant of a stretch of time the trajectory is in the zone.
+//!
+//! Needs: signs of traces on the closed stretch from which the zone is true; or a pivot with opposite signs at the two ends, and
+//! signs from which the zone is true where the pivot is zero (at t = 0 for the pivot t).
+//! Not needed: that the pivot vanishes once only.
+//! Why: the pivot is continuous, so it vanishes somewhere between the ends.
+//! Source: docs/theorems/entry.md.
+
+use super::cell::{Signs, prove_signs, value_at};
+use crate::certificate::{Cell, Certificate, Pivot};
+use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::limits::Budget;
+use crate::model::Model;
+use crate::number::Rational;
+use std::cmp::Ordering;
+
+/// Checks that the zone is entered in [from, cell.to].
+pub(crate) fn check(from: &Rational, cell: &Cell, certificate: &Certificate, model: &Model, budget: &mut Budget) -> Result<(), Rejection> {
+    Duty::new(Rule::Entry, Obligation::InstantIsInWindow, 0).ensure(*from <= cell.to)?;
+    let cases = prove_signs(Rule::Entry, 0, from, cell, certificate, model, budget)?;
+    let proved = Duty::new(Rule::Entry, Obligation::ZoneIsProvedAtInstant, 0);
+    let inside = |signs: &Signs| model.formula.truth(signs) == Some(true);
+    match (&cell.pivot, &cases.at_zero) {
+        // At t = 0, or at every instant after it up to the cell's end (if there is one).
+        (Pivot::Start(_), Some(at_zero)) => {
+            let after = *from < cell.to && cases.elsewhere.iter().all(inside);
+            proved.ensure(inside(at_zero) || after)
+        }
+        (Pivot::Auxiliary(pivot, _), Some(at_zero)) => {
+            let changes = Duty::new(Rule::Entry, Obligation::PivotChangesSign, *pivot);
+            let form = model.auxiliaries.get(*pivot).ok_or_else(|| changes.refuted())?;
+            let mut ends = Vec::new();
+            for at in [from, &cell.to] {
+                let value = value_at(form, at, certificate.bits, budget)?;
+                let sign = value.and_then(|v| v.certain_sign()).ok_or_else(|| changes.inconclusive())?;
+                ends.push(sign);
+            }
+            let opposite = ends == [Ordering::Less, Ordering::Greater] || ends == [Ordering::Greater, Ordering::Less];
+            changes.ensure(opposite)?;
+            proved.ensure(inside(at_zero))
+        }
+        (Pivot::None | Pivot::Start(_) | Pivot::Auxiliary(..), _) => proved.ensure(cases.elsewhere.iter().all(inside)),
+    }
+}

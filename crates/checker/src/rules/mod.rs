@@ -1,0 +1,7 @@
+//! One file for each proof rule: what it shows, why, and its checks in the order of its theorem page.
+
+pub(crate) mod cell;
+pub(crate) mod cone;
+pub(crate) mod cover;
+pub(crate) mod entry;
+pub(crate) mod equality;

@@ -1,0 +1,362 @@
+//! Statements as JSON: reading with all its refusals, and writing.
+
+use crate::error::{Rejection, rational_text};
+use crate::field::Field;
+use crate::json::Value;
+use crate::limits::{Limits, within};
+use crate::statement::{
+    Affine, Atom, Claim, Drive, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State, Statement,
+    Term, Variable, Wave, Zone,
+};
+use num_traits::{Signed, Zero};
+
+/// The `format` of a statement.
+pub(crate) const STATEMENT_FORMAT: &str = "keepout-statement/1";
+
+const RELATIONS: [(&str, Relation); 6] = [
+    ("<", Relation::Negative),
+    ("<=", Relation::NonPositive),
+    ("=", Relation::Zero),
+    (">=", Relation::NonNegative),
+    (">", Relation::Positive),
+    ("!=", Relation::NonZero),
+];
+
+impl Statement {
+    /// Reads a statement from its JSON text.
+    ///
+    /// # Errors
+    /// [`Rejection::Malformed`] with the place, or [`Rejection::LimitExceeded`].
+    pub fn from_json(text: &str, limits: &Limits) -> Result<Self, Rejection> {
+        read_statement(&Field::root(&crate::json::read(text, limits)?, limits))
+    }
+
+    /// The statement as a JSON value.
+    pub fn to_json(&self) -> Value {
+        write_statement(self)
+    }
+}
+
+fn entries<'a>(field: &Field<'a>) -> Result<Vec<Field<'a>>, Rejection> {
+    let list = field.list()?;
+    within("statement_entries", list.len(), field.limits().statement_entries)?;
+    Ok(list)
+}
+
+/// Names and what they stand for, in the order of declaration.
+type Names = Vec<(String, Variable)>;
+
+pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
+    field.only(
+        &["format", "title", "states", "drives", "outputs", "phases", "zone", "claim"],
+        "a statement: format, title, states, drives, outputs, phases, zone, claim",
+    )?;
+    let format = field.get("format")?;
+    if format.text()? != STATEMENT_FORMAT {
+        return Err(format.refuse("\"keepout-statement/1\""));
+    }
+    let mut names: Names = Vec::new();
+    let states = declared(&field.get("states")?, &mut names, Variable::State, |f, name, unit, _| {
+        f.only(&["name", "unit", "start"], "a state: name, unit, start")?;
+        Ok(State { name, unit, start: f.get("start")?.rational()? })
+    })?;
+    if states.is_empty() {
+        return Err(field.get("states")?.refuse("at least one state"));
+    }
+    let drives = declared(&field.get("drives")?, &mut names, Variable::Drive, |f, name, unit, _| {
+        f.only(&["name", "unit", "signal"], "a drive: name, unit, signal")?;
+        Ok(Drive { name, unit, signal: entries(&f.get("signal")?)?.iter().map(read_signal).collect::<Result<_, _>>()? })
+    })?;
+    let affine_names = names.clone();
+    names.push(("t".into(), Variable::Time));
+    let value_names = names.clone();
+    let outputs = declared(&field.get("outputs")?, &mut names, Variable::Output, |f, name, unit, _| {
+        f.only(&["name", "unit", "value"], "an output: name, unit, value")?;
+        Ok(Output { name, unit, value: read_expression(&f.get("value")?, &value_names)? })
+    })?;
+    let phases = entries(&field.get("phases")?)?;
+    if phases.len() != 1 {
+        return Err(field.get("phases")?.refuse("exactly one phase"));
+    }
+    let phases = phases.iter().map(|f| read_phase(f, &states, &affine_names)).collect::<Result<_, _>>()?;
+    Ok(Statement {
+        title: field.get("title")?.text()?.to_string(),
+        zone: read_zone(&field.get("zone")?, &names)?,
+        claim: read_claim(&field.get("claim")?)?,
+        states,
+        drives,
+        outputs,
+        phases,
+    })
+}
+
+fn is_name(text: &str) -> bool {
+    let mut bytes = text.bytes();
+    bytes.next().is_some_and(|b| b.is_ascii_alphabetic() || b == b'_')
+        && bytes.all(|b| b.is_ascii_alphanumeric() || b == b'_')
+}
+
+fn declared<'a, T>(
+    field: &Field<'a>,
+    names: &mut Names,
+    variable: fn(usize) -> Variable,
+    read: impl Fn(&Field<'a>, String, Option<String>, usize) -> Result<T, Rejection>,
+) -> Result<Vec<T>, Rejection> {
+    let mut items = Vec::new();
+    for (i, item) in entries(field)?.iter().enumerate() {
+        let name = item.get("name")?;
+        let text = name.text()?;
+        if !is_name(text) || names.iter().any(|(known, _)| known == text) {
+            return Err(name.refuse("a new name: a letter or _, then letters, digits or _"));
+        }
+        let unit = item.optional("unit").map(|u| u.text().map(str::to_string)).transpose()?;
+        items.push(read(item, text.to_string(), unit, i)?);
+        names.push((text.to_string(), variable(i)));
+    }
+    Ok(items)
+}
+
+fn named(field: &Field, names: &Names) -> Result<Variable, Rejection> {
+    let text = field.text()?;
+    let found = names.iter().find(|(name, _)| name == text);
+    found.map(|(_, variable)| *variable).ok_or_else(|| field.refuse("the name of a quantity allowed here"))
+}
+
+fn read_signal(field: &Field) -> Result<SignalTerm, Rejection> {
+    field.only(&["times", "power", "rate", "cos", "sin"], "a signal term: times, power, rate, and cos or sin")?;
+    let frequency = |f: Field| {
+        let w = f.rational()?;
+        if w.is_positive() { Ok(w) } else { Err(f.refuse("an angular frequency > 0")) }
+    };
+    let wave = match (field.optional("cos"), field.optional("sin")) {
+        (None, None) => Wave::One,
+        (Some(w), None) => Wave::Cosine(frequency(w)?),
+        (None, Some(w)) => Wave::Sine(frequency(w)?),
+        (Some(_), Some(_)) => return Err(field.refuse("cos or sin, not both")),
+    };
+    let power = field.get("power")?.count()?;
+    within("degree", usize::try_from(power).unwrap_or(usize::MAX), field.limits().degree)?;
+    let (coefficient, rate) = (field.get("times")?.rational()?, field.get("rate")?.rational()?);
+    Ok(SignalTerm { coefficient, power, rate, wave })
+}
+
+fn read_phase(field: &Field, states: &[State], names: &Names) -> Result<Phase, Rejection> {
+    field.only(&["rates"], "a phase: rates")?;
+    let list = entries(&field.get("rates")?)?;
+    if list.len() != states.len() {
+        return Err(field.get("rates")?.refuse("one rate for each state"));
+    }
+    let mut rates = Vec::new();
+    for (item, state) in list.iter().zip(states) {
+        item.only(&["of", "terms", "offset"], "a rate: of, terms, offset")?;
+        if item.get("of")?.text()? != state.name {
+            return Err(item.get("of")?.refuse("the states' names in order"));
+        }
+        rates.push(read_affine(item, names)?);
+    }
+    Ok(Phase { rates })
+}
+
+fn read_affine(field: &Field, names: &Names) -> Result<Affine, Rejection> {
+    let mut terms: Vec<(Rational, Variable)> = Vec::new();
+    let mut seen = std::collections::BTreeSet::new();
+    for item in entries(&field.get("terms")?)? {
+        item.only(&["times", "of"], "a term: times, of")?;
+        let (factor, variable) = (item.get("times")?.rational()?, named(&item.get("of")?, names)?);
+        if factor.is_zero() || !seen.insert(variable) {
+            return Err(item.refuse("a factor other than 0, each name once"));
+        }
+        terms.push((factor, variable));
+    }
+    Ok(Affine { terms, offset: field.get("offset")?.rational()? })
+}
+
+fn read_expression(field: &Field, names: &Names) -> Result<Expression, Rejection> {
+    let mut terms: Vec<Term> = Vec::new();
+    let mut seen = std::collections::BTreeSet::new();
+    for item in entries(field)? {
+        item.only(&["times", "of"], "a term: times, of")?;
+        let mut powers = Vec::new();
+        for factor in entries(&item.get("of")?)? {
+            let (variable, exponent) = match factor.value() {
+                Value::Text(_) => (named(&factor, names)?, 1),
+                Value::Bool(_) | Value::List(_) | Value::Object(_) => {
+                    factor.only(&["name", "power"], "a name, or an object: name, power")?;
+                    (named(&factor.get("name")?, names)?, factor.get("power")?.count()?)
+                }
+            };
+            let increasing = powers.last().is_none_or(|(last, _)| *last < variable);
+            if exponent == 0 || !increasing {
+                return Err(factor.refuse("powers >= 1 of states, drives, outputs, t in the order of declaration"));
+            }
+            within("degree", usize::try_from(exponent).unwrap_or(usize::MAX), field.limits().degree)?;
+            powers.push((variable, exponent));
+        }
+        let coefficient = item.get("times")?.rational()?;
+        if coefficient.is_zero() || !seen.insert(powers.clone()) {
+            return Err(item.refuse("a factor other than 0, each product once"));
+        }
+        terms.push(Term { coefficient, powers });
+    }
+    Ok(Expression { terms })
+}
+
+fn read_formula(field: &Field, names: &Names) -> Result<Formula, Rejection> {
+    if let Some(parts) = field.optional("all") {
+        field.only(&["all"], "one key")?;
+        return Ok(Formula::And(entries(&parts)?.iter().map(|f| read_formula(f, names)).collect::<Result<_, _>>()?));
+    }
+    if let Some(parts) = field.optional("any") {
+        field.only(&["any"], "one key")?;
+        return Ok(Formula::Or(entries(&parts)?.iter().map(|f| read_formula(f, names)).collect::<Result<_, _>>()?));
+    }
+    field.only(&["polynomial", "is"], "all, any, or a comparison: polynomial, is")?;
+    let is = field.get("is")?;
+    let text = is.text()?.strip_suffix(" 0").ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
+    let relation = RELATIONS.iter().find(|(name, _)| *name == text).map(|(_, r)| *r);
+    let relation = relation.ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
+    Ok(Formula::Atom(Atom { polynomial: read_expression(&field.get("polynomial")?, names)?, relation }))
+}
+
+fn read_zone(field: &Field, names: &Names) -> Result<Zone, Rejection> {
+    field.only(&["name", "ref", "inside", "from", "until"], "a zone: name, ref, inside, from, until")?;
+    let from = field.get("from")?.rational()?;
+    let until = field.optional("until").map(|u| u.rational()).transpose()?;
+    if from.is_negative() || until.as_ref().is_some_and(|u| *u < from) {
+        return Err(field.refuse("0 <= from <= until"));
+    }
+    Ok(Zone {
+        name: field.get("name")?.text()?.to_string(),
+        reference: field.optional("ref").map(|r| r.text().map(str::to_string)).transpose()?,
+        inside: read_formula(&field.get("inside")?, names)?,
+        from,
+        until,
+    })
+}
+
+fn read_claim(field: &Field) -> Result<Claim, Rejection> {
+    if let Some(never) = field.optional("never") {
+        field.only(&["never"], "one key")?;
+        never.only(&["margin"], "never: margin")?;
+        let margin = never.get("margin")?.rational()?;
+        return if margin.is_negative() { Err(never.refuse("a margin >= 0")) } else { Ok(Claim::Never { margin }) };
+    }
+    field.only(&["enters"], "a claim: never or enters")?;
+    let enters = field.get("enters")?;
+    enters.only(&["from", "to", "first"], "enters: from, to, first")?;
+    let (from, to) = (enters.get("from")?.rational()?, enters.get("to")?.rational()?);
+    if from.is_negative() || to < from {
+        return Err(enters.refuse("0 <= from <= to"));
+    }
+    Ok(Claim::Enters { from, to, first: enters.get("first")?.flag()? })
+}
+
+fn object(fields: Vec<(&str, Value)>) -> Value {
+    Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
+}
+
+fn number(value: &Rational) -> Value {
+    Value::Text(rational_text(value))
+}
+
+fn declaration(name: &str, unit: Option<&String>, key: &'static str, value: Value) -> Value {
+    let mut fields = vec![("name", Value::text(name))];
+    fields.extend(unit.map(|u| ("unit", Value::text(u))));
+    fields.push((key, value));
+    object(fields)
+}
+
+impl Statement {
+    /// The name that the statement gives to a variable; `?` for a position that it does not have.
+    pub fn name(&self, variable: Variable) -> &str {
+        match variable {
+            Variable::State(i) => self.states.get(i).map_or("?", |s| &s.name),
+            Variable::Drive(i) => self.drives.get(i).map_or("?", |d| &d.name),
+            Variable::Output(i) => self.outputs.get(i).map_or("?", |o| &o.name),
+            Variable::Time => "t",
+        }
+    }
+
+    fn write_expression(&self, expression: &Expression) -> Value {
+        let factor = |(variable, power): &(Variable, u32)| match power {
+            1 => Value::text(self.name(*variable)),
+            _ => object(vec![("name", Value::text(self.name(*variable))), ("power", Value::text(power))]),
+        };
+        let term = |t: &Term| {
+            let of = Value::List(t.powers.iter().map(factor).collect());
+            object(vec![("times", number(&t.coefficient)), ("of", of)])
+        };
+        Value::List(expression.terms.iter().map(term).collect())
+    }
+
+    fn write_formula(&self, formula: &Formula) -> Value {
+        let list = |parts: &[Formula]| Value::List(parts.iter().map(|p| self.write_formula(p)).collect());
+        match formula {
+            Formula::And(parts) => object(vec![("all", list(parts))]),
+            Formula::Or(parts) => object(vec![("any", list(parts))]),
+            Formula::Atom(Atom { polynomial, relation }) => {
+                let is = RELATIONS.iter().find(|(_, r)| r == relation).map_or("?", |(name, _)| name);
+                object(vec![("polynomial", self.write_expression(polynomial)), ("is", Value::text(format!("{is} 0")))])
+            }
+        }
+    }
+
+    fn write_affine(&self, of: &str, affine: &Affine) -> Value {
+        let term = |(factor, variable): &(Rational, Variable)| {
+            object(vec![("times", number(factor)), ("of", Value::text(self.name(*variable)))])
+        };
+        let terms = Value::List(affine.terms.iter().map(term).collect());
+        object(vec![("of", Value::text(of)), ("terms", terms), ("offset", number(&affine.offset))])
+    }
+
+    fn write_phase(&self, phase: &Phase) -> Value {
+        let rates = phase.rates.iter().zip(&self.states).map(|(rate, state)| self.write_affine(&state.name, rate));
+        object(vec![("rates", Value::List(rates.collect()))])
+    }
+}
+
+fn write_signal(term: &SignalTerm) -> Value {
+    let mut fields = vec![
+        ("times", number(&term.coefficient)),
+        ("power", Value::text(term.power)),
+        ("rate", number(&term.rate)),
+    ];
+    match &term.wave {
+        Wave::One => {}
+        Wave::Cosine(w) => fields.push(("cos", number(w))),
+        Wave::Sine(w) => fields.push(("sin", number(w))),
+    }
+    object(fields)
+}
+
+fn write_statement(s: &Statement) -> Value {
+    let states = s.states.iter().map(|x| declaration(&x.name, x.unit.as_ref(), "start", number(&x.start)));
+    let drives = s.drives.iter().map(|d| {
+        let signal = Value::List(d.signal.iter().map(write_signal).collect());
+        declaration(&d.name, d.unit.as_ref(), "signal", signal)
+    });
+    let outputs =
+        s.outputs.iter().map(|o| declaration(&o.name, o.unit.as_ref(), "value", s.write_expression(&o.value)));
+    let mut zone = vec![("name", Value::text(&s.zone.name))];
+    zone.extend(s.zone.reference.as_ref().map(|r| ("ref", Value::text(r))));
+    zone.push(("inside", s.write_formula(&s.zone.inside)));
+    zone.push(("from", number(&s.zone.from)));
+    zone.extend(s.zone.until.as_ref().map(|u| ("until", number(u))));
+    let claim = match &s.claim {
+        Claim::Never { margin } => object(vec![("never", object(vec![("margin", number(margin))]))]),
+        Claim::Enters { from, to, first } => object(vec![(
+            "enters",
+            object(vec![("from", number(from)), ("to", number(to)), ("first", Value::Bool(*first))]),
+        )]),
+    };
+    object(vec![
+        ("format", Value::text(STATEMENT_FORMAT)),
+        ("title", Value::text(&s.title)),
+        ("states", Value::List(states.collect())),
+        ("drives", Value::List(drives.collect())),
+        ("outputs", Value::List(outputs.collect())),
+        ("phases", Value::List(s.phases.iter().map(|p| s.write_phase(p)).collect())),
+        ("zone", object(zone)),
+        ("claim", claim),
+    ])
+}
