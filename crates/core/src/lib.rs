@@ -14,10 +14,12 @@ pub mod linear_recurrence;
 pub mod matrix;
 mod modular;
 mod modular_polynomial;
+pub mod root;
 
 pub use characteristic::{characteristic_polynomial, minimal_polynomial_at};
 pub use error::CoreError;
 pub use factor::{Factor, Factorization, Irreducibility, factorize};
 pub use integer_polynomial::IntegerPolynomial;
 pub use linear_recurrence::minimal_annihilator;
+pub use root::{RootDisc, enclose_roots};
 pub use matrix::{IntegerMatrix, RationalMatrix};

@@ -8,7 +8,6 @@ use super::IntegerPolynomial;
 use crate::modular::{Field, Reconstruction, large_field};
 use crate::modular_polynomial as mp;
 use num_integer::Integer;
-use num_traits::Zero;
 
 impl IntegerPolynomial {
     /// The residues of the coefficients, trimmed.
