@@ -67,19 +67,19 @@ pub(crate) fn within(limit: &'static str, found: usize, max: u64) -> Result<(), 
 
 /// The work that is left.
 #[derive(Debug)]
-pub(crate) struct Budget {
+pub struct Budget {
     max: u64,
     spent: u64,
 }
 
 impl Budget {
     /// All of the work that the limits allow.
-    pub(crate) fn new(limits: &Limits) -> Self {
+    pub fn new(limits: &Limits) -> Self {
         Self { max: limits.work, spent: 0 }
     }
 
     /// Accounts for `steps` products of numbers of `bits` bits.
-    pub(crate) fn spend(&mut self, steps: usize, bits: u32) -> Result<(), Rejection> {
+    pub fn spend(&mut self, steps: usize, bits: u32) -> Result<(), Rejection> {
         let words = u64::from(bits / 64 + 1);
         let cost = u64::try_from(steps).unwrap_or(u64::MAX).saturating_mul(words.saturating_mul(words));
         self.spent = self.spent.saturating_add(cost);

@@ -41,7 +41,7 @@ impl Model {
     ///
     /// # Errors
     /// The first obligation that is not met.
-    pub(crate) fn new(certificate: &Certificate, limits: &Limits, budget: &mut Budget) -> Result<Self, Rejection> {
+    pub fn new(certificate: &Certificate, limits: &Limits, budget: &mut Budget) -> Result<Self, Rejection> {
         let fits = Duty::new(Rule::Trace, Obligation::EvidenceFitsClaim, 0);
         let formula = claimed_formula(&certificate.statement).ok_or_else(|| fits.refuted())?;
         let formula = IndexedFormula::new(&formula);

@@ -54,7 +54,7 @@ impl RootTable {
     ///
     /// # Errors
     /// [`Rejection::Inconclusive`] where discs meet at this precision.
-    pub(crate) fn new(families: &[RootFamily], bits: u32, budget: &mut Budget) -> Result<Self, Rejection> {
+    pub fn new(families: &[RootFamily], bits: u32, budget: &mut Budget) -> Result<Self, Rejection> {
         let mut roots = Vec::new();
         for (position, family) in families.iter().enumerate() {
             let degree = family.polynomial.degree();
@@ -108,7 +108,7 @@ impl RootTable {
     }
 
     /// The roots that the members of `value` can be, among all roots of the families; conjugates stand for themselves.
-    pub(crate) fn candidates(&self, value: &Complex, families: &[Factor]) -> Vec<RootRef> {
+    pub fn candidates(&self, value: &Complex, families: &[Factor]) -> Vec<RootRef> {
         let mut found = Vec::new();
         for (index, root) in self.roots.iter().enumerate() {
             if !families.iter().any(|f| f.family == root.family) {
@@ -130,7 +130,7 @@ impl RootTable {
     /// Lemma: let q be real with q(2 a - z) = +-q(z). Then z -> 2 a - conj z maps roots of q to roots of q. If the
     /// image of a root's disc meets no other disc of the family, the root is its own image: its real part is a.
     /// `Some(false)`: the polynomial is not symmetric; `None`: not decided.
-    pub(crate) fn is_on_line(&self, index: usize, line: &Rational, bits: u32) -> Option<bool> {
+    pub fn is_on_line(&self, index: usize, line: &Rational, bits: u32) -> Option<bool> {
         let root = self.roots.get(index)?;
         let polynomial = self.families.get(root.family)?;
         let reflected = polynomial.reflected(&(line + line));

@@ -53,7 +53,7 @@ impl ClosedForm {
     ///
     /// # Errors
     /// [`Rejection::Inconclusive`] where a root is not separated well enough at this precision.
-    pub(crate) fn new(
+    pub fn new(
         factors: &[Factor],
         derivatives: &[Rational],
         table: &RootTable,
@@ -83,7 +83,7 @@ impl ClosedForm {
     /// exp(mu centre). Lemma: for x = |mu| h and 2 x <= m + 1, sum_(l >= m) x^l / l! <= 2 x^m / m! (ratio <= 1/2). So the terms
     /// from k = K on are at most |exp(mu centre)| sum_i |p_i| h^i 2 x^(K-i) / (K-i)!, and being a series with terms of that
     /// size at s = h, divided by s^drop they are at most the same divided by h^drop for |s| <= h (drop <= K).
-    pub(crate) fn quotient(&self, drop: usize, stretch: Stretch, budget: &mut Budget) -> Result<Option<Interval>, Rejection> {
+    pub fn quotient(&self, drop: usize, stretch: Stretch, budget: &mut Budget) -> Result<Option<Interval>, Rejection> {
         let order = usize::try_from(stretch.order).unwrap_or(usize::MAX);
         if drop >= order {
             return Ok(None);
@@ -114,7 +114,7 @@ impl ClosedForm {
     }
 
     /// Encloses g on a stretch.
-    pub(crate) fn enclose(&self, stretch: Stretch, budget: &mut Budget) -> Result<Option<Interval>, Rejection> {
+    pub fn enclose(&self, stretch: Stretch, budget: &mut Budget) -> Result<Option<Interval>, Rejection> {
         self.quotient(0, stretch, budget)
     }
 }

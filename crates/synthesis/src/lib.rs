@@ -1,1 +1,19 @@
-//! Synthesis.
+//! Finds certificates: from a statement to a proof that the trusted checker has accepted.
+//!
+//! Search is free: candidates come from guesses and enclosures, and are returned only after [`keepout_checker::check`] has
+//! verified them. What cannot be settled is reported as [`Outcome::Unsettled`] with the reason.
+//!
+//! Start at [`certify`].
+
+mod certify;
+mod enclosure;
+mod margin;
+mod options;
+mod outcome;
+mod problem;
+mod search;
+mod strategy;
+
+pub use certify::certify;
+pub use options::Options;
+pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};

@@ -1,0 +1,143 @@
+//! A problem at one precision: certified roots, closed forms, signs on stretches of time.
+
+use crate::problem::Problem;
+use keepout_checker::Limits;
+use keepout_checker::certificate::{Factor, RootFamily, Sign};
+use keepout_checker::error::Rejection;
+use keepout_checker::limits::Budget;
+use keepout_checker::number::{Dyadic, Interval, Rational};
+use keepout_checker::root::RootTable;
+use keepout_checker::trace::{ClosedForm, Stretch};
+use std::cmp::Ordering;
+
+/// Enclosures of everything in a problem, with mantissas of `bits` bits.
+pub(crate) struct Enclosure {
+    pub(crate) bits: u32,
+    pub(crate) families: Vec<RootFamily>,
+    pub(crate) table: RootTable,
+    pub(crate) forms: Vec<ClosedForm>,
+    budget: Budget,
+    limits: Limits,
+}
+
+/// Signs on a stretch, and whether the zone follows to be true or false there.
+pub(crate) struct Judgement {
+    pub(crate) signs: Vec<Option<Sign>>,
+    pub(crate) truth: Option<bool>,
+    pub(crate) order: u32,
+}
+
+impl Enclosure {
+    /// Encloses a problem at a precision. An error says that the precision does not separate the roots.
+    pub(crate) fn new(problem: &Problem, bits: u32, limits: &Limits) -> Result<Self, Rejection> {
+        let families: Vec<RootFamily> = problem.families.iter().map(|f| family(f, bits)).collect();
+        let unlimited = Limits { work: u64::MAX, ..limits.clone() };
+        let mut budget = Budget::new(&unlimited);
+        let table = RootTable::new(&families, bits, &mut budget)?;
+        let mut enclosure = Self { bits, families, table, forms: Vec::new(), budget, limits: unlimited };
+        for (sequence, factors) in problem.sequences.iter().zip(&problem.factors) {
+            let form = enclosure.closed_form(factors, &sequence.derivatives(problem.degree(factors)))?;
+            enclosure.forms.push(form);
+        }
+        Ok(enclosure)
+    }
+
+    /// The closed form of a further function.
+    pub(crate) fn closed_form(&mut self, factors: &[Factor], derivatives: &[Rational]) -> Result<ClosedForm, Rejection> {
+        ClosedForm::new(factors, derivatives, &self.table, self.bits, 0, &mut self.budget)
+    }
+
+    /// Encloses a function on [from, to], with a number of Taylor terms that suits the stretch.
+    pub(crate) fn on_stretch(&mut self, form: &ClosedForm, from: &Rational, to: &Rational, order: u32) -> Option<Interval> {
+        let half = Rational::new(1.into(), 2.into());
+        let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
+        let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits: self.bits };
+        form.enclose(stretch, &mut self.budget).ok().flatten()
+    }
+
+    /// Encloses g / t^power on [0, to] for a trace that vanishes at 0 to that order.
+    pub(crate) fn quotient_at_start(&mut self, index: usize, power: usize, to: &Rational, order: u32) -> Option<Interval> {
+        let zero = Rational::from_integer(0.into());
+        let stretch = Stretch { centre: &zero, half_width: to, order, bits: self.bits };
+        self.forms.get(index)?.quotient(power, stretch, &mut self.budget).ok().flatten()
+    }
+
+    /// The signs of the traces on [from, to], only as many as the zone's truth needs, `first` before the others.
+    pub(crate) fn judge(&mut self, problem: &Problem, from: &Rational, to: &Rational, first: &[usize]) -> Judgement {
+        let order = self.order(from, to);
+        let mut judgement = Judgement { signs: vec![None; self.forms.len()], truth: None, order };
+        let rest = (0..self.forms.len()).filter(|i| !first.contains(i));
+        let sequence: Vec<usize> = first.iter().copied().chain(rest).collect();
+        judgement.truth = problem.formula.truth(&judgement.signs);
+        for index in sequence {
+            if judgement.truth.is_some() {
+                break;
+            }
+            judgement.signs[index] = self.sign(problem, index, from, to, order);
+            judgement.truth = problem.formula.truth(&judgement.signs);
+        }
+        judgement
+    }
+
+    /// The sign of one trace on [from, to]; exact at t = 0.
+    pub(crate) fn sign(&mut self, problem: &Problem, index: usize, from: &Rational, to: &Rational, order: u32) -> Option<Sign> {
+        let zero = Rational::from_integer(0.into());
+        if *to == zero {
+            return Some(problem.sequences[index].sign_at_zero());
+        }
+        let form = self.forms[index].clone();
+        if form.terms.is_empty() {
+            return Some(Ordering::Equal);
+        }
+        self.on_stretch(&form, from, to, order)?.certain_sign()
+    }
+
+    /// A number of Taylor terms: the remainder is then small against the terms kept, for exponents up to the largest.
+    pub(crate) fn order(&self, from: &Rational, to: &Rational) -> u32 {
+        let h = approx_value(&((to - from) / Rational::from_integer(2.into())));
+        let largest = |x: &Interval| x.abs_hi().top().min(1000) as f64;
+        let rates = self.forms.iter().flat_map(|f| &f.terms);
+        let top = rates.map(|t| largest(&t.exponent.re).max(largest(&t.exponent.im))).fold(-1000.0_f64, f64::max);
+        let x = h * top.exp2();
+        let longest = self.forms.iter().flat_map(|f| f.terms.iter().map(|t| t.coefficients.len())).max().unwrap_or(1) as u32;
+        let mut term = 1.0_f64;
+        let mut order = 1;
+        while order < 22 && term > 2.0_f64.powi(-40) {
+            term *= x / f64::from(order);
+            order += 1;
+        }
+        order.max(2) + longest
+    }
+
+    /// The limits of the checker, without the bound on work.
+    pub(crate) fn limits(&self) -> &Limits {
+        &self.limits
+    }
+
+    /// The budget that is never used up.
+    pub(crate) fn budget(&mut self) -> &mut Budget {
+        &mut self.budget
+    }
+}
+
+impl Problem {
+    /// The degree of a product of families.
+    pub(crate) fn degree(&self, factors: &[Factor]) -> usize {
+        factors.iter().map(|f| self.families[f.family].degree() * f.multiplicity as usize).sum()
+    }
+}
+
+/// A rational as a double, for choices that need no trust.
+pub(crate) fn approx_value(x: &Rational) -> f64 {
+    num_traits::ToPrimitive::to_f64(x).unwrap_or(f64::MAX)
+}
+
+/// The family of a polynomial, with approximations of its roots to a few bits more than asked for.
+fn family(polynomial: &keepout_core::IntegerPolynomial, bits: u32) -> RootFamily {
+    RootFamily { polynomial: polynomial.to_monic(), centres: crate::strategy::root::centres(polynomial, bits) }
+}
+
+/// The middle of an interval.
+pub(crate) fn middle(x: &Interval, bits: u32) -> Dyadic {
+    x.lo().add(x.hi(), bits, keepout_checker::number::Direction::Down).scale(-1)
+}

@@ -1,0 +1,305 @@
+//! Cones: leading terms, their angles, and a bisection of the torus on which the zone is false.
+
+use crate::enclosure::{Enclosure, approx_value};
+use crate::problem::Problem;
+use crate::strategy::entry::needed;
+use crate::strategy::equality::{OpenSum, value};
+use crate::strategy::pivot::simplest_between;
+use keepout_checker::certificate::{Angle, Cone, Lead, Node, RealPart, RootRef, Sum};
+use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
+use keepout_checker::number::{Dyadic, Interval, Rational};
+use num_bigint::BigInt;
+use num_traits::{ToPrimitive, Zero};
+use std::collections::BTreeMap;
+
+/// The leading roots of all traces with their equalities and angles: all of a cone but its start and its leaves.
+#[derive(Clone, Debug)]
+pub(crate) struct Plan {
+    pub(crate) base: Vec<usize>,
+    pub(crate) angles: Vec<Angle>,
+    pub(crate) leads: Vec<Option<Lead>>,
+    pub(crate) sums: Vec<Sum>,
+    /// Whether equal real parts were suspected and not proved for some trace.
+    pub(crate) unproved: bool,
+}
+
+/// The widest ratio of frequencies and the greatest multiple that relations are looked for with.
+const MAX_RATIO: i64 = 48;
+const MAX_MULTIPLE: i64 = 6;
+
+impl Plan {
+    /// Plans the cones of a problem; families may be added to it, and the enclosure is renewed with them.
+    pub(crate) fn new(problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
+        let mut plan = Self { base: Vec::new(), angles: Vec::new(), leads: Vec::new(), sums: Vec::new(), unproved: false };
+        for index in 0..problem.sequences.len() {
+            let lead = plan.lead(index, problem, enclosure)?;
+            plan.leads.push(lead);
+        }
+        plan.find_angles(problem, enclosure)?;
+        Some(plan)
+    }
+
+    /// The leading roots of one trace.
+    fn lead(&mut self, index: usize, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Option<Lead>> {
+        let terms = &enclosure.forms[index].terms;
+        let Some(top) = terms.iter().map(|t| t.exponent.re.lo().clone()).max() else { return Some(None) };
+        let roots: Vec<usize> = terms.iter().filter(|t| *t.exponent.re.hi() >= top).map(|t| t.root).collect();
+        if roots.len() == 1 {
+            return Some(Some(Lead { roots, real_part: RealPart::Single }));
+        }
+        if let Some(line) = common_line(&roots, problem, enclosure) {
+            return Some(Some(Lead { roots, real_part: RealPart::Line(line) }));
+        }
+        let mut doubled = Vec::new();
+        for root in &roots {
+            let pair = [false, true].map(|conjugate| (1, RootRef { index: *root, conjugate }));
+            let Some(sum) = self.sum(&pair, problem, enclosure)? else {
+                self.unproved = true;
+                return Some(None);
+            };
+            doubled.push(sum);
+        }
+        if doubled.windows(2).all(|w| self.sums[w[0]].root.index == self.sums[w[1]].root.index) {
+            return Some(Some(Lead { roots, real_part: RealPart::Doubled(doubled) }));
+        }
+        self.unproved = true;
+        Some(None)
+    }
+
+    /// Adds a sum; `Some(None)`: it could not be shown. `None`: the enclosure could not be renewed.
+    fn sum(&mut self, parts: &[(i64, RootRef)], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Option<usize>> {
+        if let Some(known) = self.sums.iter().position(|s| s.parts == parts) {
+            return Some(Some(known));
+        }
+        let Some(open) = OpenSum::new(parts, problem, enclosure) else { return Some(None) };
+        *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+        Some(open.close(enclosure).map(|sum| {
+            self.sums.push(sum);
+            self.sums.len() - 1
+        }))
+    }
+
+    /// Angles of all leading roots that are not real, in increasing order of frequency.
+    fn find_angles(&mut self, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<()> {
+        let listed = self.leads.iter().flatten().flat_map(|l| l.roots.iter().copied());
+        let mut roots: Vec<usize> = listed.filter(|r| !enclosure.table.roots()[*r].is_real).collect();
+        roots.sort_by(|a, b| frequency(*a, enclosure).lo().cmp(frequency(*b, enclosure).lo()));
+        roots.dedup();
+        self.common_base(&roots, problem, enclosure)?;
+        let mut turns: BTreeMap<usize, Vec<(usize, i64)>> = BTreeMap::new();
+        if let Some(base) = self.base.first() {
+            turns.insert(*base, vec![(0, 1)]);
+        }
+        let mut shown: Vec<(usize, Option<usize>)> = self.base.iter().map(|b| (*b, None)).collect();
+        for root in roots {
+            if turns.contains_key(&root) {
+                continue;
+            }
+            let known: Vec<usize> = turns.keys().copied().collect();
+            let mut found = None;
+            for parts in relations(root, &known, enclosure) {
+                if let Some(sum) = self.sum(&parts, problem, enclosure)?.filter(|s| self.sums[*s].root.index == root) {
+                    found = Some((parts, sum));
+                    break;
+                }
+            }
+            let combination = match &found {
+                None => {
+                    self.base.push(root);
+                    vec![(self.base.len() - 1, 1)]
+                }
+                Some((parts, sum)) => combined(parts, self.sums[*sum].root.conjugate, &turns),
+            };
+            turns.insert(root, combination);
+            shown.push((root, found.map(|(_, sum)| sum)));
+        }
+        let dimension = self.base.len();
+        for (root, sum) in shown {
+            let mut row = vec![0; dimension];
+            for (axis, n) in &turns[&root] {
+                row[*axis] += n;
+            }
+            self.angles.push(Angle { root, turns: row, sum });
+        }
+        Some(())
+    }
+
+    /// A base root of which all commensurate frequencies are integer multiples, if the least of them is not one itself.
+    fn common_base(&mut self, roots: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<()> {
+        let Some(first) = roots.first() else { return Some(()) };
+        let divisor = roots.iter().filter_map(|r| ratio(*r, *first, enclosure)).fold(BigInt::from(1), |l, q| num_lcm(&l, q.denom()));
+        let times = divisor.to_i64().filter(|n| *n > 1 && *n <= MAX_RATIO);
+        let Some(times) = times else { return Some(()) };
+        let family = enclosure.table.roots()[*first].family;
+        if mean(problem, family) != Rational::zero() {
+            return Some(());
+        }
+        let scaled = problem.families[family].dilate_up(&BigInt::from(times)).primitive_part();
+        let Some(position) = problem.family(&scaled) else { return Some(()) };
+        *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+        let part = Interval::integer(times);
+        let wanted = frequency(*first, enclosure);
+        let bits = enclosure.bits;
+        let base = enclosure.table.roots().iter().position(|r| r.family == position && !r.value.im.mul(&part, bits).is_disjoint(&wanted));
+        self.base.extend(base);
+        Some(())
+    }
+
+    /// The cone from t0, if the zone is false on all leaves of a bisection of at most `leaves` leaves.
+    pub(crate) fn cone(&self, t0: &Rational, problem: &Problem, enclosure: &Enclosure, effort: &mut u64) -> Option<Cone> {
+        let forms = self.forms(t0, enclosure)?;
+        let mut nodes = Vec::new();
+        let mut open = vec![(whole_torus(self.base.len()), 0_u64)];
+        while let Some((angles, depth)) = open.pop() {
+            if *effort == 0 || depth >= enclosure.limits().depth {
+                return None;
+            }
+            *effort -= 1;
+            let signs = signs_on(&angles, &forms, problem, enclosure);
+            match problem.formula.truth(&signs) {
+                Some(false) => nodes.push(Node::Leaf(needed(problem, signs, false))),
+                Some(true) => return None,
+                None => {
+                    // Halving brings nothing where the centre alone is not decided.
+                    let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
+                    if problem.formula.truth(&signs_on(&centre, &forms, problem, enclosure)) != Some(false) {
+                        return None;
+                    }
+                    let axis = widest(&angles)?;
+                    let (lower, upper) = halves(&angles, axis)?;
+                    nodes.push(Node::Split(axis));
+                    open.push((upper, depth + 1));
+                    open.push((lower, depth + 1));
+                }
+            }
+        }
+        let leads = self.leads.iter().zip(&forms).map(|(lead, form)| form.is_some().then(|| lead.clone()).flatten()).collect();
+        Some(Cone { from: t0.clone(), base: self.base.clone(), angles: self.angles.clone(), leads, nodes })
+    }
+
+    /// The leading part of each trace from t0 on, where it can be enclosed.
+    pub(crate) fn forms(&self, t0: &Rational, enclosure: &Enclosure) -> Option<Vec<Option<LeadForm>>> {
+        let mut forms = Vec::new();
+        for (index, lead) in self.leads.iter().enumerate() {
+            let form = lead.as_ref().and_then(|lead| {
+                let roots = enclosure.table.roots();
+                let rho_lo = lead.roots.iter().map(|r| roots[*r].value.re.lo().clone()).max()?;
+                let leading: Vec<(usize, Vec<i64>)> = lead.roots.iter().map(|r| (*r, self.turns(*r))).collect();
+                LeadForm::new(&enclosure.forms[index], &leading, &rho_lo, t0, index, enclosure.bits).ok()
+            });
+            forms.push(form);
+        }
+        Some(forms)
+    }
+
+    fn turns(&self, root: usize) -> Vec<i64> {
+        let known = self.angles.iter().find(|a| a.root == root);
+        known.map_or_else(|| vec![0; self.base.len()], |a| a.turns.clone())
+    }
+}
+
+fn num_lcm(a: &BigInt, b: &BigInt) -> BigInt {
+    let mut x = (a.clone(), b.clone());
+    while !x.1.is_zero() {
+        x = (x.1.clone(), &x.0 % &x.1);
+    }
+    a * b / x.0
+}
+
+/// The signs of all traces on a box of the torus.
+pub(crate) fn signs_on(angles: &AngleBox, forms: &[Option<LeadForm>], problem: &Problem, enclosure: &Enclosure) -> Vec<Option<std::cmp::Ordering>> {
+    (0..problem.sequences.len())
+        .map(|i| match &forms[i] {
+            None => enclosure.forms[i].terms.is_empty().then_some(std::cmp::Ordering::Equal),
+            Some(form) => form.enclose(angles)?.certain_sign(),
+        })
+        .collect()
+}
+
+/// The axis along which a box is longest.
+pub(crate) fn widest(angles: &AngleBox) -> Option<usize> {
+    (0..angles.len()).rev().max_by(|i, j| angles[*i].1.cmp(&angles[*j].1))
+}
+
+fn frequency(root: usize, enclosure: &Enclosure) -> Interval {
+    enclosure.table.roots()[root].value.im.clone()
+}
+
+/// The mean of the roots of a family: the only candidate for a line of symmetry.
+fn mean(problem: &Problem, family: usize) -> Rational {
+    let monic = problem.families[family].to_monic();
+    let degree = monic.degree();
+    let second = monic.coefficients().get(degree.wrapping_sub(1)).cloned().unwrap_or_else(Rational::zero);
+    -second / Rational::from_integer(degree.into())
+}
+
+/// The vertical line on which all of the roots lie.
+fn common_line(roots: &[usize], problem: &Problem, enclosure: &Enclosure) -> Option<Rational> {
+    let family = |root: usize| enclosure.table.roots()[root].family;
+    let line = mean(problem, family(*roots.first()?));
+    let on_line = |root: &usize| mean(problem, family(*root)) == line && enclosure.table.is_on_line(*root, &line, enclosure.bits) == Some(true);
+    roots.iter().all(on_line).then_some(line)
+}
+
+/// The ratio of two frequencies if a fraction with small terms fits.
+fn ratio(a: usize, b: usize, enclosure: &Enclosure) -> Option<Rational> {
+    let bits = enclosure.bits;
+    let quotient = frequency(a, enclosure).mul(&frequency(b, enclosure).recip(bits)?, bits);
+    let (lo, hi) = (quotient.lo().to_rational()?, quotient.hi().to_rational()?);
+    let simplest = simplest_between(&lo, &hi);
+    let small = |n: &BigInt| *n <= BigInt::from(MAX_RATIO);
+    (small(simplest.numer()) && small(simplest.denom())).then_some(simplest)
+}
+
+/// Sums of one or two small multiples of known roots that meet the enclosure of a root.
+fn relations(root: usize, known: &[usize], enclosure: &Enclosure) -> Vec<Vec<(i64, RootRef)>> {
+    let wanted = &enclosure.table.roots()[root].value;
+    let fits = |parts: &[(i64, RootRef)]| {
+        value(parts, enclosure).is_some_and(|v| !v.re.is_disjoint(&wanted.re) && !v.im.is_disjoint(&wanted.im))
+    };
+    let plain = |index: usize| RootRef { index, conjugate: false };
+    let mut found = Vec::new();
+    for a in known {
+        if let Some(n) = ratio(root, *a, enclosure).filter(Rational::is_integer).and_then(|q| q.to_integer().to_i64()) {
+            found.extend(Some(vec![(n, plain(*a))]).filter(|p| fits(p)));
+        }
+    }
+    for (i, a) in known.iter().enumerate() {
+        for b in known.iter().skip(i + 1) {
+            for n in -MAX_MULTIPLE..=MAX_MULTIPLE {
+                for m in -MAX_MULTIPLE..=MAX_MULTIPLE {
+                    if n != 0 && m != 0 && (approx_frequency(*a, enclosure) * n as f64 + approx_frequency(*b, enclosure) * m as f64 - approx_frequency(root, enclosure)).abs() < 1e-6 * approx_frequency(root, enclosure) {
+                        found.extend(Some(vec![(n, plain(*a)), (m, plain(*b))]).filter(|p| fits(p)));
+                    }
+                }
+            }
+        }
+    }
+    found
+}
+
+fn approx_frequency(root: usize, enclosure: &Enclosure) -> f64 {
+    approx_dyadic(frequency(root, enclosure).lo())
+}
+
+/// A dyadic as a double, for choices that need no trust.
+pub(crate) fn approx_dyadic(x: &Dyadic) -> f64 {
+    x.to_rational().map_or(0.0, |q| approx_value(&q))
+}
+
+fn combined(parts: &[(i64, RootRef)], conjugate: bool, turns: &BTreeMap<usize, Vec<(usize, i64)>>) -> Vec<(usize, i64)> {
+    let mut total = Vec::new();
+    for (times, part) in parts {
+        let sign = if part.conjugate != conjugate { -1 } else { 1 };
+        total.extend(turns.get(&part.index).into_iter().flatten().map(|(axis, n)| (*axis, n * times * sign)));
+    }
+    total
+}
+
+/// Used by the search for a first cone start: an instant not below 1 / |mu| for the fastest exponent.
+pub(crate) fn first_start(enclosure: &Enclosure) -> Rational {
+    let exponents = enclosure.forms.iter().flat_map(|f| &f.terms).map(|t| t.exponent.abs_hi(enclosure.bits).top());
+    let top = exponents.max().unwrap_or(0).clamp(-200, 200);
+    let power = |k: i64| Rational::from_integer(BigInt::from(1) << k.unsigned_abs());
+    if top >= 0 { power(top).recip() } else { power(top) }
+}

@@ -1,0 +1,172 @@
+//! Covers: cells in the order of time, halved until the zone is decided on each.
+
+use crate::enclosure::{Enclosure, Judgement, approx_value};
+use crate::problem::Problem;
+use crate::strategy::pivot::{self, Pivots};
+use crate::strategy::entry::{instant, needed};
+use keepout_checker::certificate::{Cell, Pivot};
+use keepout_checker::number::Rational;
+use num_traits::Zero;
+
+/// A cell that has been decided, and the instant where it begins.
+#[derive(Clone, Debug)]
+pub(crate) struct Entry {
+    /// Before this instant, from the window's start on, the zone is not entered.
+    pub(crate) clear_until: Rational,
+    /// The start of the cell in which it is entered.
+    pub(crate) from: Rational,
+    /// That cell.
+    pub(crate) cell: Cell,
+}
+
+/// How the extension of a cover ended.
+#[derive(Clone, Debug)]
+pub(crate) enum Step {
+    /// The cover reaches the wanted instant.
+    Done,
+    /// The zone is entered.
+    Entered(Entry),
+    /// Neither the zone's truth nor its falsehood can be shown in this bracket.
+    Stuck(Rational, Rational),
+    /// The work is used up.
+    Exhausted,
+}
+
+/// A cover that grows in time.
+pub(crate) struct Cover {
+    pub(crate) from: Rational,
+    pub(crate) reached: Rational,
+    pub(crate) cells: Vec<Cell>,
+    pub(crate) pivots: Pivots,
+    hint: Vec<usize>,
+}
+
+/// An entry is bracketed to this relative width, as a power of two: 2^-34 < 1e-10.
+const BRACKET: i32 = -34;
+
+impl Cover {
+    pub(crate) fn new(from: &Rational) -> Self {
+        Self { from: from.clone(), reached: from.clone(), cells: Vec::new(), pivots: Pivots::default(), hint: Vec::new() }
+    }
+
+    /// Extends the cover to an instant.
+    pub(crate) fn extend(&mut self, to: &Rational, problem: &mut Problem, enclosure: &mut Enclosure, effort: &mut u64) -> Step {
+        if self.reached >= *to && !self.cells.is_empty() {
+            return Step::Done;
+        }
+        if self.cells.is_empty() {
+            if let Some(step) = self.first_instant(to, problem, enclosure) {
+                return step;
+            }
+        }
+        let mut open = vec![(self.reached.clone(), to.clone())];
+        while let Some((a, b)) = open.pop() {
+            if *effort == 0 {
+                return Step::Exhausted;
+            }
+            *effort -= 1;
+            let judgement = enclosure.judge(problem, &a, &b, &self.hint);
+            match judgement.truth {
+                Some(false) => self.push(problem, &b, judgement),
+                Some(true) => return self.entered(&a, &a, instant(&a, problem, enclosure)),
+                None => match self.undecided(&a, &b, problem, enclosure) {
+                    Undecided::Split => {
+                        let middle = simple_middle(&a, &b);
+                        open.push((middle.clone(), b));
+                        open.push((a, middle));
+                    }
+                    Undecided::Covered => {}
+                    Undecided::Step(step) => return step,
+                },
+            }
+        }
+        Step::Done
+    }
+
+    fn entered(&self, clear_until: &Rational, from: &Rational, cell: Option<Cell>) -> Step {
+        match cell {
+            Some(cell) => Step::Entered(Entry { clear_until: clear_until.clone(), from: from.clone(), cell }),
+            None => Step::Stuck(clear_until.clone(), from.clone()),
+        }
+    }
+
+    fn push(&mut self, problem: &Problem, to: &Rational, judgement: Judgement) {
+        let signs = needed(problem, judgement.signs, false);
+        self.hint = signs.iter().map(|(i, _)| *i).collect();
+        self.cells.push(Cell { to: to.clone(), order: judgement.order, signs, pivot: Pivot::None });
+        self.reached = to.clone();
+    }
+
+    /// The window's first instant: decided by itself, and at t = 0 exactly; then what comes just after it.
+    fn first_instant(&mut self, to: &Rational, problem: &Problem, enclosure: &mut Enclosure) -> Option<Step> {
+        let from = self.from.clone();
+        if let Some(cell) = instant(&from, problem, enclosure) {
+            return Some(self.entered(&from, &from, Some(cell)));
+        }
+        let judgement = enclosure.judge(problem, &from, &from, &[]);
+        if from == *to {
+            return match judgement.truth {
+                Some(false) => {
+                    self.push(problem, to, judgement);
+                    Some(Step::Done)
+                }
+                Some(true) | None => Some(Step::Stuck(from.clone(), from)),
+            };
+        }
+        if !from.is_zero() || judgement.truth != Some(false) {
+            return None;
+        }
+        match pivot::at_start(to, problem, enclosure) {
+            pivot::AtStart::Ordinary => None,
+            pivot::AtStart::Clear(cell) => {
+                self.reached = cell.to.clone();
+                self.cells.push(cell);
+                (self.reached >= *to).then_some(Step::Done)
+            }
+            pivot::AtStart::Entered(cell) => Some(self.entered(&from, &from, Some(cell))),
+        }
+    }
+
+    fn undecided(&mut self, a: &Rational, b: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Undecided {
+        let width = approx_value(&(b - a)) / approx_value(b);
+        if width > 2.0_f64.powi(BRACKET) {
+            return Undecided::Split;
+        }
+        if let Some(cell) = instant(b, problem, enclosure) {
+            return Undecided::Step(self.entered(a, b, Some(cell)));
+        }
+        if let Some(cell) = self.pivots.crossing(a, b, problem, enclosure) {
+            return Undecided::Step(self.entered(a, a, Some(cell)));
+        }
+        match self.pivots.touch(a, b, problem, enclosure) {
+            pivot::Touch::None => {}
+            pivot::Touch::Clear(cell) => {
+                self.reached = cell.to.clone();
+                self.cells.push(cell);
+                return Undecided::Covered;
+            }
+            pivot::Touch::Entered(cell) => return Undecided::Step(self.entered(a, a, Some(cell))),
+        }
+        if width > 2.0_f64.powf(-0.45 * f64::from(enclosure.bits)) {
+            return Undecided::Split;
+        }
+        Undecided::Step(Step::Stuck(a.clone(), b.clone()))
+    }
+}
+
+enum Undecided {
+    Split,
+    Covered,
+    Step(Step),
+}
+
+/// A rational with a short binary expansion near the middle of [a, b].
+pub(crate) fn simple_middle(a: &Rational, b: &Rational) -> Rational {
+    let middle = (a + b) / Rational::from_integer(2.into());
+    let width = b - a;
+    // 2^-k <= width / 64: rounding the middle to a multiple of it moves it by less than a hundredth of the width.
+    let k = 6 - (num_traits::ToPrimitive::to_f64(&width).unwrap_or(1.0)).log2().floor() as i64;
+    let power = Rational::from_integer(num_bigint::BigInt::from(1) << u64::try_from(k.clamp(0, 4000)).unwrap_or(0));
+    let rounded = (middle.clone() * &power).round() / power;
+    if *a < rounded && rounded < *b { rounded } else { middle }
+}

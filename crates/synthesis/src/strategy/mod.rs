@@ -1,0 +1,8 @@
+//! One file for each kind of evidence, named as the checker's rule.
+
+pub(crate) mod cone;
+pub(crate) mod cover;
+pub(crate) mod entry;
+pub(crate) mod equality;
+pub(crate) mod pivot;
+pub(crate) mod root;

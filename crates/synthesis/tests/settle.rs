@@ -1,0 +1,109 @@
+//! First whole cases: each verdict from a statement built by hand.
+
+use keepout_checker::statement::*;
+use keepout_synthesis::{Options, Outcome, certify};
+
+fn q(text: &str) -> Rational {
+    let (p, q) = text.split_once('/').unwrap_or((text, "1"));
+    Rational::new(p.parse().unwrap(), q.parse().unwrap())
+}
+
+/// x' = A x + c from x0, zone p rel 0 with p a list of (coefficient, powers of the states).
+fn statement(a: &[&[&str]], c: &[&str], x0: &[&str], p: &[(&str, &[u32])], relation: Relation) -> Statement {
+    let states = x0.iter().enumerate().map(|(i, s)| State { name: format!("x{i}"), unit: None, start: q(s) }).collect();
+    let rates = a
+        .iter()
+        .zip(c)
+        .map(|(row, c)| Affine {
+            terms: row.iter().enumerate().filter(|(_, v)| **v != "0").map(|(j, v)| (q(v), Variable::State(j))).collect(),
+            offset: q(c),
+        })
+        .collect();
+    let terms = p
+        .iter()
+        .map(|(c, powers)| Term {
+            coefficient: q(c),
+            powers: powers.iter().enumerate().filter(|(_, k)| **k > 0).map(|(i, k)| (Variable::State(i), *k)).collect(),
+        })
+        .collect();
+    Statement {
+        title: "case".into(),
+        states,
+        drives: vec![],
+        outputs: vec![],
+        phases: vec![Phase { rates }],
+        zone: Zone {
+            name: "zone".into(),
+            reference: None,
+            inside: Formula::Atom(Atom { polynomial: Expression { terms }, relation }),
+            from: q("0"),
+            until: None,
+        },
+        claim: Claim::Never { margin: q("0") },
+    }
+}
+
+fn word(s: &Statement) -> String {
+    let start = std::time::Instant::now();
+    let outcome = certify(s, &Options::default()).unwrap();
+    let time = start.elapsed();
+    let text = match &outcome {
+        Outcome::Clear { margin, .. } => format!("clear {:?}", margin.as_ref().map(|m| m.certified.to_string())),
+        Outcome::Enters { proof } => format!("enters {:?}", proof.statement().claim),
+        Outcome::Unsettled { reason, .. } => format!("unsettled {reason:?}"),
+    };
+    if let Outcome::Clear { proof, .. } | Outcome::Enters { proof } = &outcome {
+        let start = std::time::Instant::now();
+        keepout_checker::check(proof.statement(), proof.certificate(), &Default::default()).unwrap();
+        eprintln!("check {:?}, size {}", start.elapsed(), proof.certificate().to_json().print().len());
+    }
+    eprintln!("{text} in {time:?}");
+    text
+}
+
+#[test]
+fn step_response_overshoot_is_told_from_both_sides() {
+    // s^2+6s+25, step: sup y = 1 + exp(-3 pi/4) = 1.0947802248421...
+    let a: &[&[&str]] = &[&["0", "1"], &["-25", "-6"]];
+    for (limit, verdict) in [("-1095/1000", "clear"), ("-10947802259/10000000000", "clear"), ("-10947802237/10000000000", "enters"), ("-1", "enters")] {
+        let s = statement(a, &["0", "25"], &["0", "0"], &[("1", &[1, 0]), (limit, &[])], Relation::NonNegative);
+        assert!(word(&s).starts_with(verdict));
+    }
+}
+
+#[test]
+fn touches_at_the_start_are_exact() {
+    let decay: &[&[&str]] = &[&["-1"]];
+    let p: &[(&str, &[u32])] = &[("1", &[1]), ("-1", &[])];
+    assert!(word(&statement(decay, &["0"], &["1"], p, Relation::Positive)).starts_with("clear"));
+    assert!(word(&statement(decay, &["0"], &["1"], p, Relation::NonNegative)).starts_with("enters"));
+    let growth: &[&[&str]] = &[&["1"]];
+    assert!(word(&statement(growth, &["0"], &["1"], p, Relation::Positive)).starts_with("enters"));
+}
+
+#[test]
+fn rotations_are_settled() {
+    let a: &[&[&str]] = &[&["0", "1"], &["-1", "0"]];
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0]), ("-2", &[])];
+    assert!(word(&statement(a, &["0", "0"], &["1", "0"], p, Relation::NonNegative)).starts_with("clear"));
+    let p: &[(&str, &[u32])] = &[("1", &[2, 0]), ("1", &[0, 2]), ("-1", &[])];
+    assert!(word(&statement(a, &["0", "0"], &["1", "0"], p, Relation::Positive)).starts_with("clear"));
+    assert!(word(&statement(a, &["0", "0"], &["1", "0"], p, Relation::Zero)).starts_with("enters"));
+    let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-1", "0", "0", "0"], &["0", "0", "0", "1"], &["0", "0", "-2", "0"]];
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-201/100", &[])];
+    assert!(word(&statement(a, &["0"; 4], &["1", "0", "1", "0"], p, Relation::NonNegative)).starts_with("clear"));
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 1, 0]), ("-101/100", &[])];
+    assert!(word(&statement(a, &["0"; 4], &["1", "0", "1", "0"], p, Relation::NonNegative)).starts_with("clear"));
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-199/100", &[])];
+    assert!(word(&statement(a, &["0"; 4], &["1/2", "0", "3/2", "0"], p, Relation::NonNegative)).starts_with("enters"));
+}
+
+#[test]
+fn polynomial_times_exponential_touches_are_exact() {
+    // x = (t-2)^2/2 exp(-t): companion of (z+1)^3.
+    let a: &[&[&str]] = &[&["0", "1", "0"], &["0", "0", "1"], &["-1", "-3", "-3"]];
+    // x(0) = 2, x' = -2 - 2 = -4, x'' = 2 + 4 + 1 = 7
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0])];
+    assert!(word(&statement(a, &["0"; 3], &["2", "-4", "7"], p, Relation::Negative)).starts_with("clear"));
+    assert!(word(&statement(a, &["0"; 3], &["2", "-4", "7"], p, Relation::NonPositive)).starts_with("enters"));
+}
