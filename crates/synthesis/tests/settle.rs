@@ -107,3 +107,40 @@ fn polynomial_times_exponential_touches_are_exact() {
     assert!(word(&statement(a, &["0"; 3], &["2", "-4", "7"], p, Relation::Negative)).starts_with("clear"));
     assert!(word(&statement(a, &["0"; 3], &["2", "-4", "7"], p, Relation::NonPositive)).starts_with("enters"));
 }
+
+/// Clohessy-Wiltshire motion with mean motion 1/1000 (textbook equations, from memory), keep-out sphere of radius r.
+fn relative_motion(x0: &[&str], r2: &str) -> Statement {
+    let a: &[&[&str]] = &[
+        &["0", "0", "0", "1", "0", "0"],
+        &["0", "0", "0", "0", "1", "0"],
+        &["0", "0", "0", "0", "0", "1"],
+        &["3/1000000", "0", "0", "0", "1/500", "0"],
+        &["0", "0", "0", "-1/500", "0", "0"],
+        &["0", "0", "-1/1000000", "0", "0", "0"],
+    ];
+    let p: &[(&str, &[u32])] = &[("1", &[2]), ("1", &[0, 2]), ("1", &[0, 0, 2]), (r2, &[])];
+    statement(a, &["0"; 6], x0, p, Relation::NonPositive)
+}
+
+#[test]
+fn relative_orbits_are_settled() {
+    // Closed: y'(0) = -2 n x(0).
+    assert!(word(&relative_motion(&["100", "0", "30", "0", "-1/5", "0"], "-2500")).starts_with("clear"));
+    assert!(word(&relative_motion(&["100", "0", "30", "0", "-1/5", "0"], "-12000")).starts_with("enters"));
+    // Drifting away.
+    assert!(word(&relative_motion(&["100", "50", "30", "0", "-1/10", "1/100"], "-2500")).starts_with("clear"));
+    // Drifting through.
+    assert!(word(&relative_motion(&["5", "-2000", "0", "0", "-3/100", "0"], "-8000")).starts_with("enters"));
+}
+
+#[test]
+fn touches_at_transcendental_times_are_unsettled() {
+    let a: &[&[&str]] = &[&["0", "1"], &["-1", "0"]];
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0]), ("-1", &[])];
+    assert!(word(&statement(a, &["0", "0"], &["0", "1"], p, Relation::NonNegative)).starts_with("unsettled Touches"));
+    let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-1", "0", "0", "0"], &["0", "0", "0", "1"], &["0", "0", "-2", "0"]];
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-2", &[])];
+    assert!(word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("unsettled"));
+    let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-199/100", &[])];
+    assert!(word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("enters"));
+}
