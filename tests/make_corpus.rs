@@ -1,0 +1,359 @@
+//! Writes the corpus anew: certificates that must be verified, and for each obligation certificates that violate only it.
+//!
+//! Run with `cargo run -p keepout-tests --bin make_corpus`. Each case is checked against its expected answer before it is written;
+//! the corpus that is committed changes only where search or format do.
+
+use keepout_checker::certificate::{Angle, Cell, Certificate, Cone, Evidence, Node, Pivot, RealPart};
+use keepout_checker::number::Dyadic;
+use keepout_checker::statement::{Claim, Formula, Relation, Statement};
+use keepout_synthesis::{Options, Outcome, certify};
+use keepout_tests::case::{answer, corpus};
+use keepout_tests::system::{System, atom, rational};
+use std::fs;
+
+fn main() {
+    let bases = bases();
+    for folder in ["accept", "reject"] {
+        let _ = fs::remove_dir_all(corpus().join(folder));
+    }
+    for (rule, name, certificate) in &bases {
+        write("accept", rule, name, "verified", certificate);
+    }
+    let base = |name: &str| bases.iter().find(|(rule, n, _)| *n == name || format!("{n}@{rule}") == name).map(|(_, _, c)| c.clone()).expect("a base case");
+    reject_traces(&base);
+    reject_equalities(&base);
+    reject_covers(&base);
+    reject_cones(&base);
+    reject_entries(&base);
+}
+
+fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Certificate) {
+    let found = answer(certificate);
+    if found != expected {
+        eprintln!("{folder}/{rule}/{name}: expected {expected}, found {found}");
+        return;
+    }
+    let path = corpus().join(folder).join(rule);
+    fs::create_dir_all(&path).expect("a folder");
+    fs::write(path.join(format!("{name}.case")), format!("{expected}\n{}", certificate.to_json().print())).expect("a file");
+}
+
+fn reject(rule: &str, name: &str, expected: &str, mut certificate: Certificate, spoil: impl FnOnce(&mut Certificate)) {
+    spoil(&mut certificate);
+    write("reject", rule, name, expected, &certificate);
+}
+
+fn proved(statement: &Statement) -> Certificate {
+    let options = Options { margin: false, ..Options::default() };
+    match certify(statement, &options).expect("an outcome") {
+        Outcome::Clear { proof, .. } | Outcome::Enters { proof } => proof.certificate().clone(),
+        Outcome::Unsettled { reason, .. } => panic!("not settled: {reason:?}"),
+    }
+}
+
+/// The certificates that are accepted, by rule and name.
+fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
+    let decay = System::new("-1", "0", "1");
+    let servo = System::new("0 1; -25 -6", "0 25", "0 0");
+    let rotation = System::new("0 1; -1 0", "0 0", "1 0");
+    let two = System::new("0 1 0 0; -1 0 0 0; 0 0 0 1; 0 0 -2 0", "0 0 0 0", "1 0 1 0");
+    let ratio = System::new("0 1 0 0; -4 0 0 0; 0 0 0 1; 0 0 -9 0", "0 0 0 0", "1 0 1 0");
+    let cubic = System::new("0 1 0; 0 0 1; -1 -3 -3", "0 0 0", "2 -4 7");
+    // (t^2 - 2) exp(-t)
+    let irrational = System::new("0 1 0; 0 0 1; -1 -3 -3", "0 0 0", "-2 2 0");
+    let ramp = System::new("0 1; 0 0", "0 0", "0 1");
+    let lag = System::new("-1 1; 0 -1", "0 0", "0 1");
+    let nearby = System::new("0 1 0 0; -2 -2 0 0; 0 0 0 1; 0 0 -5 -2", "0 0 0 0", "1 0 1 0");
+    let x: &[u32] = &[1];
+    let y: &[u32] = &[0, 1];
+    let z: &[u32] = &[0, 0, 1];
+    let until = |statement: Statement, from: &str, until: &str| {
+        let mut statement = statement;
+        statement.zone.from = rational(from);
+        statement.zone.until = Some(rational(until));
+        statement
+    };
+    let above = |limit: &'static str| atom(&[("1", &[1]), (limit, &[])], Relation::NonNegative);
+    let all = |parts: Vec<Formula>| Formula::And(parts);
+    vec![
+        ("cover", "window", proved(&until(servo.statement(above("-11/10")), "0", "2"))),
+        ("cover", "one_instant", proved(&until(servo.statement(above("-11/10")), "1", "1"))),
+        ("cover", "start_touched", proved(&decay.statement(atom(&[("1", x), ("-1", &[])], Relation::Positive)))),
+        ("cover", "rational_time_touched", proved(&cubic.statement(atom(&[("1", x)], Relation::Negative)))),
+        ("cover", "irrational_time_touched", proved(&irrational.statement(all(vec![
+            atom(&[("1", x)], Relation::Zero),
+            atom(&[("1", y)], Relation::NonPositive),
+        ])))),
+        ("cover", "identity", proved(&rotation.statement(atom(&[("1", &[2]), ("1", &[0, 2]), ("-1", &[])], Relation::Positive)))),
+        ("trace", "step_response", proved(&servo.statement(above("-1095/1000")))),
+        ("trace", "defective", proved(&lag.statement(above("-37/100")))),
+        ("trace", "growing", proved(&ramp.statement(atom(&[("1", x), ("1", &[])], Relation::Negative)))),
+        ("cone", "limit", proved(&decay.statement(above("-2")))),
+        ("cone", "circle", proved(&rotation.statement(above("-3/2")))),
+        ("cone", "torus", proved(&two.statement(atom(&[("1", x), ("1", z), ("-201/100", &[])], Relation::NonNegative)))),
+        ("cone", "several_atoms", proved(&two.statement(all(vec![
+            atom(&[("1", x), ("-9/10", &[])], Relation::NonNegative),
+            atom(&[("1", y), ("-9/10", &[])], Relation::NonNegative),
+        ])))),
+        ("cone", "decaying_lead", proved(&lag.statement(atom(&[("1", x), ("1", y)], Relation::NonPositive)))),
+        ("cone", "common_damping", proved(&nearby.statement(all(vec![
+            atom(&[("1", &[2]), ("1", &[0, 2]), ("-40", &[0, 0, 2])], Relation::Positive),
+            atom(&[("1", &[0, 0, 2]), ("1", &[0, 0, 0, 2]), ("-40", &[2])], Relation::Positive),
+        ])))),
+        ("equality", "product_of_rotations", proved(&two.statement(atom(&[("1", &[1, 0, 1]), ("1", &[0, 0, 2]), ("-201/100", &[])], Relation::NonNegative)))),
+        ("equality", "commensurate", proved(&ratio.statement(atom(&[("1", x), ("1", z), ("16/10", &[])], Relation::NonPositive)))),
+        ("equality", "double_frequency", proved(&rotation.statement(atom(&[("1", &[2]), ("1", y), ("-3/2", &[])], Relation::NonNegative)))),
+        ("entry", "start", proved(&decay.statement(above("-1")))),
+        ("entry", "after_start", proved(&System::new("1", "0", "1").statement(atom(&[("1", x), ("-1", &[])], Relation::Positive)))),
+        ("entry", "instant", proved(&servo.statement(above("-109/100")))),
+        ("entry", "crossing", proved(&servo.statement(atom(&[("1", x), ("-1/2", &[])], Relation::Zero)))),
+        ("entry", "rational_time", proved(&cubic.statement(atom(&[("1", x)], Relation::NonPositive)))),
+        ("entry", "irrational_time", proved(&irrational.statement(all(vec![
+            atom(&[("1", x)], Relation::Zero),
+            atom(&[("1", y)], Relation::NonNegative),
+        ])))),
+    ]
+}
+
+fn cells(c: &mut Certificate) -> &mut Vec<Cell> {
+    match &mut c.evidence {
+        Evidence::Never { cells, .. } => cells,
+        Evidence::Enters { before, .. } => before,
+    }
+}
+
+fn cone(c: &mut Certificate) -> &mut Cone {
+    match &mut c.evidence {
+        Evidence::Never { cone: Some(cone), .. } => cone,
+        Evidence::Never { cone: None, .. } | Evidence::Enters { .. } => panic!("no cone"),
+    }
+}
+
+fn entry(c: &mut Certificate) -> (&mut keepout_checker::number::Rational, &mut Cell) {
+    match &mut c.evidence {
+        Evidence::Enters { from, cell, .. } => (from, cell),
+        Evidence::Never { .. } => panic!("no entry"),
+    }
+}
+
+fn first_leaf(cone: &mut Cone) -> &mut Vec<(usize, std::cmp::Ordering)> {
+    let leaf = cone.nodes.iter_mut().find_map(|n| if let Node::Leaf(signs) = n { Some(signs) } else { None });
+    leaf.expect("a leaf")
+}
+
+fn reject_traces(base: &impl Fn(&str) -> Certificate) {
+    let rule = "trace";
+    let separated = "inconclusive trace RootsAreSeparated";
+    reject(rule, "centre_far_off", separated, base("circle"), |c| {
+        c.families.iter_mut().flat_map(|f| &mut f.centres).for_each(|centre| centre.0 = Dyadic::new(99.into(), 3));
+    });
+    reject(rule, "same_root_in_two_families", separated, base("step_response"), |c| {
+        let copy = c.families[0].clone();
+        c.families.push(copy);
+    });
+    reject(rule, "double_root_in_one_family", separated, base("defective"), |c| {
+        let family = &mut c.families[0];
+        family.polynomial = family.polynomial.mul(&family.polynomial.clone());
+        let centre = family.centres[0].clone();
+        family.centres.push(centre);
+    });
+    let annihilates = "refuted trace FactorsAnnihilateTrace";
+    reject(rule, "factor_missing", annihilates, base("step_response"), |c| drop(c.traces[0].pop()));
+    reject(rule, "multiplicity_too_small", annihilates, base("defective"), |c| {
+        c.traces[0].iter_mut().for_each(|f| f.multiplicity = 1);
+    });
+    reject(rule, "factor_twice", annihilates, base("step_response"), |c| {
+        let copy = c.traces[0][0];
+        c.traces[0].push(copy);
+    });
+    reject(rule, "no_factor_at_all", annihilates, base("limit"), |c| c.traces[0].clear());
+    reject(rule, "start_changed", annihilates, base("identity"), |c| c.statement.states[0].start = rational("2"));
+    reject(rule, "a_trace_too_many", "refuted trace EvidenceFitsClaim", base("one_instant"), |c| c.traces.push(vec![]));
+    reject(rule, "margin_on_a_conjunction", "refuted trace EvidenceFitsClaim", base("several_atoms"), |c| {
+        c.statement.claim = Claim::Never { margin: rational("1/100") };
+    });
+    reject(rule, "derivative_missing", "refuted trace ClosedFormIsEnclosed", base("rational_time_touched"), |c| {
+        c.auxiliaries[0].derivatives.pop();
+    });
+    let product = "refuted trace ProductEqualsTrace";
+    reject(rule, "cofactor_changed", product, base("rational_time_touched"), |c| {
+        let position = c.products[0].cofactor;
+        c.auxiliaries[position].derivatives[0] += rational("1/1000000000000");
+    });
+    reject(rule, "pivot_changed", product, base("rational_time_touched"), |c| {
+        let position = c.products[0].pivot;
+        c.auxiliaries[position].derivatives[0] += rational("1/1000000000000");
+    });
+    reject(rule, "power_changed", product, base("rational_time_touched"), |c| c.products[0].power += 1);
+}
+
+fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
+    let rule = "equality";
+    let roots = "refuted equality SumsAreRoots";
+    reject(rule, "multiplier_changed", roots, base("double_frequency"), |c| c.sums[0].parts[0].0 += 1);
+    reject(rule, "factor_multiplicity_changed", roots, base("product_of_rotations"), |c| c.sums[0].factors[0].multiplicity += 1);
+    reject(rule, "factor_missing", roots, base("product_of_rotations"), |c| drop(c.sums[0].factors.pop()));
+    reject(rule, "another_root_named", "refuted equality SumIsIdentified", base("double_frequency"), |c| {
+        c.sums[0].root.conjugate = !c.sums[0].root.conjugate;
+    });
+    reject(rule, "line_moved", "refuted equality RootIsOnLine", base("torus"), |c| {
+        for lead in cone(c).leads.iter_mut().flatten() {
+            lead.real_part = RealPart::Line(rational("1/1000000"));
+        }
+    });
+}
+
+fn reject_covers(base: &impl Fn(&str) -> Certificate) {
+    let rule = "cover";
+    let covers = "refuted cover CellsCoverWindow";
+    reject(rule, "last_cell_missing", covers, base("window"), |c| drop(cells(c).pop()));
+    reject(rule, "no_cell", covers, base("window"), |c| cells(c).clear());
+    reject(rule, "cells_go_back", covers, base("window"), |c| cells(c)[0].to = rational("-1"));
+    reject(rule, "window_longer", covers, base("one_instant"), |c| c.statement.zone.until = Some(rational("3")));
+    reject(rule, "gap_before_the_cone", covers, base("step_response"), |c| drop(cells(c).pop()));
+    reject(rule, "sign_flipped", "refuted cover SignOnCell", base("window"), |c| {
+        let sign = &mut cells(c)[0].signs[0].1;
+        *sign = sign.reverse();
+    });
+    reject(rule, "strict_sign_said_to_be_zero", "refuted cover SignOnCell", base("window"), |c| cells(c)[0].signs[0].1 = std::cmp::Ordering::Equal);
+    reject(rule, "too_few_terms", "inconclusive cover SignOnCell", base("window"), |c| cells(c)[0].order = 1);
+    reject(rule, "too_few_bits", "inconclusive trace ClosedFormIsEnclosed", base("window"), |c| c.bits = 2);
+    reject(rule, "one_cell_too_long", "inconclusive cover SignOnCell", base("window"), |c| {
+        let last = cells(c).pop().expect("a cell");
+        *cells(c) = vec![last];
+    });
+    reject(rule, "does_not_vanish_to_that_order", "refuted cover VanishesAtStart", base("start_touched"), |c| {
+        if let Pivot::Start(listed) = &mut cells(c)[0].pivot {
+            listed[0].1 += 1;
+        }
+    });
+    reject(rule, "start_pivot_elsewhere", "refuted cover VanishesAtStart", base("start_touched"), |c| c.statement.zone.from = rational("1/1000"));
+    reject(rule, "sign_after_start_flipped", "refuted cover SignOnCell", base("start_touched"), |c| {
+        if let Pivot::Start(listed) = &mut cells(c)[0].pivot {
+            listed[0].2 = listed[0].2.reverse();
+        }
+    });
+    reject(rule, "closed_zone_touched_at_the_start", "refuted cover ZoneIsRefutedOnCell", base("start_touched"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.relation = Relation::NonNegative;
+        }
+    });
+    reject(rule, "closed_zone_touched_later", "refuted cover ZoneIsRefutedOnCell", base("rational_time_touched"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.relation = Relation::NonPositive;
+        }
+    });
+    reject(rule, "signs_do_not_refute", "refuted cover ZoneIsRefutedOnCell", base("window"), |c| cells(c)[0].signs.clear());
+    reject(rule, "no_cone_and_no_end", "refuted cover EvidenceFitsClaim", base("step_response"), |c| {
+        if let Evidence::Never { cone, .. } = &mut c.evidence {
+            *cone = None;
+        }
+    });
+    reject(rule, "evidence_of_another_kind", "refuted cover EvidenceFitsClaim", base("step_response"), |c| {
+        c.statement.claim = Claim::Enters { from: rational("0"), to: rational("1"), first: false };
+    });
+}
+
+fn reject_cones(base: &impl Fn(&str) -> Certificate) {
+    let rule = "cone";
+    reject(rule, "starts_at_zero", "refuted cone CellsCoverWindow", base("limit"), |c| {
+        cone(c).from = rational("0");
+        cells(c).clear();
+    });
+    reject(rule, "starts_too_early", "inconclusive cone SignOnLeaf", base("step_response"), |c| {
+        let keep = cells(c)[0].clone();
+        cone(c).from = keep.to.clone();
+        *cells(c) = vec![keep];
+    });
+    reject(rule, "lower_term_still_rising", "inconclusive cone LowerTermDecreases", base("defective"), |c| {
+        let keep = Cell { to: rational("1/100"), ..cells(c)[0].clone() };
+        cone(c).from = keep.to.clone();
+        *cells(c) = vec![keep];
+    });
+    reject(rule, "leading_root_left_out", "inconclusive cone LowerRealPartIsLess", base("torus"), |c| {
+        cone(c).leads.iter_mut().flatten().for_each(|lead| drop(lead.roots.pop()));
+    });
+    reject(rule, "no_reason_for_equal_rates", "refuted cone RealPartsAreEqual", base("torus"), |c| {
+        cone(c).leads.iter_mut().flatten().for_each(|lead| lead.real_part = RealPart::Single);
+    });
+    reject(rule, "root_without_an_angle_leads", "refuted cone AngleIsCombination", base("step_response"), |c| {
+        let lead = cone(c).leads[0].as_mut().expect("a lead");
+        lead.roots[0] = 1 - lead.roots[0];
+    });
+    let combination = "refuted cone AngleIsCombination";
+    reject(rule, "turns_changed", combination, base("torus"), |c| cone(c).angles[0].turns[0] += 1);
+    reject(rule, "turns_of_a_sum_changed", combination, base("double_frequency"), |c| {
+        let angle: &mut Angle = cone(c).angles.iter_mut().find(|a| a.sum.is_some()).expect("a sum");
+        angle.turns[0] -= 1;
+    });
+    reject(rule, "angle_missing", combination, base("torus"), |c| drop(cone(c).angles.pop()));
+    reject(rule, "base_swapped", combination, base("torus"), |c| cone(c).base.swap(0, 1));
+    reject(rule, "sign_flipped", "refuted cone SignOnLeaf", base("torus"), |c| {
+        let sign = &mut first_leaf(cone(c))[0].1;
+        *sign = sign.reverse();
+    });
+    reject(rule, "torus_not_split", "inconclusive cone SignOnLeaf", base("torus"), |c| {
+        let leaf = Node::Leaf(first_leaf(cone(c)).clone());
+        cone(c).nodes = vec![leaf];
+    });
+    reject(rule, "signs_do_not_refute", "refuted cone ZoneIsRefutedOnLeaf", base("torus"), |c| first_leaf(cone(c)).clear());
+    reject(rule, "last_leaf_missing", "refuted cone LeavesCoverTorus", base("torus"), |c| drop(cone(c).nodes.pop()));
+    reject(rule, "a_leaf_too_many", "refuted cone LeavesCoverTorus", base("torus"), |c| {
+        let leaf = Node::Leaf(first_leaf(cone(c)).clone());
+        cone(c).nodes.push(leaf);
+    });
+    reject(rule, "sign_without_a_lead", "refuted cone SignOnLeaf", base("circle"), |c| cone(c).leads[0] = None);
+    reject(rule, "zone_nearer", "inconclusive cover SignOnCell", base("torus"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.polynomial.terms[2].coefficient = rational("-2");
+        }
+    });
+}
+
+fn reject_entries(base: &impl Fn(&str) -> Certificate) {
+    let rule = "entry";
+    let in_window = "refuted entry InstantIsInWindow";
+    reject(rule, "outside_the_bracket", in_window, base("instant@entry"), |c| {
+        c.statement.claim = Claim::Enters { from: rational("0"), to: rational("1/10"), first: false };
+        cells(c).clear();
+    });
+    reject(rule, "after_the_window", in_window, base("instant@entry"), |c| c.statement.zone.until = Some(rational("1/2")));
+    reject(rule, "before_the_window", in_window, base("instant@entry"), |c| c.statement.zone.from = rational("1"));
+    reject(rule, "cell_goes_back", in_window, base("crossing"), |c| {
+        let (from, cell) = entry(c);
+        std::mem::swap(from, &mut cell.to);
+        let (from, to) = (cell.to.clone(), from.clone());
+        c.statement.claim = Claim::Enters { from, to, first: false };
+        cells(c).clear();
+    });
+    reject(rule, "sign_flipped", "refuted entry SignOnCell", base("instant@entry"), |c| {
+        let sign = &mut entry(c).1.signs[0].1;
+        *sign = sign.reverse();
+    });
+    reject(rule, "sign_at_zero_flipped", "refuted entry SignOnCell", base("start"), |c| entry(c).1.signs[0].1 = std::cmp::Ordering::Less);
+    reject(rule, "pivot_keeps_its_sign", "refuted entry PivotChangesSign", base("crossing"), |c| {
+        let (from, cell) = entry(c);
+        cell.to = from.clone();
+    });
+    reject(rule, "signs_do_not_prove", "refuted entry ZoneIsProvedAtInstant", base("instant@entry"), |c| entry(c).1.signs.clear());
+    reject(rule, "crossing_without_its_product", "refuted entry ZoneIsProvedAtInstant", base("crossing"), |c| {
+        if let Pivot::Auxiliary(_, listed) = &mut entry(c).1.pivot {
+            listed.clear();
+        }
+    });
+    reject(rule, "open_zone_touched_only", "refuted entry ZoneIsProvedAtInstant", base("rational_time"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.relation = Relation::Negative;
+        }
+        cells(c).clear();
+        if let Claim::Enters { first, .. } = &mut c.statement.claim {
+            *first = false;
+        }
+    });
+    reject(rule, "first_without_a_cover", "refuted cover CellsCoverWindow", base("instant@entry"), |c| cells(c).clear());
+    reject(rule, "cover_that_nobody_asked_for", "refuted cover EvidenceFitsClaim", base("instant@entry"), |c| {
+        if let Claim::Enters { first, .. } = &mut c.statement.claim {
+            *first = false;
+        }
+    });
+}

@@ -1,0 +1,4 @@
+//! What the tests share: small statements from matrices, and the corpus of certificates.
+
+pub mod case;
+pub mod system;
