@@ -1,4 +1,4 @@
-//! Characteristic and minimal polynomials of rational matrices.
+//! Characteristic polynomials of rational matrices.
 //!
 //! With d_i the common denominator of row i and R = diag(d) A, the polynomial det(diag(d) z - R) = d_1...d_n chi(z)
 //! has integer coefficients. Its coefficient of z^(n-k) is a sum of binom(n,k) products of a k x k minor of R and n-k scales, so
@@ -44,7 +44,7 @@ pub fn characteristic_polynomial(a: &RationalMatrix) -> Result<IntegerPolynomial
         let field = large_field(index);
         let Some(matrix) = modular_matrix(&field, &scales, &scaled) else { continue };
         let mut chi = hessenberg_characteristic(&field, matrix, n);
-        let factor = field.from_integer(&product);
+        let factor = field.residue_of(&product);
         if !product.is_one() {
             for c in &mut chi {
                 *c = field.mul(*c, factor);
@@ -76,12 +76,12 @@ fn coefficient_bits(scales: &[BigInt], scaled: &IntegerMatrix) -> u64 {
 fn modular_matrix(field: &Field, scales: &[BigInt], scaled: &IntegerMatrix) -> Option<Vec<u64>> {
     let mut matrix = Vec::with_capacity(scaled.entries().len());
     for (i, scale) in scales.iter().enumerate() {
-        let row = scaled.row(i).iter().map(|e| field.from_integer(e));
+        let row = scaled.row(i).iter().map(|e| field.residue_of(e));
         if scale.is_one() {
             matrix.extend(row);
             continue;
         }
-        let residue = field.from_integer(scale);
+        let residue = field.residue_of(scale);
         if residue == 0 {
             return None;
         }
@@ -153,87 +153,4 @@ fn reduce_to_hessenberg(field: &Field, h: &mut [u64], n: usize) {
             row[k + 1] = field.add(row[k + 1], sum);
         }
     }
-}
-
-/// The primitive integer multiple of the minimal polynomial of A at v: the m of least degree with m(A) v = 0.
-///
-/// # Errors
-/// [`CoreError::NotSquare`]; [`CoreError::Shape`] if v has not n entries.
-///
-/// # Guarantee
-/// m(A) v = 0 is verified in integers; the degree is minimal because the rank of v, Av, A^2 v, ... modulo a prime is never above the rank over
-/// the rationals.
-pub fn minimal_polynomial_at(
-    a: &RationalMatrix,
-    v: &[keepout_checker::number::Rational],
-) -> Result<IntegerPolynomial, CoreError> {
-    let n = a.order()?;
-    if v.len() != n {
-        return Err(CoreError::Shape { what: "vector", expected: n, found: v.len() });
-    }
-    let (d, b) = a.common_scaled();
-    let start = IntegerPolynomial::from_rationals(v);
-    let start: Vec<BigInt> = (0..n).map(|i| start.coefficient(i)).collect();
-    // The minimal polynomial of the integer matrix B = d A at v is monic over the integers; m(z) = m_B(d z).
-    let mut krylov = vec![start];
-    let mut best = 0;
-    let mut lifted = Reconstruction::default();
-    for index in 0.. {
-        let field = large_field(index);
-        let matrix: Vec<u64> = b.entries().iter().map(|e| field.from_integer(e)).collect();
-        let vector: Vec<u64> = krylov[0].iter().map(|e| field.from_integer(e)).collect();
-        let m = modular_minimal_polynomial(&field, &matrix, vector);
-        let degree = m.len() - 1;
-        if degree < best {
-            continue;
-        }
-        if degree > best {
-            best = degree;
-            lifted = Reconstruction::default();
-        }
-        if lifted.push(field, &m) {
-            let candidate = IntegerPolynomial::new(lifted.values());
-            while krylov.len() <= degree {
-                krylov.push(b.apply(&krylov[krylov.len() - 1]));
-            }
-            let vanishes = (0..n).all(|i| {
-                let sum: BigInt = candidate.coefficients().iter().zip(&krylov).map(|(c, x)| c * &x[i]).sum();
-                sum == BigInt::ZERO
-            });
-            if vanishes {
-                return Ok(candidate.dilate_up(&d).primitive_part());
-            }
-        }
-    }
-    unreachable!("finitely many primes are unlucky, and the polynomial has finitely many bits")
-}
-
-/// The monic dependency of least degree among v, Bv, B^2 v, ... modulo p.
-fn modular_minimal_polynomial(field: &Field, matrix: &[u64], start: Vec<u64>) -> Vec<u64> {
-    let n = start.len();
-    // Each reduced row: (pivot column, vector with pivot 1, its combination of Krylov vectors).
-    let mut rows: Vec<(usize, Vec<u64>, Vec<u64>)> = Vec::new();
-    let mut vector = start;
-    for step in 0..=n {
-        let mut reduced = vector.clone();
-        let mut combination = vec![0; step + 1];
-        combination[step] = field.one();
-        for (pivot, row, weights) in &rows {
-            let minus = field.neg(reduced[*pivot]);
-            if minus != 0 {
-                for (slot, r) in reduced.iter_mut().zip(row) {
-                    *slot = field.add(*slot, field.mul(minus, *r));
-                }
-                for (slot, w) in combination.iter_mut().zip(weights) {
-                    *slot = field.add(*slot, field.mul(minus, *w));
-                }
-            }
-        }
-        let Some(pivot) = reduced.iter().position(|e| *e != 0) else { return combination };
-        let inverse = field.inverse(reduced[pivot]);
-        let scale = |v: Vec<u64>| v.into_iter().map(|e| field.mul(e, inverse)).collect::<Vec<_>>();
-        rows.push((pivot, scale(reduced), scale(combination)));
-        vector = matrix.chunks_exact(n).map(|row| field.dot(row, &vector)).collect();
-    }
-    unreachable!("n + 1 vectors of length n are dependent")
 }

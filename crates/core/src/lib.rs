@@ -5,6 +5,7 @@
 //! matrix exponentials, and the ring of exponential polynomials. Floating-point numbers occur only in `approx` modules, in functions whose
 //! names start with `approx_`; what they return is a proposal that is proved before it is used.
 
+pub mod blocks;
 pub mod characteristic;
 mod error;
 pub mod factor;
@@ -12,14 +13,19 @@ pub mod integer_polynomial;
 pub mod lattice;
 pub mod linear_recurrence;
 pub mod matrix;
+pub mod minimal_polynomial;
 mod modular;
 mod modular_polynomial;
 pub mod root;
+pub mod structure;
 
-pub use characteristic::{characteristic_polynomial, minimal_polynomial_at};
+pub use blocks::SparseMatrix;
+pub use characteristic::characteristic_polynomial;
 pub use error::CoreError;
 pub use factor::{Factor, Factorization, Irreducibility, factorize};
 pub use integer_polynomial::IntegerPolynomial;
 pub use linear_recurrence::minimal_annihilator;
+pub use minimal_polynomial::{minimal_polynomial, minimal_polynomial_at};
+pub use structure::{SpectralStructure, spectral_structure};
 pub use root::{RootDisc, enclose_roots};
 pub use matrix::{IntegerMatrix, RationalMatrix};

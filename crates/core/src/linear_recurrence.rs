@@ -40,7 +40,7 @@ pub fn minimal_annihilator(sequence: &[BigInt]) -> Option<IntegerPolynomial> {
     let mut lifted = Reconstruction::default();
     for index in 0..cap {
         let field = large_field(index);
-        let residues: Vec<u64> = sequence.iter().map(|y| field.from_integer(y)).collect();
+        let residues: Vec<u64> = sequence.iter().map(|y| field.residue_of(y)).collect();
         let connection = berlekamp_massey(&field, &residues);
         let degree = connection.len() - 1;
         if 2 * degree > sequence.len() {

@@ -103,15 +103,15 @@ impl Field {
         self.pow(a, self.p - 2)
     }
 
-    pub(crate) fn from_u64(&self, value: u64) -> u64 {
+    pub(crate) fn residue(&self, value: u64) -> u64 {
         self.mul(value % self.p, self.square)
     }
 
     /// The residue of an integer.
-    pub(crate) fn from_integer(&self, value: &BigInt) -> u64 {
+    pub(crate) fn residue_of(&self, value: &BigInt) -> u64 {
         let magnitude = value.magnitude();
         let residue = match magnitude.to_u64() {
-            Some(small) => self.from_u64(small),
+            Some(small) => self.residue(small),
             None => {
                 // Horner in 2^64: multiplying by square = R^2 in Montgomery form multiplies by R.
                 let mut sum = 0;
@@ -151,7 +151,7 @@ fn is_prime(n: u64) -> bool {
     let (twos, odd) = ((n - 1).trailing_zeros(), (n - 1) >> (n - 1).trailing_zeros());
     let minus_one = field.neg(field.one());
     BASES.iter().all(|&b| {
-        let mut x = field.pow(field.from_u64(b), odd);
+        let mut x = field.pow(field.residue(b), odd);
         if x == field.one() || x == minus_one {
             return true;
         }
@@ -200,10 +200,10 @@ impl Reconstruction {
     /// Adds the residues (Montgomery form) for one more prime; whether every new digit is 0.
     pub(crate) fn push(&mut self, field: Field, residues: &[u64]) -> bool {
         let signed = |d: i64| {
-            let r = field.from_u64(d.unsigned_abs());
+            let r = field.residue(d.unsigned_abs());
             if d < 0 { field.neg(r) } else { r }
         };
-        let primes: Vec<u64> = self.fields.iter().map(|f| field.from_u64(f.prime())).collect();
+        let primes: Vec<u64> = self.fields.iter().map(|f| field.residue(f.prime())).collect();
         let product = primes.iter().fold(field.one(), |m, p| field.mul(m, *p));
         let inverse = field.inverse(product);
         let mut row = Vec::with_capacity(residues.len());
@@ -247,7 +247,7 @@ mod tests {
         for k in 0..40u32 {
             value = value * BigInt::from(0x9e37_79b9_7f4a_7c15u64) + BigInt::from(k);
             let expected = num_integer::Integer::mod_floor(&value, &BigInt::from(field.prime()));
-            assert_eq!(BigInt::from(field.to_u64(field.from_integer(&value))), expected);
+            assert_eq!(BigInt::from(field.to_u64(field.residue_of(&value))), expected);
         }
     }
 
@@ -257,7 +257,7 @@ mod tests {
         let mut reconstruction = Reconstruction::default();
         for index in 0.. {
             let field = large_field(index);
-            let residues: Vec<u64> = values.iter().map(|v| field.from_integer(v)).collect();
+            let residues: Vec<u64> = values.iter().map(|v| field.residue_of(v)).collect();
             if reconstruction.push(field, &residues) {
                 break;
             }

@@ -98,7 +98,7 @@ pub(crate) fn bezout(f: &Field, a: &[u64], b: &[u64]) -> (Residues, Residues) {
 }
 
 pub(crate) fn derivative(f: &Field, a: &[u64]) -> Residues {
-    trim(a.iter().enumerate().skip(1).map(|(k, c)| f.mul(*c, f.from_u64(k as u64))).collect())
+    trim(a.iter().enumerate().skip(1).map(|(k, c)| f.mul(*c, f.residue(k as u64))).collect())
 }
 
 /// base^exponent modulo `modulus`, exponent given by its bits from the top.

@@ -55,9 +55,9 @@ fn naive_determinant(a: &RationalMatrix, z: &BigRational) -> BigRational {
         det *= m[k][k].clone();
         for i in k + 1..n {
             let f = &m[i][k] / &m[k][k];
-            for j in k..n {
-                let t = &f * &m[k][j];
-                m[i][j] -= t;
+            let (head, tail) = m.split_at_mut(i);
+            for (slot, e) in tail[0][k..].iter_mut().zip(&head[k][k..]) {
+                *slot -= &f * e;
             }
         }
     }

@@ -15,6 +15,9 @@ const FIRST_PRIME: u64 = 29;
 /// So many good primes are compared.
 const TRIED_PRIMES: usize = 6;
 
+/// Pairs (g, d): g the product of all irreducible factors of degree d.
+type DegreeParts = Vec<(mp::Residues, usize)>;
+
 /// The factors modulo one prime.
 pub(super) struct ModularFactors {
     pub(super) field: Field,
@@ -26,7 +29,7 @@ pub(super) struct ModularFactors {
 
 /// The factorisation modulo the most favourable of a few primes. f is square-free of degree >= 2.
 pub(super) fn best_modular_factors(f: &IntegerPolynomial) -> ModularFactors {
-    let mut best: Option<(usize, Field, Vec<(mp::Residues, usize)>)> = None;
+    let mut best: Option<(usize, Field, DegreeParts)> = None;
     let mut possible: BTreeSet<usize> = (0..=f.degree()).collect();
     let mut good = 0;
     for p in small_primes(FIRST_PRIME) {
@@ -72,8 +75,8 @@ fn subset_sums(degrees: &[usize]) -> BTreeSet<usize> {
     sums
 }
 
-/// Pairs (g, d): g the product of all irreducible factors of degree d.
-fn distinct_degree(field: &Field, f: &[u64]) -> Vec<(mp::Residues, usize)> {
+/// Splits a monic square-free polynomial by the degrees of its factors.
+fn distinct_degree(field: &Field, f: &[u64]) -> DegreeParts {
     let mut parts = Vec::new();
     let mut rest = f.to_vec();
     let exponent = mp::bits_of(&BigUint::from(field.prime()));
@@ -106,7 +109,7 @@ fn equal_degree(field: &Field, g: mp::Residues, d: usize, state: &mut u64, facto
     }
     let exponent = mp::bits_of(&((BigUint::from(field.prime()).pow(d as u32) - 1u32) / 2u32));
     loop {
-        let random = mp::trim((1..g.len()).map(|_| field.from_u64(xorshift(state))).collect());
+        let random = mp::trim((1..g.len()).map(|_| field.residue(xorshift(state))).collect());
         let power = mp::pow_mod(field, &random, &exponent, &g);
         let split = mp::gcd(field, &g, &mp::sub(field, &power, &[field.one()]));
         if split.len() > 1 && split.len() < g.len() {

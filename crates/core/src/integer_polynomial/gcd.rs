@@ -12,7 +12,7 @@ use num_integer::Integer;
 impl IntegerPolynomial {
     /// The residues of the coefficients, trimmed.
     pub(crate) fn residues(&self, field: &Field) -> mp::Residues {
-        mp::trim(self.coefficients.iter().map(|c| field.from_integer(c)).collect())
+        mp::trim(self.coefficients.iter().map(|c| field.residue_of(c)).collect())
     }
 
     /// The primitive greatest common divisor over the rationals, leading coefficient positive; gcd(0, 0) = 0.
@@ -49,7 +49,7 @@ impl IntegerPolynomial {
                 best = degree;
                 lifted = Reconstruction::default();
             }
-            let stable = lifted.push(field, &mp::scale(&field, &g, field.from_integer(&lead)));
+            let stable = lifted.push(field, &mp::scale(&field, &g, field.residue_of(&lead)));
             if stable || index == 0 {
                 let candidate = Self::new(lifted.values()).primitive_part();
                 if a.divide_exact(&candidate).is_some() && b.divide_exact(&candidate).is_some() {
@@ -58,6 +58,15 @@ impl IntegerPolynomial {
             }
         }
         unreachable!("the primes below 2^62 are more than any operand has bits")
+    }
+
+    /// The primitive least common multiple; 0 if an operand is 0.
+    pub fn lcm(&self, other: &Self) -> Self {
+        if self.is_zero() || other.is_zero() {
+            return Self::zero();
+        }
+        let reduced = self.divide_exact(&self.gcd(other)).unwrap_or_else(|| unreachable!("a gcd divides"));
+        (&reduced * other).primitive_part()
     }
 
     /// Whether no square of a non-constant polynomial divides this one.

@@ -31,10 +31,6 @@ impl Magnitude {
         Self { mantissa: mantissa.into(), exponent }
     }
 
-    pub(crate) fn is_zero(&self) -> bool {
-        self.mantissa == 0
-    }
-
     /// The least k with value < 2^k; very negative for 0.
     pub(crate) fn top(&self) -> i64 {
         if self.mantissa == 0 {

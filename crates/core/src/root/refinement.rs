@@ -4,7 +4,7 @@
 //! each point moves by -W_i. In a *mirrored* set only real points and points of the upper half plane are stored; the conjugates are
 //! implied. A *free* set stores all points: it is used when the proposals are not mirror images, until it becomes clear which roots are real.
 
-use super::approx::{ApproxComplex, ScaledComplex, approx_parts, approx_roots};
+use super::approx::{ApproxComplex, ScaledComplex, approx_roots};
 use super::evaluation::{Point, Value, evaluate};
 use super::magnitude::Magnitude;
 use super::RootDisc;
@@ -329,6 +329,7 @@ impl Denominator {
 
 #[cfg(test)]
 mod tests {
+    use super::super::approx::approx_parts;
     use super::*;
 
     #[test]
