@@ -1,7 +1,10 @@
 //! Prints the running times of the main algorithms on fixed pseudo-random inputs.
 
-use keepout_core::{IntegerPolynomial, RationalMatrix, characteristic_polynomial, enclose_roots, factorize};
+use keepout_core::{
+    IntegerPolynomial, RationalMatrix, characteristic_polynomial, enclose_exponential, enclose_roots, factorize, spectral_structure,
+};
 use num_bigint::BigInt;
+use num_rational::BigRational;
 use std::time::Instant;
 
 struct Source(u64);
@@ -50,4 +53,17 @@ fn main() {
     time("roots of (z-1)...(z-20), 64 bits", || enclose_roots(&wilkinson, 64));
     let shifted = IntegerPolynomial::new(wilkinson.coefficients().iter().map(|c| c + BigInt::from(1)).collect());
     time("roots of (z-1)...(z-20) + sum z^k, 64 bits", || enclose_roots(&shifted, 64));
+    let one = BigRational::from_integer(1.into());
+    for n in [5, 20, 60, 100] {
+        let rows: Vec<Vec<BigRational>> = (0..n)
+            .map(|_| (0..n).map(|_| BigRational::new(source.next(99).into(), (50 + source.next(49)).into())).collect())
+            .collect();
+        let Ok(a) = RationalMatrix::new(&rows) else { continue };
+        for bits in [53, 300] {
+            time(&format!("exponential, n = {n}, {bits} bits"), || enclose_exponential(&a, &one, bits));
+        }
+        if n <= 60 {
+            time(&format!("structure, rational entries, n = {n}"), || spectral_structure(&a));
+        }
+    }
 }

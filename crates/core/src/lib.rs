@@ -8,6 +8,7 @@
 pub mod blocks;
 pub mod characteristic;
 mod error;
+pub mod exponential;
 pub mod factor;
 pub mod integer_polynomial;
 pub mod lattice;
@@ -22,6 +23,7 @@ pub mod structure;
 pub use blocks::SparseMatrix;
 pub use characteristic::characteristic_polynomial;
 pub use error::CoreError;
+pub use exponential::{IntervalMatrix, enclose_exponential};
 pub use factor::{Factor, Factorization, Irreducibility, factorize};
 pub use integer_polynomial::IntegerPolynomial;
 pub use linear_recurrence::minimal_annihilator;

@@ -144,3 +144,34 @@ fn repeated_factors_constants_and_huge_requests_are_refused() {
     assert_eq!(enclose_roots(&small(&[7]), 50), Err(CoreError::ConstantPolynomial));
     assert!(matches!(enclose_roots(&small(&[-2, 0, 1]), u32::MAX), Err(CoreError::LimitExceeded { .. })));
 }
+
+#[test]
+fn independent_ball_library_finds_the_same_roots() {
+    for line in include_str!("oracle/roots.txt").lines() {
+        let (coefficients, values) = line.split_once(" | ").unwrap();
+        let p = IntegerPolynomial::new(coefficients.split(' ').map(|c| c.parse().unwrap()).collect());
+        let discs = check(&p, 100);
+        let mut free: Vec<&RootDisc> = discs.iter().collect();
+        for value in values.split(' ') {
+            let (re, im) = value.split_once(',').unwrap();
+            let (re, im) = (decimal(re), decimal(im));
+            let place = free.iter().position(|d| {
+                let (dx, dy) = (rational(&d.re) - &re, rational(&d.im) - &im);
+                // The printed value has 40 digits: more than 120 bits.
+                let slack = rational(&d.radius) + (re.abs() + im.abs()) / BigRational::from_integer(BigInt::from(1) << 120);
+                dx.clone() * dx + dy.clone() * dy <= slack.clone() * slack
+            });
+            assert!(place.is_some(), "{value} of {line}");
+            free.remove(place.unwrap());
+        }
+        assert!(free.is_empty());
+    }
+}
+
+fn decimal(text: &str) -> BigRational {
+    let (mantissa, exponent) = text.split_once('e').unwrap_or((text, "0"));
+    let (whole, fraction) = mantissa.split_once('.').unwrap_or((mantissa, ""));
+    let digits: BigInt = format!("{whole}{fraction}").parse().unwrap();
+    let exponent = exponent.parse::<i32>().unwrap() - fraction.len() as i32;
+    BigRational::from_integer(digits) * BigRational::from_integer(10.into()).pow(exponent)
+}

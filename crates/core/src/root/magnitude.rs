@@ -49,6 +49,11 @@ impl Magnitude {
         Self { mantissa, exponent: exponent + i64::from(excess) }
     }
 
+    /// Not below value * 2^exponent.
+    pub(crate) fn wide_hi(value: u128, exponent: i64) -> Self {
+        Self::from_wide(value, exponent, true)
+    }
+
     fn from_integer(value: &BigInt, exponent: i64, up: bool) -> Self {
         let bits = value.bits();
         if bits <= u64::from(MANTISSA_BITS) {
