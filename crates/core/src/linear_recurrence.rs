@@ -32,10 +32,10 @@ pub fn minimal_annihilator(sequence: &[BigInt]) -> Option<IntegerPolynomial> {
     if sequence.iter().all(Zero::is_zero) {
         return Some(IntegerPolynomial::one());
     }
-    // A monic m of degree d with coefficients that satisfy the terms has no size bound that we could use here;
-    // the cap only ends the search for sequences without integer annihilator.
-    let largest = sequence.iter().map(BigInt::bits).max().unwrap_or(0);
-    let cap = 4 + usize::try_from(largest).ok()?.checked_mul(sequence.len())? / 62;
+    // By Cramer's rule the coefficients are quotients of Hankel determinants of order <= N, of at most N (bits + log2(N)/2) bits
+    // (Hadamard). The cap allows twice that and some unlucky primes; it ends the search for sequences without integer annihilator.
+    let largest = sequence.iter().map(BigInt::bits).max().unwrap_or(0) + 16;
+    let cap = 16 + usize::try_from(largest).ok()?.checked_mul(sequence.len())? / 61;
     let mut best = 0;
     let mut lifted = Reconstruction::default();
     for index in 0..cap {

@@ -51,14 +51,25 @@ impl IntegerPolynomial {
         }
     }
 
-    /// (m, r) with m = lead(divisor)^k > 0 or < 0, m self = q divisor + r, deg r < deg divisor. The divisor is not 0.
+    /// (m, r) with m = lead(divisor)^k, m self = q divisor + r, deg r < deg divisor.
     ///
     /// # Panics
     /// If the divisor is 0.
     pub fn pseudo_remainder(&self, divisor: &Self) -> (BigInt, Self) {
+        let (factor, _, rest) = self.pseudo_division(divisor);
+        (factor, rest)
+    }
+
+    /// (m, q, r) with m = lead(divisor)^k, m self = q divisor + r, deg r < deg divisor.
+    ///
+    /// # Panics
+    /// If the divisor is 0.
+    pub fn pseudo_division(&self, divisor: &Self) -> (BigInt, Self, Self) {
         assert!(!divisor.is_zero(), "pseudo-division by the zero polynomial");
         let lead = divisor.leading();
+        let lower = &divisor.coefficients[..divisor.coefficients.len() - 1];
         let mut rest = self.coefficients.clone();
+        let mut quotient = vec![BigInt::zero(); (rest.len() + 1).saturating_sub(divisor.coefficients.len())];
         let mut factor = BigInt::one();
         while rest.len() >= divisor.coefficients.len() {
             let top = rest.pop().unwrap_or_default();
@@ -68,15 +79,15 @@ impl IntegerPolynomial {
             let offset = rest.len() + 1 - divisor.coefficients.len();
             if !lead.is_one() {
                 factor *= &lead;
-                for c in &mut rest {
+                for c in rest.iter_mut().chain(quotient.iter_mut()) {
                     *c *= &lead;
                 }
             }
-            let lower = &divisor.coefficients[..divisor.coefficients.len() - 1];
             for (slot, c) in rest[offset..].iter_mut().zip(lower) {
                 *slot -= &top * c;
             }
+            quotient[offset] = top;
         }
-        (factor, Self::new(rest))
+        (factor, Self::new(quotient), Self::new(rest))
     }
 }

@@ -52,6 +52,24 @@ fn rectangles_apart(a: &Complex, b: &Complex) -> bool {
     a.re.is_disjoint(&b.re) || a.im.is_disjoint(&b.im)
 }
 
+/// Whether the root of f in the disc is a root of the divisor g of f (f square-free); `None` if the disc is too coarse to tell.
+pub(crate) fn vanishes_at(f: &IntegerPolynomial, g: &IntegerPolynomial, disc: &RootDisc, bits: u32) -> Option<bool> {
+    if g.is_constant() {
+        return Some(false);
+    }
+    let cofactor = f.divide_exact(g)?;
+    if cofactor.is_constant() {
+        return Some(true);
+    }
+    // The root is a root of exactly one of the two.
+    let at = disc.enclose();
+    match (may_vanish(g, &at, bits), may_vanish(&cofactor, &at, bits)) {
+        (false, _) => Some(false),
+        (true, false) => Some(true),
+        (true, true) => None,
+    }
+}
+
 /// Whether enclosures leave it open that p vanishes somewhere on the rectangle.
 fn may_vanish(p: &IntegerPolynomial, at: &Complex, bits: u32) -> bool {
     let bits = bits + 64;

@@ -10,9 +10,11 @@ mod pair_sum;
 mod rate;
 mod relation;
 
+pub(crate) use equality::vanishes_at;
 pub use growth::{Boundedness, Growth};
 pub use pair_sum::pair_sum_polynomial;
 pub use rate::RateClass;
+pub(crate) use rate::classes as rate_classes;
 pub use relation::FrequencyRelation;
 
 use crate::blocks::{Block, SparseMatrix, characteristic_by_blocks};
@@ -134,7 +136,7 @@ pub fn spectral_structure_with(a: &SparseMatrix, options: &StructureOptions) -> 
     let mut bits = options.bits.max(8);
     loop {
         let eigenvalues = collect_eigenvalues(&factors, bits)?;
-        let rates = rate::classes(&factors, &eigenvalues, bits);
+        let rates = rate_classes(&factors, &eigenvalues, bits);
         let open = rates.iter().any(|class| class.equality == Evidence::Open || class.sign().is_none());
         if open && bits < options.bits_limit {
             bits = (2 * bits).min(options.bits_limit);

@@ -38,7 +38,7 @@ impl RateClass {
 }
 
 /// The classes, largest real part first; real parts of different classes are proved different.
-pub(super) fn classes(factors: &[SpectralFactor], eigenvalues: &[Eigenvalue], bits: u32) -> Vec<RateClass> {
+pub(crate) fn classes(factors: &[SpectralFactor], eigenvalues: &[Eigenvalue], bits: u32) -> Vec<RateClass> {
     let mut order: Vec<(usize, Interval)> =
         eigenvalues.iter().enumerate().map(|(i, e)| (i, e.disc.enclose_re())).collect();
     order.sort_by(|(_, a), (_, b)| b.hi().cmp(a.hi()));
