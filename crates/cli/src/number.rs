@@ -1,0 +1,119 @@
+//! Exact numbers from their text: 0.1 is one tenth, never the nearest double.
+
+use num_bigint::BigInt;
+use num_rational::BigRational;
+use num_traits::Zero;
+
+/// The most characters of a number.
+pub const MAX_LENGTH: usize = 1_000;
+
+/// The greatest decimal exponent, either sign.
+pub const MAX_EXPONENT: i64 = 4_000;
+
+/// Why a text is not an exact number.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum NumberError {
+    /// Not digits with an optional point and exponent.
+    Form,
+    /// More than [`MAX_LENGTH`] characters.
+    TooLong,
+    /// An exponent beyond [`MAX_EXPONENT`].
+    Exponent,
+}
+
+impl NumberError {
+    /// What was expected, for people.
+    pub fn message(self) -> String {
+        match self {
+            Self::Form => "expected a finite number such as 12, 0.05 or 1.2e-3".into(),
+            Self::TooLong => format!("a number has at most {MAX_LENGTH} characters"),
+            Self::Exponent => format!("the exponent of a number is at most {MAX_EXPONENT}, either sign"),
+        }
+    }
+}
+
+/// Reads an integer or decimal with optional sign, point, exponent and digit separators `_`.
+///
+/// # Errors
+/// See [`NumberError`].
+pub fn decimal(text: &str) -> Result<BigRational, NumberError> {
+    if text.len() > MAX_LENGTH {
+        return Err(NumberError::TooLong);
+    }
+    let plain = text.replace('_', "");
+    let (mantissa, exponent) = match plain.find(['e', 'E']) {
+        Some(at) => (&plain[..at], &plain[at + 1..]),
+        None => (plain.as_str(), "0"),
+    };
+    let (whole, fraction) = mantissa.split_once('.').unwrap_or((mantissa, ""));
+    let unsigned = whole.strip_prefix(['-', '+']).unwrap_or(whole);
+    let digits = |s: &str| s.bytes().all(|b| b.is_ascii_digit());
+    if (unsigned.is_empty() && fraction.is_empty()) || !digits(unsigned) || !digits(fraction) {
+        return Err(NumberError::Form);
+    }
+    let exponent_digits = exponent.strip_prefix(['-', '+']).unwrap_or(exponent);
+    if exponent_digits.is_empty() || !digits(exponent_digits) {
+        return Err(NumberError::Form);
+    }
+    let exponent: i64 = exponent.parse().map_err(|_| NumberError::Exponent)?;
+    if exponent.abs() > MAX_EXPONENT {
+        return Err(NumberError::Exponent);
+    }
+    let sign = if whole.starts_with('-') { "-" } else { "" };
+    let value: BigInt = format!("{sign}{unsigned}{fraction}").parse().map_err(|_| NumberError::Form)?;
+    let shift = exponent - i64::try_from(fraction.len()).map_err(|_| NumberError::TooLong)?;
+    let power = BigInt::from(10).pow(u32::try_from(shift.unsigned_abs()).map_err(|_| NumberError::Exponent)?);
+    Ok(if shift >= 0 { BigRational::from_integer(value * power) } else { BigRational::new(value, power) })
+}
+
+/// A rational for people: exact if it is an integer or a short decimal, else to `digits` significant digits with "about".
+pub fn for_people(value: &BigRational, digits: usize) -> String {
+    let text = to_decimal(value, digits);
+    match decimal(&text) {
+        Ok(back) if back == *value => text,
+        _ => format!("about {text}"),
+    }
+}
+
+/// A decimal of at most `digits` significant digits, rounded towards zero.
+pub fn to_decimal(value: &BigRational, digits: usize) -> String {
+    if value.is_zero() {
+        return "0".into();
+    }
+    let ten = BigInt::from(10);
+    let magnitude = BigRational::new(value.numer().magnitude().clone().into(), value.denom().clone());
+    let estimate = (value.numer().bits() as f64 - value.denom().bits() as f64) * std::f64::consts::LOG10_2;
+    let scaled = |shift: i64| {
+        let power = BigRational::from_integer(ten.pow(shift.unsigned_abs() as u32));
+        (if shift >= 0 { &magnitude * power } else { &magnitude / power }).floor().to_integer()
+    };
+    let mut shift = digits as i64 - 1 - estimate.floor() as i64;
+    while scaled(shift) >= ten.pow(digits as u32) {
+        shift -= 1;
+    }
+    while scaled(shift) < ten.pow(digits as u32 - 1) {
+        shift += 1;
+    }
+    let text = scaled(shift).to_string();
+    let sign = if value.numer().sign() == num_bigint::Sign::Minus { "-" } else { "" };
+    let point = text.len() as i64 - shift;
+    format!("{sign}{}", place_point(&text, point))
+}
+
+fn place_point(digits: &str, point: i64) -> String {
+    let trimmed = digits.trim_end_matches('0');
+    let length = trimmed.len() as i64;
+    if !(-4..=15).contains(&point) {
+        let (first, rest) = trimmed.split_at(1);
+        let rest = if rest.is_empty() { String::new() } else { format!(".{rest}") };
+        return format!("{first}{rest}e{}", point - 1);
+    }
+    if point <= 0 {
+        return format!("0.{}{trimmed}", "0".repeat(point.unsigned_abs() as usize));
+    }
+    if length <= point {
+        return format!("{trimmed}{}", "0".repeat((point - length) as usize));
+    }
+    let (whole, fraction) = trimmed.split_at(point as usize);
+    format!("{whole}.{fraction}")
+}
