@@ -227,3 +227,17 @@ fn characteristic_polynomial_of_a_rectangle_is_refused() {
     assert_eq!(characteristic_polynomial(&a).unwrap_err().to_string(), "the matrix must be square, found 1 rows and 3 columns");
     assert!(IntegerMatrix::new(&[vec![1.into()], vec![]]).is_err());
 }
+
+#[test]
+fn independent_library_finds_the_same_factor_degrees() {
+    for line in include_str!("oracle/factors.txt").lines() {
+        let (coefficients, expected) = line.split_once(" | ").unwrap();
+        let p = IntegerPolynomial::new(coefficients.split(' ').map(|c| c.parse().unwrap()).collect());
+        let f = factorize(&p);
+        assert!(f.is_complete() && f.product() == p, "{line}");
+        let mut found: Vec<(usize, usize)> = f.factors.iter().map(|g| (g.polynomial.degree(), g.multiplicity)).collect();
+        found.sort();
+        let found: Vec<String> = found.iter().map(|(d, e)| format!("{d}^{e}")).collect();
+        assert_eq!(found.join(" "), expected, "{line}");
+    }
+}

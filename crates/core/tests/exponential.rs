@@ -195,7 +195,7 @@ fn independent_ball_library_agrees() {
             let exp = enclose_exponential(&a, &t, bits).unwrap();
             let values: Vec<BigRational> = output.split(' ').map(decimal).collect();
             let largest = values.iter().map(|v| if *v < ratio(0, 1) { -v } else { v.clone() }).max().unwrap();
-            let width = largest * ratio(4, 1) / BigRational::from_integer(BigInt::from(1) << bits);
+            let width = largest * ratio(2, 1) / BigRational::from_integer(BigInt::from(1) << bits);
             for (k, value) in values.iter().enumerate() {
                 let interval = &exp[(k / n, k % n)];
                 let slack = value * decimal("1e-38");

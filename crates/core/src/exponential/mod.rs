@@ -127,7 +127,8 @@ pub fn enclose_exponential(a: &RationalMatrix, t: &Rational, bits: u32) -> Resul
         for _ in 0..halvings {
             result = result.product(&result);
         }
-        let missing = result.error.top() + i64::from(bits) + 1 - result.top();
+        // One bit for the distance of `top` from the largest entry, one for rounding the ends outwards.
+        let missing = result.error.top() + i64::from(bits) + 2 - result.top();
         if missing <= 0 || n == 0 || result.error.top() < i64::MIN / 8 {
             return Ok(to_intervals(&result, n, fraction, bits));
         }

@@ -1,8 +1,9 @@
-"""Writes the expected values in exponential.txt and roots.txt with python-flint (ball arithmetic, independent of this project).
+"""Writes the expected values in exponential.txt, roots.txt and factors.txt with python-flint (ball arithmetic, independent of this project).
 
 Run: python generate.py, in an environment with python-flint 0.9. The files are committed: the tests need no Python.
 exponential.txt: lines `n t e_11 .. e_nn | v_11 .. v_nn`, v = exp(A t) to 40 significant digits or to 1e-60.
 roots.txt: lines `c_0 .. c_d | re,im re,im ..`, all complex roots to 40 digits.
+factors.txt: lines `c_0 .. c_d | degree^multiplicity ..`, the irreducible factors.
 """
 
 import random
@@ -44,6 +45,22 @@ def roots():
     return lines
 
 
-for name, lines in (("exponential.txt", exponentials()), ("roots.txt", roots())):
+def factors():
+    lines = []
+    for k in range(150):
+        p = fmpz_poly([1])
+        for _ in range(random.randint(1, 4)):
+            degree, size = random.randint(1, 6), random.choice((2, 9, 1000))
+            part = fmpz_poly([random.randint(-size, size) for _ in range(degree)] + [random.randint(1, 3)])
+            if k % 3 == 0:
+                part = part(fmpz_poly([random.randint(-2, 2), 0, 1]))
+            p *= part ** random.randint(1, 2)
+        found = sorted((f.degree(), e) for f, e in p.factor()[1])
+        lines.append(" ".join([str(c) for c in p.coeffs()] + ["|"] + [f"{d}^{e}" for d, e in found]))
+    return lines
+
+
+outputs = (("exponential.txt", exponentials()), ("roots.txt", roots()), ("factors.txt", factors()))
+for name, lines in outputs:
     with open(name, "w") as f:
         f.write("\n".join(lines) + "\n")
