@@ -1,1 +1,39 @@
-fn main() {}
+//! The program `keepout`.
+
+use clap::{Parser, Subcommand};
+use keepout::command::{CLEAR, WRONG, certify, spectrum};
+use std::process::ExitCode;
+
+/// Shows that a linear system never enters a keep-out zone, for all time, with evidence that others can re-check.
+#[derive(Debug, Parser)]
+#[command(name = "keepout", version, arg_required_else_help = true)]
+struct Cli {
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    /// Settle the keep-out zones of a model
+    ///
+    /// Exit status: 0 every zone is clear; 1 some zone is entered; 2 none is entered, but some zone is not settled;
+    /// 3 the model or the command is wrong.
+    Certify(certify::Arguments),
+    /// Print the exact structure of a model's dynamics: blocks, factors, eigenvalues, growth, frequencies
+    Spectrum(spectrum::Arguments),
+}
+
+fn main() -> ExitCode {
+    let cli = match Cli::try_parse() {
+        Ok(cli) => cli,
+        Err(error) => {
+            let _ = error.print();
+            let asked = !error.use_stderr();
+            return ExitCode::from(if asked { CLEAR } else { WRONG });
+        }
+    };
+    ExitCode::from(match cli.command {
+        Command::Certify(arguments) => certify::run(&arguments),
+        Command::Spectrum(arguments) => spectrum::run(&arguments),
+    })
+}

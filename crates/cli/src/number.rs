@@ -75,6 +75,15 @@ pub fn for_people(value: &BigRational, digits: usize) -> String {
     }
 }
 
+/// A decimal of at most `digits` significant digits, rounded to nearest.
+pub fn nearest_decimal(value: &BigRational, digits: usize) -> String {
+    let shown = to_decimal(value, digits + 1);
+    let Ok(cut) = decimal(&shown) else { return shown };
+    let last = BigRational::new(5.into(), BigInt::from(10).pow(digits as u32 + 1));
+    let nudge = &cut * (BigRational::from_integer(1.into()) + last * BigRational::from_integer(2.into()));
+    to_decimal(&nudge, digits)
+}
+
 /// A decimal of at most `digits` significant digits, rounded towards zero.
 pub fn to_decimal(value: &BigRational, digits: usize) -> String {
     if value.is_zero() {

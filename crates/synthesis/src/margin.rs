@@ -53,13 +53,7 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
     let mut instants = instants(proof);
     for _ in 0..MAX_EXTENSIONS {
         let peak = supremum(&instants, upward, &mut enclosure)?;
-        let late = matches!(&tail, Tail::Limit(limit) if *limit.lo() >= peak.low);
-        let high = match &tail {
-            Tail::Limit(limit) => peak.high.max(limit.hi().clone()),
-            Tail::None | Tail::Vanishes => peak.high,
-        };
-        let low = if let (true, Tail::Limit(limit)) = (late, &tail) { limit.lo().clone() } else { peak.low };
-        let place = if late { Place::Late } else { Place::Near(peak.at) };
+        let (low, high, place) = tail.joined(peak);
         let at_most = (-low.to_rational()?).max(Rational::zero());
         match proved(&-high.to_rational()?, proof, options) {
             Attempt::Proved(proof) => {
@@ -150,8 +144,28 @@ enum Tail {
     None,
     /// It tends to 0, from outside the zone.
     Vanishes,
-    /// Its limit superior (with the sign that makes the zone v >= 0) is in this enclosure.
+    /// Its limit (with the sign that makes the zone v >= 0) is in this enclosure.
     Limit(Interval),
+    /// Its limit superior is in this enclosure; it oscillates for ever.
+    Oscillates(Interval),
+}
+
+impl Tail {
+    /// Bounds of the supremum of the bounded stretch and the tail together, and where it is nearly attained.
+    fn joined(&self, peak: Peak) -> (Dyadic, Dyadic, Place) {
+        let (limit, later) = match self {
+            Self::None | Self::Vanishes => return (peak.low, peak.high, Place::Near(peak.at)),
+            Self::Limit(limit) => (limit, *limit.lo() >= peak.low),
+            // Periodic traces attain it in the stretch, up to rounding.
+            Self::Oscillates(limit) => (limit, !narrow(&peak.low, limit.lo(), 0.0) && *limit.lo() >= peak.low),
+        };
+        let high = peak.high.max(limit.hi().clone());
+        match (later, self) {
+            (false, _) => (peak.low, high, Place::Near(peak.at)),
+            (true, Self::Oscillates(_)) => (limit.lo().clone(), high, Place::Recurring),
+            (true, Self::None | Self::Vanishes | Self::Limit(_)) => (limit.lo().clone(), high, Place::Late),
+        }
+    }
 }
 
 /// `None`: not known.
@@ -181,7 +195,8 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     for _ in 0..60 {
         if let Some(form) = plan.forms(&t0, enclosure)?.first()?.as_ref() {
             if form.rest().top() < -100 {
-                return torus_supremum(form, plan.base.len(), upward).map(Tail::Limit);
+                let supremum = torus_supremum(form, plan.base.len(), upward)?;
+                return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
             }
         }
         t0 *= Rational::from_integer(2.into());

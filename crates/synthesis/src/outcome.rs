@@ -37,8 +37,10 @@ impl Proof {
 pub enum Place {
     /// Near this instant (a guess, not proved).
     Near(Rational),
-    /// In the limit of large times, or again and again at ever later times (a guess, not proved).
+    /// In the limit of large times (a guess, not proved).
     Late,
+    /// Again and again, at ever later times (a guess, not proved).
+    Recurring,
 }
 
 /// How far a trajectory stays from a zone, in the unit of the zone's polynomial.

@@ -1,1 +1,29 @@
 //! The commands of the program `keepout`.
+//!
+//! Results go to standard output, progress and messages to standard error.
+
+pub mod certify;
+mod progress;
+pub mod spectrum;
+
+use std::io::Write;
+
+/// Exit status when all zones are clear.
+pub const CLEAR: u8 = 0;
+/// Exit status when some zone is entered.
+pub const ENTERED: u8 = 1;
+/// Exit status when no zone is entered, but some zone is not settled.
+pub const UNSETTLED: u8 = 2;
+/// Exit status when the model or the command is wrong.
+pub const WRONG: u8 = 3;
+
+/// Writes to standard output. A reader that has gone away is no error: nobody is left to tell.
+pub(crate) fn print(text: &str) {
+    let mut out = std::io::stdout().lock();
+    let _ = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+}
+
+/// Writes a message to standard error.
+pub(crate) fn complain(text: &str) {
+    let _ = std::io::stderr().lock().write_all(text.as_bytes());
+}

@@ -1,0 +1,305 @@
+//! `keepout certify`: settles the zones of a model and writes the evidence.
+
+use super::progress::Progress;
+use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, print};
+use crate::diagnostic::nearest;
+use crate::model::{Model, Need, load};
+use crate::number::{for_people, to_decimal};
+use keepout_checker::statement::{Claim, Formula, Rational, Statement, Variable};
+use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify};
+use num_traits::{One, Signed, Zero};
+use rayon::prelude::*;
+use serde_json::{Map, Value, json};
+use std::fmt::Write as _;
+use std::path::{Path, PathBuf};
+
+/// The arguments of the command.
+#[derive(Debug, clap::Args)]
+pub struct Arguments {
+    /// The model, a TOML file
+    pub model: PathBuf,
+    /// Settle only the zone of this name; may be given several times
+    #[arg(long = "zone", value_name = "NAME")]
+    pub zones: Vec<String>,
+    /// Write statement and certificate of each settled zone into this folder
+    #[arg(long, value_name = "DIR")]
+    pub out: Option<PathBuf>,
+    /// Print one JSON object instead of text
+    #[arg(long)]
+    pub json: bool,
+    /// How much work to spend on each zone before giving up; a whole number, the same everywhere
+    #[arg(long, value_name = "N", default_value_t = Options::default().effort)]
+    pub effort: u64,
+}
+
+/// Runs the command; returns the exit status.
+pub fn run(arguments: &Arguments) -> u8 {
+    let model = match load(&arguments.model, Need::Zones) {
+        Ok(model) => model,
+        Err(diagnostics) => {
+            complain(&diagnostics.to_string());
+            return WRONG;
+        }
+    };
+    let chosen = match chosen(&model, &arguments.zones) {
+        Ok(chosen) => chosen,
+        Err(message) => {
+            complain(&format!("{message}\n"));
+            return WRONG;
+        }
+    };
+    let options = Options { effort: arguments.effort, ..Options::default() };
+    let progress = Progress::new(chosen.len());
+    let settled: Vec<Settled> = chosen
+        .into_par_iter()
+        .map(|zone| {
+            let statement = model.statement(zone);
+            let outcome = certify(&statement, &options).map_err(|e| e.to_string());
+            progress.one_done();
+            Settled { statement, outcome }
+        })
+        .collect();
+    drop(progress);
+    if let Some(folder) = &arguments.out {
+        if let Err(message) = settled.iter().try_for_each(|s| s.write(folder)) {
+            complain(&format!("{message}\n"));
+            return WRONG;
+        }
+    }
+    print(&if arguments.json { report_json(&model, &settled) } else { report_text(&model, &settled, arguments.out.as_deref()) });
+    let is = |word: &str| settled.iter().any(|s| s.verdict() == word);
+    match (is("enters"), is("unsettled")) {
+        (true, _) => ENTERED,
+        (false, true) => UNSETTLED,
+        (false, false) => CLEAR,
+    }
+}
+
+/// The positions of the named zones; of all zones if none is named.
+fn chosen(model: &Model, names: &[String]) -> Result<Vec<usize>, String> {
+    if names.is_empty() {
+        return Ok((0..model.zones.len()).collect());
+    }
+    let mut list = Vec::new();
+    for name in names {
+        let Some(position) = model.zones.iter().position(|z| z.name == *name) else {
+            let known: Vec<&str> = model.zones.iter().map(|z| z.name.as_str()).collect();
+            let hint = nearest(name, known.iter().copied()).map_or(String::new(), |close| format!("; did you mean `{close}`?"));
+            return Err(format!("the model has no zone `{name}`{hint}\nits zones: {}", known.join(", ")));
+        };
+        if !list.contains(&position) {
+            list.push(position);
+        }
+    }
+    Ok(list)
+}
+
+/// A zone and what became of it.
+struct Settled {
+    statement: Statement,
+    outcome: Result<Outcome, String>,
+}
+
+impl Settled {
+    fn verdict(&self) -> &'static str {
+        match &self.outcome {
+            Ok(Outcome::Clear { .. }) => "clear",
+            Ok(Outcome::Enters { .. }) => "enters",
+            Ok(Outcome::Unsettled { .. }) | Err(_) => "unsettled",
+        }
+    }
+
+    fn proof(&self) -> Option<&Proof> {
+        match &self.outcome {
+            Ok(Outcome::Clear { proof, .. } | Outcome::Enters { proof }) => Some(proof),
+            Ok(Outcome::Unsettled { .. }) | Err(_) => None,
+        }
+    }
+
+    /// Writes the evidence; evidence of an earlier run for this zone does not stay beside another verdict.
+    fn write(&self, folder: &Path) -> Result<(), String> {
+        let failed = |path: &Path, e: std::io::Error| format!("cannot write {}: {e}", path.display());
+        std::fs::create_dir_all(folder).map_err(|e| failed(folder, e))?;
+        let path = |what: &str| folder.join(format!("{}.{what}.json", self.statement.zone.name));
+        let texts = self.proof().map(|p| [p.statement().to_json().print(), p.certificate().to_json().print()]);
+        for (i, what) in ["statement", "certificate"].into_iter().enumerate() {
+            let path = path(what);
+            match &texts {
+                Some(texts) => std::fs::write(&path, &texts[i]).map_err(|e| failed(&path, e))?,
+                None if path.exists() => std::fs::remove_file(&path).map_err(|e| failed(&path, e))?,
+                None => {}
+            }
+        }
+        Ok(())
+    }
+}
+
+fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String {
+    let mut text = format!("{}\n", model.title);
+    let width = settled.iter().map(|s| s.statement.zone.name.len()).max().unwrap_or(0);
+    for zone in settled {
+        let name = &zone.statement.zone.name;
+        let _ = writeln!(text, "  {name:width$}  {:9}  {}", zone.verdict(), zone.in_words());
+    }
+    if let Some(folder) = out {
+        let _ = writeln!(text, "evidence in {}; to re-check one zone:", folder.display());
+        if let Some(zone) = settled.iter().find(|s| s.proof().is_some()) {
+            let file = |what: &str| folder.join(format!("{}.{what}.json", zone.statement.zone.name));
+            let _ = writeln!(text, "  keepout-check {} {}", quoted(&file("statement")), quoted(&file("certificate")));
+        }
+    }
+    text
+}
+
+/// A path for a command line.
+fn quoted(path: &Path) -> String {
+    let text = path.display().to_string();
+    if text.contains(|c: char| c.is_whitespace() || "'\"\\$&;()".contains(c)) { format!("'{}'", text.replace('\'', "'\\''")) } else { text }
+}
+
+impl Settled {
+    fn in_words(&self) -> String {
+        match &self.outcome {
+            Err(message) => message.clone(),
+            Ok(Outcome::Clear { margin, .. }) => {
+                let window = match &self.statement.zone.until {
+                    None => "for all time".to_string(),
+                    Some(until) => format!("up to t = {}", for_people(until, 8)),
+                };
+                format!("{window}{}", margin.as_ref().map_or(String::new(), |m| format!("; {}", self.margin_words(m))))
+            }
+            Ok(Outcome::Enters { proof }) => match &proof.statement().claim {
+                Claim::Enters { from, to, first } => format!("{}{}", if *first { "first " } else { "" }, bracket(from, to)),
+                Claim::Never { .. } => String::new(),
+            },
+            Ok(Outcome::Unsettled { reason, .. }) => format!("{}; {}", reason_words(reason), help_words(reason)),
+        }
+    }
+
+    fn margin_words(&self, margin: &Margin) -> String {
+        let unit = margin_unit(&self.statement).map_or(String::new(), |u| format!(" {u}"));
+        let place = match &margin.place {
+            Place::Near(t) => format!("near t = {}", to_decimal(t, 6)),
+            Place::Late => "approached as t -> infinity".into(),
+            Place::Recurring => "approached again and again".into(),
+        };
+        if margin.certified.is_positive() {
+            return format!("margin {}{unit}, {place}", to_decimal(&margin.certified, 9));
+        }
+        match &margin.at_most {
+            Some(at_most) if at_most.is_positive() => format!("no margin certified (at most {}{unit}, {place})", to_decimal(at_most, 6)),
+            Some(_) | None => format!("margin 0, {place}"),
+        }
+    }
+}
+
+fn bracket(from: &Rational, to: &Rational) -> String {
+    if from == to {
+        return format!("at t = {}", for_people(from, 12));
+    }
+    let (low, high) = (to_decimal(from, 12), to_decimal(to, 12));
+    if from.is_zero() {
+        return format!("right after t = 0 (before t = {})", to_decimal(to, 3));
+    }
+    if low == high { format!("at t = {low}...") } else { format!("between t = {low} and t = {high}") }
+}
+
+/// The unit of the zone's polynomial where it is that of a single quantity.
+fn margin_unit(statement: &Statement) -> Option<&str> {
+    let Formula::Atom(atom) = &statement.zone.inside else { return None };
+    let mut unit = None;
+    for term in atom.polynomial.terms.iter().filter(|t| !t.powers.is_empty()) {
+        let [(variable, 1)] = term.powers.as_slice() else { return None };
+        let own = match variable {
+            Variable::State(i) => statement.states.get(*i)?.unit.as_deref(),
+            Variable::Drive(i) => statement.drives.get(*i)?.unit.as_deref(),
+            Variable::Output(i) => statement.outputs.get(*i)?.unit.as_deref(),
+            Variable::Time => None,
+        }?;
+        if !term.coefficient.abs().is_one() || unit.is_some_and(|u| u != own) {
+            return None;
+        }
+        unit = Some(own);
+    }
+    unit
+}
+
+fn reason_words(reason: &Reason) -> String {
+    match reason {
+        Reason::Touches { from, to } => {
+            let near = to_decimal(&((from + to) / Rational::from_integer(2.into())), 9);
+            format!("touches near t = {near}: whether the trajectory reaches the border or only comes very close is not decided")
+        }
+        Reason::TouchesInTheLimit => {
+            "touches in the limit: for large times the trajectory comes as close to the border as one likes, or too close to tell".into()
+        }
+        Reason::EqualRates => "leading growth rates seem to be equal, which could not be proved".into(),
+        Reason::Effort { clear_until } => {
+            format!("the work allowed was used up; the zone is not entered before t = {}", to_decimal(clear_until, 6))
+        }
+        Reason::Limit(rejection) => rejection.to_string(),
+    }
+}
+
+fn help_words(reason: &Reason) -> &'static str {
+    match reason {
+        Reason::Touches { .. } | Reason::TouchesInTheLimit => "what would help: a slightly wider or narrower zone",
+        Reason::EqualRates => "what would help: a window with `until`",
+        Reason::Effort { .. } => "what would help: a greater --effort, or a window with `until`",
+        Reason::Limit(_) => "what would help: a smaller model, or a zone of a lower degree",
+    }
+}
+
+fn report_json(model: &Model, settled: &[Settled]) -> String {
+    let zones: Vec<Value> = settled.iter().map(Settled::json).collect();
+    let report = json!({ "program": "keepout", "version": env!("CARGO_PKG_VERSION"), "title": model.title, "zones": zones });
+    format!("{report:#}\n")
+}
+
+fn decimal_value(value: &Rational) -> Value {
+    let number: Option<f64> = to_decimal(value, 17).parse().ok();
+    number.filter(|x: &f64| x.is_finite()).map_or(Value::Null, Value::from)
+}
+
+impl Settled {
+    fn json(&self) -> Value {
+        let zone = &self.statement.zone;
+        let mut fields = Map::new();
+        fields.insert("name".into(), json!(zone.name));
+        fields.insert("ref".into(), json!(zone.reference));
+        fields.insert("verdict".into(), json!(self.verdict()));
+        match &self.outcome {
+            Err(message) => drop(fields.insert("reason".into(), json!(message))),
+            Ok(Outcome::Clear { margin, .. }) => {
+                if let Some(margin) = margin {
+                    fields.insert("margin".into(), json!(margin.certified.to_string()));
+                    fields.insert("margin_decimal".into(), decimal_value(&margin.certified));
+                    let place = match &margin.place {
+                        Place::Near(t) => json!({ "near": t.to_string(), "near_decimal": decimal_value(t) }),
+                        Place::Late => json!("approached as t -> infinity"),
+                        Place::Recurring => json!("approached again and again"),
+                    };
+                    fields.insert("margin_place".into(), place);
+                    if let Some(at_most) = &margin.at_most {
+                        fields.insert("margin_at_most_decimal".into(), decimal_value(at_most));
+                    }
+                }
+            }
+            Ok(Outcome::Enters { proof }) => {
+                if let Claim::Enters { from, to, first } = &proof.statement().claim {
+                    let time = json!({
+                        "from": from.to_string(), "to": to.to_string(), "first": first,
+                        "from_decimal": decimal_value(from), "to_decimal": decimal_value(to),
+                    });
+                    fields.insert("time".into(), time);
+                }
+            }
+            Ok(Outcome::Unsettled { reason, tried }) => {
+                fields.insert("reason".into(), json!(reason_words(reason)));
+                fields.insert("tried".into(), json!(tried));
+                fields.insert("would_help".into(), json!(help_words(reason).trim_start_matches("what would help: ")));
+            }
+        }
+        Value::Object(fields)
+    }
+}
