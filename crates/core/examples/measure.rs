@@ -1,7 +1,8 @@
 //! Prints the running times of the main algorithms on fixed pseudo-random inputs.
 
 use keepout_core::{
-    IntegerPolynomial, RationalMatrix, characteristic_polynomial, enclose_exponential, enclose_roots, factorize, spectral_structure,
+    IntegerPolynomial, RationalMatrix, characteristic_polynomial, enclose_exponential, enclose_roots, factorize,
+    spectral_structure,
 };
 use num_bigint::BigInt;
 use num_rational::BigRational;

@@ -216,7 +216,8 @@ impl IntegerMatrix {
 
     /// The largest sum of absolute values of a row.
     pub fn row_sum_norm(&self) -> BigInt {
-        let sums = (0..self.rows).map(|i| self.row(i).iter().map(|e| BigInt::from(e.magnitude().clone())).sum::<BigInt>());
+        let sums =
+            (0..self.rows).map(|i| self.row(i).iter().map(|e| BigInt::from(e.magnitude().clone())).sum::<BigInt>());
         sums.max().unwrap_or_default()
     }
 }

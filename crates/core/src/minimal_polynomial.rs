@@ -95,10 +95,7 @@ impl Span {
 /// # Guarantee
 /// m(A) v = 0 is verified in integers; the degree is minimal because the rank of v, Av, A^2 v, ... modulo a prime is never above the rank over
 /// the rationals.
-pub fn minimal_polynomial_at(
-    a: &RationalMatrix,
-    v: &[Rational],
-) -> Result<IntegerPolynomial, CoreError> {
+pub fn minimal_polynomial_at(a: &RationalMatrix, v: &[Rational]) -> Result<IntegerPolynomial, CoreError> {
     let n = a.order()?;
     if v.len() != n {
         return Err(CoreError::Shape { what: "vector", expected: n, found: v.len() });

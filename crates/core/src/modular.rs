@@ -253,7 +253,8 @@ mod tests {
 
     #[test]
     fn integers_come_back_from_their_residues() {
-        let values: Vec<BigInt> = [-5i64, 0, 1 << 61, i64::MIN, i64::MAX].iter().map(|v| BigInt::from(*v).pow(3)).collect();
+        let values: Vec<BigInt> =
+            [-5i64, 0, 1 << 61, i64::MIN, i64::MAX].iter().map(|v| BigInt::from(*v).pow(3)).collect();
         let mut reconstruction = Reconstruction::default();
         for index in 0.. {
             let field = large_field(index);

@@ -41,9 +41,8 @@ fn companion(p: &IntegerPolynomial) -> RationalMatrix {
 /// det(z - A) at an integer point, by rational elimination: a naive oracle.
 fn naive_determinant(a: &RationalMatrix, z: &BigRational) -> BigRational {
     let n = a.rows();
-    let mut m: Vec<Vec<BigRational>> = (0..n)
-        .map(|i| (0..n).map(|j| if i == j { z - &a[(i, j)] } else { -a[(i, j)].clone() }).collect())
-        .collect();
+    let mut m: Vec<Vec<BigRational>> =
+        (0..n).map(|i| (0..n).map(|j| if i == j { z - &a[(i, j)] } else { -a[(i, j)].clone() }).collect()).collect();
     let zero = BigRational::from_integer(0.into());
     let mut det = BigRational::from_integer(1.into());
     for k in 0..n {
@@ -195,9 +194,7 @@ fn swinnerton_dyer_polynomials_are_irreducible() {
     let f = factorize(&sd8);
     assert_eq!(f.factors.len(), 1);
     assert!(f.is_complete());
-    let sd16 = small(&[
-        46225, 0, -5596840, 0, 13950764, 0, -7453176, 0, 1513334, 0, -141912, 0, 6476, 0, -136, 0, 1,
-    ]);
+    let sd16 = small(&[46225, 0, -5596840, 0, 13950764, 0, -7453176, 0, 1513334, 0, -141912, 0, 6476, 0, -136, 0, 1]);
     assert_eq!(factorize(&sd16).factors.len(), 1);
     let capped = factorize_within(&(&sd16 * &sd8), 10);
     assert_eq!(capped.product(), &sd16 * &sd8);
@@ -224,7 +221,10 @@ fn zero_sequence_has_annihilator_one() {
 #[test]
 fn characteristic_polynomial_of_a_rectangle_is_refused() {
     let a = RationalMatrix::from_integers(&[vec![1, 2, 3]]).unwrap();
-    assert_eq!(characteristic_polynomial(&a).unwrap_err().to_string(), "the matrix must be square, found 1 rows and 3 columns");
+    assert_eq!(
+        characteristic_polynomial(&a).unwrap_err().to_string(),
+        "the matrix must be square, found 1 rows and 3 columns"
+    );
     assert!(IntegerMatrix::new(&[vec![1.into()], vec![]]).is_err());
 }
 
@@ -235,7 +235,8 @@ fn independent_library_finds_the_same_factor_degrees() {
         let p = IntegerPolynomial::new(coefficients.split(' ').map(|c| c.parse().unwrap()).collect());
         let f = factorize(&p);
         assert!(f.is_complete() && f.product() == p, "{line}");
-        let mut found: Vec<(usize, usize)> = f.factors.iter().map(|g| (g.polynomial.degree(), g.multiplicity)).collect();
+        let mut found: Vec<(usize, usize)> =
+            f.factors.iter().map(|g| (g.polynomial.degree(), g.multiplicity)).collect();
         found.sort();
         let found: Vec<String> = found.iter().map(|(d, e)| format!("{d}^{e}")).collect();
         assert_eq!(found.join(" "), expected, "{line}");

@@ -155,7 +155,19 @@ fn slicot_mb05nd_prints_the_same_exponential_and_integral() {
     let a = [[5, 4, 3, 2, 1], [1, 6, 0, 4, 3], [2, 0, 7, 6, 5], [1, 3, 1, 8, 7], [2, 5, 7, 1, 9]];
     // exp([A I; 0 0] t) = [exp(At) integral; 0 I].
     let rows: Vec<Vec<i64>> = (0..10)
-        .map(|i| (0..10).map(|j| if i >= 5 { 0 } else if j < 5 { a[i][j] } else { i64::from(j == i + 5) }).collect())
+        .map(|i| {
+            (0..10)
+                .map(|j| {
+                    if i >= 5 {
+                        0
+                    } else if j < 5 {
+                        a[i][j]
+                    } else {
+                        i64::from(j == i + 5)
+                    }
+                })
+                .collect()
+        })
         .collect();
     let exp = exponential(&rows, (1, 10), 53);
     let printed = [

@@ -2,9 +2,7 @@
 
 use keepout_checker::number::{Complex, Dyadic, Interval};
 use keepout_core::structure::Evidence;
-use keepout_core::{
-    CoreError, ExponentialPolynomial, IntegerPolynomial, RationalMatrix, enclose_exponential,
-};
+use keepout_core::{CoreError, ExponentialPolynomial, IntegerPolynomial, RationalMatrix, enclose_exponential};
 use num_bigint::BigInt;
 use num_rational::BigRational;
 use proptest::prelude::*;
@@ -26,7 +24,10 @@ fn squares_of_cosine_and_sine_add_to_one() {
     for w in [ratio(1, 1), ratio(3, 7), ratio(22, 5)] {
         let (c, s) = (ExponentialPolynomial::cosine(&w), ExponentialPolynomial::sine(&w));
         assert_eq!(&c.power(2) + &s.power(2), constant(1));
-        assert_eq!(&(&(&s * &c) * &constant(2)) - &ExponentialPolynomial::sine(&(w * ratio(2, 1))), ExponentialPolynomial::zero());
+        assert_eq!(
+            &(&(&s * &c) * &constant(2)) - &ExponentialPolynomial::sine(&(w * ratio(2, 1))),
+            ExponentialPolynomial::zero()
+        );
     }
 }
 
@@ -77,18 +78,21 @@ fn lower_coefficient_that_vanishes_at_one_root_only_is_recognised() {
     assert_eq!(coefficients[0].element(), [ratio(2, 1), ratio(-1, 1)]);
     let discs = keepout_core::enclose_roots(&g.factors()[0].0, 40).unwrap();
     assert_eq!(discs.iter().map(|d| coefficients[0].vanishes_at(d, 40)).collect::<Vec<_>>(), [Some(false), Some(true)]);
-    let order: Vec<_> = g.dominance(40, 400).unwrap().iter().map(|c| (c.rate.rational.clone().unwrap(), c.power)).collect();
+    let order: Vec<_> =
+        g.dominance(40, 400).unwrap().iter().map(|c| (c.rate.rational.clone().unwrap(), c.power)).collect();
     assert_eq!(order, [(ratio(2, 1), 1), (ratio(1, 1), 1), (ratio(1, 1), 0)]);
 }
 
 #[test]
 fn dominance_of_damped_oscillation_joins_equal_rates() {
     // e^-t (cos 2t + cos 3t) + t^2 e^-2t + 1/10^9: lead is the constant.
-    let damped = &exp(-1, 1) * &(&ExponentialPolynomial::cosine(&ratio(2, 1)) + &ExponentialPolynomial::cosine(&ratio(3, 1)));
+    let damped =
+        &exp(-1, 1) * &(&ExponentialPolynomial::cosine(&ratio(2, 1)) + &ExponentialPolynomial::cosine(&ratio(3, 1)));
     let small = &ExponentialPolynomial::time().power(2) * &exp(-2, 1);
     let g = &(&damped + &small) + &ExponentialPolynomial::constant(ratio(1, 1_000_000_000));
     let order = g.dominance(64, 512).unwrap();
-    let facts: Vec<_> = order.iter().map(|c| (c.exponents.len(), c.power, c.rate.rational.clone(), c.rate.equality)).collect();
+    let facts: Vec<_> =
+        order.iter().map(|c| (c.exponents.len(), c.power, c.rate.rational.clone(), c.rate.equality)).collect();
     let expected = [(1, 0, 0), (2, 0, -1), (1, 2, -2)].map(|(k, j, r)| (k, j, Some(ratio(r, 1)), Evidence::Proved));
     assert_eq!(facts, expected);
 }
@@ -96,9 +100,14 @@ fn dominance_of_damped_oscillation_joins_equal_rates() {
 #[test]
 fn orders_that_do_not_match_are_refused() {
     let m = IntegerPolynomial::from_small(&[1, 0, 1]);
-    assert!(matches!(ExponentialPolynomial::new(&m, &[ratio(1, 1)]), Err(CoreError::Shape { expected: 2, found: 1, .. })));
+    assert!(matches!(
+        ExponentialPolynomial::new(&m, &[ratio(1, 1)]),
+        Err(CoreError::Shape { expected: 2, found: 1, .. })
+    ));
     // A larger annihilator than needed is reduced: cosine under z (z^2 + 1).
-    let padded = ExponentialPolynomial::new(&IntegerPolynomial::from_small(&[0, 1, 0, 1]), &[1, 0, -1].map(|v| ratio(v, 1))).unwrap();
+    let padded =
+        ExponentialPolynomial::new(&IntegerPolynomial::from_small(&[0, 1, 0, 1]), &[1, 0, -1].map(|v| ratio(v, 1)))
+            .unwrap();
     assert_eq!(padded, ExponentialPolynomial::cosine(&ratio(1, 1)));
 }
 

@@ -35,10 +35,8 @@ fn sturm_count(p: &IntegerPolynomial) -> usize {
     }
     sequence.pop();
     let changes = |negative: bool| {
-        let signs: Vec<bool> = sequence
-            .iter()
-            .map(|s| s.leading().is_positive() != (negative && s.degree() % 2 == 1))
-            .collect();
+        let signs: Vec<bool> =
+            sequence.iter().map(|s| s.leading().is_positive() != (negative && s.degree() % 2 == 1)).collect();
         signs.windows(2).filter(|w| w[0] != w[1]).count()
     };
     changes(true) - changes(false)
@@ -158,7 +156,8 @@ fn independent_ball_library_finds_the_same_roots() {
             let place = free.iter().position(|d| {
                 let (dx, dy) = (rational(&d.re) - &re, rational(&d.im) - &im);
                 // The printed value has 40 digits: more than 120 bits.
-                let slack = rational(&d.radius) + (re.abs() + im.abs()) / BigRational::from_integer(BigInt::from(1) << 120);
+                let slack =
+                    rational(&d.radius) + (re.abs() + im.abs()) / BigRational::from_integer(BigInt::from(1) << 120);
                 dx.clone() * dx + dy.clone() * dy <= slack.clone() * slack
             });
             assert!(place.is_some(), "{value} of {line}");

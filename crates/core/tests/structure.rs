@@ -45,7 +45,8 @@ fn mixed(polynomials: &[&[i64]]) -> RationalMatrix {
 #[test]
 fn ward_example_1_has_a_jordan_block_of_size_two() {
     let s = analyse(&[vec![4, 2, 0], vec![1, 4, 1], vec![1, 1, 4]]);
-    let facts: Vec<_> = s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
+    let facts: Vec<_> =
+        s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
     assert_eq!(facts, [("z - 6".into(), 1, Some(1)), ("z - 3".into(), 2, Some(2))]);
     assert_eq!(s.growth.boundedness, Boundedness::GrowingExponentially);
     assert_eq!(s.rates[0].rational, Some(rational(6, 1)));
@@ -54,7 +55,8 @@ fn ward_example_1_has_a_jordan_block_of_size_two() {
 #[test]
 fn textbook_jordan_matrix_has_index_two_at_sixteen() {
     let s = analyse(&[vec![21, 17, 6], vec![-5, -1, -6], vec![4, 4, 16]]);
-    let facts: Vec<_> = s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
+    let facts: Vec<_> =
+        s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
     assert_eq!(facts, [("z - 16".into(), 2, Some(2)), ("z - 4".into(), 1, Some(1))]);
 }
 
@@ -92,7 +94,8 @@ fn relative_orbital_motion_drifts() {
     let s = spectral_structure(&RationalMatrix::new(&rows).unwrap()).unwrap();
     assert_eq!(s.rates.len(), 1);
     assert_eq!(s.rates[0].rational, Some(rational(0, 1)));
-    let facts: Vec<_> = s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
+    let facts: Vec<_> =
+        s.factors.iter().map(|f| (f.polynomial.to_string(), f.algebraic_multiplicity, f.index)).collect();
     assert_eq!(facts, [("z".into(), 2, Some(2)), ("4z^2 + 1".into(), 2, Some(1))]);
     assert_eq!(s.growth.boundedness, Boundedness::GrowingPolynomially);
 }
@@ -187,6 +190,26 @@ fn heat_model_of_order_200_is_one_block_and_the_fom_of_order_1006_splits() {
     let heat = (0..200usize).flat_map(|i| [(i, i, -2i64), (i, i.saturating_sub(1), 1), (i, (i + 1).min(199), 1)]);
     let heat = heat.filter(|(i, j, v)| i != j || *v == -2).map(|(i, j, v)| (i, j, rational(v, 1)));
     assert_eq!(SparseMatrix::new(200, heat).unwrap().blocks().len(), 1);
+}
+
+#[test]
+fn irrational_real_parts_of_the_pde_model_are_proved_equal() {
+    // 84 states, 12 blocks of tridiag(-9, -734, 171) coupled by 196: eigenvalues -734 + 2i sqrt(1539) cos(j pi/8) + 392 cos(k pi/13), j = 1..7,
+    // k = 1..12: twelve real parts, each shared by one real eigenvalue and three pairs.
+    let entry = |i: usize, j: usize| match (i, j) {
+        _ if i == j => -734,
+        _ if i == j + 1 && i % 7 != 0 => -9,
+        _ if j == i + 1 && j % 7 != 0 => 171,
+        _ if i.abs_diff(j) == 7 => 196,
+        _ => 0,
+    };
+    let s = spectral_structure(&RationalMatrix::from_function(84, 84, |i, j| rational(entry(i, j), 1))).unwrap();
+    let facts: Vec<_> = s.rates.iter().map(|r| (r.eigenvalues.len(), r.rational.clone(), r.equality)).collect();
+    assert_eq!(facts, vec![(4, None, Evidence::Proved); 12]);
+    assert_eq!(s.growth.boundedness, Boundedness::Decaying);
+    // Spectral abscissa -734 + 392 cos(pi/13) = -353.3908...
+    let lead = (s.rates[0].rate.lo().to_rational().unwrap(), s.rates[0].rate.hi().to_rational().unwrap());
+    assert!(lead.0 > rational(-3_533_909, 10_000) && lead.1 < rational(-3_533_907, 10_000));
 }
 
 /// Largest k such that (A - a)^k loses rank further: the Jordan index by naive elimination.

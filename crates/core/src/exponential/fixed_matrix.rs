@@ -28,11 +28,23 @@ fn digits(value: &BigUint, limbs: usize) -> impl Iterator<Item = u64> {
 
 impl Ball {
     /// entries[i] / (denominator 2^halvings) to `fraction` bits.
-    pub(super) fn from_integers(n: usize, entries: &[BigInt], denominator: &BigInt, halvings: u64, fraction: u64) -> Self {
+    pub(super) fn from_integers(
+        n: usize,
+        entries: &[BigInt],
+        denominator: &BigInt,
+        halvings: u64,
+        fraction: u64,
+    ) -> Self {
         // Truncated towards 0: less than one unit each.
         let scaled: Vec<BigInt> = entries
             .iter()
-            .map(|e| if fraction >= halvings { (e << (fraction - halvings)) / denominator } else { e / (denominator << (halvings - fraction)) })
+            .map(|e| {
+                if fraction >= halvings {
+                    (e << (fraction - halvings)) / denominator
+                } else {
+                    e / (denominator << (halvings - fraction))
+                }
+            })
             .collect();
         let exact = denominator.is_one() && fraction >= halvings;
         let limbs = scaled.iter().map(|e| e.bits().div_ceil(64) as usize).max().unwrap_or(0).max(1);
@@ -85,7 +97,9 @@ impl Ball {
         let entry = |k: usize| {
             let words = &self.magnitudes[k * self.limbs..(k + 1) * self.limbs];
             let count = limb::significant(words);
-            words[..count].last().map_or(i64::MIN / 4, |w| 64 * count as i64 - i64::from(w.leading_zeros()) - self.fraction as i64)
+            words[..count]
+                .last()
+                .map_or(i64::MIN / 4, |w| 64 * count as i64 - i64::from(w.leading_zeros()) - self.fraction as i64)
         };
         (0..self.n * self.n).map(entry).max().unwrap_or(i64::MIN / 4)
     }
@@ -105,7 +119,8 @@ impl Ball {
                 minus.fill(0);
                 for k in 0..n {
                     let column = &columns[(j * n + k) * other.limbs..(j * n + k + 1) * other.limbs];
-                    let target = if self.negative[i * n + k] == other.negative[k * n + j] { &mut *plus } else { &mut minus[..] };
+                    let target =
+                        if self.negative[i * n + k] == other.negative[k * n + j] { &mut *plus } else { &mut minus[..] };
                     limb::mul_add_into(target, self.magnitude(i, k), column);
                 }
                 if limb::compare(plus, &minus) == Ordering::Less {
@@ -125,7 +140,15 @@ impl Ball {
     }
 
     /// Entries sums / 2^shift in as few limbs as they need.
-    fn packed(n: usize, fraction: u64, sums: &[u64], wide: usize, shift: u64, negative: Vec<bool>, error: Magnitude) -> Self {
+    fn packed(
+        n: usize,
+        fraction: u64,
+        sums: &[u64],
+        wide: usize,
+        shift: u64,
+        negative: Vec<bool>,
+        error: Magnitude,
+    ) -> Self {
         let longest = sums.chunks_exact(wide).map(|s| {
             let count = limb::significant(s);
             let bits = 64 * count as u64 - s[..count].last().map_or(0, |w| u64::from(w.leading_zeros()));
@@ -143,7 +166,8 @@ impl Ball {
     ///
     /// `terms` pairs c_k with the power X^k; `constant` is c_0. The norms of the powers are at most 1.
     pub(super) fn combination(n: usize, fraction: u64, constant: &BigUint, terms: &[(&BigUint, &Self)]) -> Self {
-        let scalar_limbs = terms.iter().map(|(c, _)| c.bits()).chain([constant.bits()]).max().unwrap_or(0).div_ceil(64) as usize;
+        let scalar_limbs =
+            terms.iter().map(|(c, _)| c.bits()).chain([constant.bits()]).max().unwrap_or(0).div_ceil(64) as usize;
         let matrix_limbs = terms.iter().map(|(_, m)| m.limbs).max().unwrap_or(1);
         let wide = (scalar_limbs + matrix_limbs).max(scalar_limbs + (fraction / 64) as usize + 1) + 1;
         let mut sums = vec![0u64; n * n * wide];
@@ -172,7 +196,9 @@ impl Ball {
         // SOUND(hi): c_k <= 1 and |X^k| <= 1 (asked of the caller): each term adds its own error and one unit for c_k; the shift drops
         // less than n units; the constant one unit.
         let unit = Self::units(1, fraction);
-        let error = terms.iter().fold(Self::units(n + 1, fraction), |sum, (_, m)| sum.add_hi(m.error).add_hi(unit).add_hi(unit));
+        let error = terms
+            .iter()
+            .fold(Self::units(n + 1, fraction), |sum, (_, m)| sum.add_hi(m.error).add_hi(unit).add_hi(unit));
         Self::packed(n, fraction, &sums, wide, fraction, negative, error)
     }
 

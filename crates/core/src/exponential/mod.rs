@@ -73,7 +73,8 @@ impl IntervalMatrix {
             return Err(CoreError::Shape { what: "rows of a factor", expected: self.columns, found: other.rows });
         }
         let entry = |(i, j): (usize, usize)| {
-            (0..self.columns).fold(Interval::integer(0), |sum, k| sum.add(&self[(i, k)].mul(&other[(k, j)], bits), bits))
+            (0..self.columns)
+                .fold(Interval::integer(0), |sum, k| sum.add(&self[(i, k)].mul(&other[(k, j)], bits), bits))
         };
         let places = (0..self.rows).flat_map(|i| (0..other.columns).map(move |j| (i, j)));
         Ok(Self { rows: self.rows, columns: other.columns, entries: places.map(entry).collect() })

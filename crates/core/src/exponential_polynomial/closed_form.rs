@@ -104,7 +104,8 @@ impl FactorData<'_> {
         let scale = Interval::rational(&Rational::new(1.into(), self.denominator.clone()), bits);
         let mut h: Vec<Complex> = Vec::with_capacity(self.e);
         for i in 0..self.e {
-            let known = (1..=i).fold(numerator[i].mul_real(&scale, bits), |sum, k| sum.sub(&unit[k].mul(&h[i - k], bits), bits));
+            let known = (1..=i)
+                .fold(numerator[i].mul_real(&scale, bits), |sum, k| sum.sub(&unit[k].mul(&h[i - k], bits), bits));
             h.push(known.mul(&inverse, bits));
         }
         let real = disc.is_real();

@@ -42,7 +42,8 @@ impl Coefficient {
     /// # Cost
     /// One extended gcd over the rationals: costly for factors of degree above 20.
     pub fn element(&self) -> Vec<Rational> {
-        let inverse = self.scale.inverse(&self.factor).unwrap_or_else(|| unreachable!("u_0 has no root in common with q"));
+        let inverse =
+            self.scale.inverse(&self.factor).unwrap_or_else(|| unreachable!("u_0 has no root in common with q"));
         let value = self.scaled.mul(&inverse, &self.factor);
         let ratio = |c: &BigInt| Rational::new(c.clone(), value.denominator.clone());
         value.numerator.coefficients().iter().map(ratio).collect()

@@ -7,7 +7,7 @@ use super::ExponentialPolynomial;
 use crate::error::CoreError;
 use crate::factor::Irreducibility;
 use crate::root::{RootDisc, enclose_roots};
-use crate::structure::{Eigenvalue, Evidence, RateClass, SpectralFactor, rate_classes};
+use crate::structure::{Eigenvalue, Evidence, PairSums, RateClass, SpectralFactor, rate_classes};
 
 /// All terms with one real part and one power of t.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -33,23 +33,27 @@ impl ExponentialPolynomial {
         let coefficients = self.coefficients();
         let factors: Vec<SpectralFactor> = self.factors.iter().map(spectral).collect();
         let mut bits = bits.max(8);
+        let mut sums = PairSums::default();
         loop {
             let mut eigenvalues = Vec::new();
             for (factor, (q, _)) in self.factors.iter().enumerate() {
                 let upper = enclose_roots(q, bits)?.into_iter().filter(|d| d.im.sign() != std::cmp::Ordering::Less);
                 eigenvalues.extend(upper.map(|disc| Eigenvalue { disc, factor }));
             }
-            let rates = rate_classes(&factors, &eigenvalues, bits);
+            let rates = rate_classes(&factors, &eigenvalues, &mut sums, bits);
             let mut classes = Vec::new();
             let mut decided = rates.iter().all(|r| r.equality == Evidence::Proved);
             for rate in &rates {
-                let highest = rate.eigenvalues.iter().map(|i| self.factors[eigenvalues[*i].factor].1).max().unwrap_or(0);
+                let highest =
+                    rate.eigenvalues.iter().map(|i| self.factors[eigenvalues[*i].factor].1).max().unwrap_or(0);
                 for power in (0..highest).rev() {
                     let mut exponents = Vec::new();
                     for i in &rate.eigenvalues {
                         let Eigenvalue { disc, factor } = &eigenvalues[*i];
                         let q = &self.factors[*factor].0;
-                        let Some(c) = coefficients.iter().find(|c| c.factor == *q && c.power == power) else { continue };
+                        let Some(c) = coefficients.iter().find(|c| c.factor == *q && c.power == power) else {
+                            continue;
+                        };
                         match c.vanishes_at(disc, bits) {
                             Some(false) => exponents.push(disc.clone()),
                             Some(true) => {}

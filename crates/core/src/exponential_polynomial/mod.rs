@@ -302,12 +302,8 @@ impl Mul for &ExponentialPolynomial {
             let inner = row.windows(2).map(|w| &w[0] + &w[1]);
             row = std::iter::once(BigInt::one()).chain(inner).chain(std::iter::once(BigInt::one())).collect();
         }
-        let scaled = ScaledSequence {
-            terms,
-            common: &first.common * &second.common,
-            lead: first.lead,
-            recurrence: Vec::new(),
-        };
+        let scaled =
+            ScaledSequence { terms, common: &first.common * &second.common, lead: first.lead, recurrence: Vec::new() };
         ExponentialPolynomial::from_scaled(&scaled, order)
     }
 }

@@ -60,9 +60,8 @@ impl Residue {
             if rest.is_zero() {
                 return None;
             }
-            let divided = |p: &IntegerPolynomial| {
-                IntegerPolynomial::new(p.coefficients().iter().map(|c| c / &common).collect())
-            };
+            let divided =
+                |p: &IntegerPolynomial| IntegerPolynomial::new(p.coefficients().iter().map(|c| c / &common).collect());
             (r0, r1) = (r1, divided(&rest));
             (s0, s1) = (s1, divided(&s));
         }

@@ -19,7 +19,14 @@ pub(super) struct LiftedFactors {
 
 enum Tree {
     Leaf,
-    Node { g: IntegerPolynomial, h: IntegerPolynomial, s: IntegerPolynomial, t: IntegerPolynomial, left: Box<Tree>, right: Box<Tree> },
+    Node {
+        g: IntegerPolynomial,
+        h: IntegerPolynomial,
+        s: IntegerPolynomial,
+        t: IntegerPolynomial,
+        left: Box<Tree>,
+        right: Box<Tree>,
+    },
 }
 
 /// A bound B with |coefficient| < B for each integer polynomial that divides lead(f) f and has leading coefficient lead(f).
@@ -110,7 +117,11 @@ pub(super) fn balanced(c: &BigInt, modulus: &BigInt) -> BigInt {
 }
 
 /// Quotient and remainder by a polynomial that is monic modulo m.
-fn div_rem_monic(a: &IntegerPolynomial, b: &IntegerPolynomial, modulus: &BigInt) -> (IntegerPolynomial, IntegerPolynomial) {
+fn div_rem_monic(
+    a: &IntegerPolynomial,
+    b: &IntegerPolynomial,
+    modulus: &BigInt,
+) -> (IntegerPolynomial, IntegerPolynomial) {
     let mut rest = reduce(a, modulus).coefficients().to_vec();
     let degree = b.degree();
     let mut quotient = vec![BigInt::zero(); rest.len().saturating_sub(degree)];

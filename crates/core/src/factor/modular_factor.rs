@@ -55,7 +55,9 @@ pub(super) fn best_modular_factors(f: &IntegerPolynomial) -> ModularFactors {
             break;
         }
     }
-    let Some((_, field, parts)) = best else { unreachable!("a square-free polynomial stays so modulo almost all primes") };
+    let Some((_, field, parts)) = best else {
+        unreachable!("a square-free polynomial stays so modulo almost all primes")
+    };
     let mut state = 0x9e37_79b9_7f4a_7c15u64;
     let mut factors = Vec::new();
     if possible.len() > 2 {

@@ -4,10 +4,10 @@
 //! each point moves by -W_i. In a *mirrored* set only real points and points of the upper half plane are stored; the conjugates are
 //! implied. A *free* set stores all points: it is used when the proposals are not mirror images, until it becomes clear which roots are real.
 
+use super::RootDisc;
 use super::approx::{ApproxComplex, ScaledComplex, approx_roots};
 use super::evaluation::{Point, Value, evaluate};
 use super::magnitude::Magnitude;
-use super::RootDisc;
 use crate::error::CoreError;
 use crate::integer_polynomial::IntegerPolynomial;
 use keepout_checker::number::Dyadic;
@@ -164,7 +164,8 @@ impl<'a> PointSet<'a> {
             let sharp = value.top() > value.error.top() + 40;
             let small = radius.is_some_and(|r| self.is_small(r, denominator.nearest_lo, &self.points[i]));
             if sharp || small || radius.is_none() || self.guards[i] > 1 << 22 {
-                let step = ScaledComplex::approx_from(&value.re, &value.im, value.exponent).approx_div(denominator.product);
+                let step =
+                    ScaledComplex::approx_from(&value.re, &value.im, value.exponent).approx_div(denominator.product);
                 return Some(Disc { radius, nearest_lo: denominator.nearest_lo, step });
             }
             self.guards[i] *= 2;

@@ -71,7 +71,7 @@ pub(crate) fn vanishes_at(f: &IntegerPolynomial, g: &IntegerPolynomial, disc: &R
 }
 
 /// Whether enclosures leave it open that p vanishes somewhere on the rectangle.
-fn may_vanish(p: &IntegerPolynomial, at: &Complex, bits: u32) -> bool {
+pub(super) fn may_vanish(p: &IntegerPolynomial, at: &Complex, bits: u32) -> bool {
     let bits = bits + 64;
     let real = |c| Complex::real(Interval::rational(&Rational::from_integer(c), bits));
     let value = p.coefficients().iter().rev().fold(Complex::zero(), |v, c| v.mul(at, bits).add(&real(c.clone()), bits));

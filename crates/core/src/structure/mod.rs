@@ -14,7 +14,7 @@ pub(crate) use equality::vanishes_at;
 pub use growth::{Boundedness, Growth};
 pub use pair_sum::pair_sum_polynomial;
 pub use rate::RateClass;
-pub(crate) use rate::classes as rate_classes;
+pub(crate) use rate::{PairSums, classes as rate_classes};
 pub use relation::FrequencyRelation;
 
 use crate::blocks::{Block, SparseMatrix, characteristic_by_blocks};
@@ -134,9 +134,10 @@ pub fn spectral_structure_with(a: &SparseMatrix, options: &StructureOptions) -> 
     let mut factors = collect_factors(&blocks);
     set_indices(a, &mut factors, options)?;
     let mut bits = options.bits.max(8);
+    let mut sums = PairSums::default();
     loop {
         let eigenvalues = collect_eigenvalues(&factors, bits)?;
-        let rates = rate_classes(&factors, &eigenvalues, bits);
+        let rates = rate_classes(&factors, &eigenvalues, &mut sums, bits);
         let open = rates.iter().any(|class| class.equality == Evidence::Open || class.sign().is_none());
         if open && bits < options.bits_limit {
             bits = (2 * bits).min(options.bits_limit);
@@ -144,7 +145,16 @@ pub fn spectral_structure_with(a: &SparseMatrix, options: &StructureOptions) -> 
         }
         let relations = relation::relations(&factors, &eigenvalues, &rates, options.relation_size)?;
         let growth = growth::growth(&factors, &eigenvalues, &rates);
-        return Ok(SpectralStructure { order: a.order(), blocks, factors, eigenvalues, rates, relations, growth, bits });
+        return Ok(SpectralStructure {
+            order: a.order(),
+            blocks,
+            factors,
+            eigenvalues,
+            rates,
+            relations,
+            growth,
+            bits,
+        });
     }
 }
 
@@ -161,7 +171,10 @@ fn collect_factors(blocks: &[Block]) -> Vec<SpectralFactor> {
     let complete = pieces.iter().all(|(_, _, irreducibility)| *irreducibility == Irreducibility::Proved);
     if !complete {
         let polynomials: Vec<IntegerPolynomial> = pieces.iter().map(|(p, _, _)| p.clone()).collect();
-        return IntegerPolynomial::coprime_base(&polynomials).into_iter().map(|member| joined(member, &pieces)).collect();
+        return IntegerPolynomial::coprime_base(&polynomials)
+            .into_iter()
+            .map(|member| joined(member, &pieces))
+            .collect();
     }
     let mut factors: Vec<SpectralFactor> = Vec::new();
     for (polynomial, multiplicity, irreducibility) in pieces {
