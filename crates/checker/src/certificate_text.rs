@@ -27,6 +27,15 @@ impl Certificate {
         read_certificate(&Field::root(&crate::json::read(text, limits)?, limits))
     }
 
+    /// Refuses a value that the reader would not give: so one built in memory obeys the same rules and limits as a text.
+    pub(crate) fn ensure_readable(&self, limits: &Limits) -> Result<(), Rejection> {
+        if read_certificate(&Field::root(&self.to_json(), limits))? == *self {
+            return Ok(());
+        }
+        let expected = "a value that its own text gives back";
+        Err(Rejection::Malformed { place: "the certificate".into(), expected, found: "another value".into() })
+    }
+
     /// The certificate as a JSON value.
     pub fn to_json(&self) -> Value {
         object(vec![
@@ -80,7 +89,13 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
         }
         Ok(Sum { root: read_root(&f.get("root")?, roots)?, parts, factors: factors(&f.get("factors")?)? })
     })?;
-    let counts = Counts { traces: traces.len(), roots, sums: sums.len(), products: products.len(), auxiliaries: auxiliaries.len() };
+    let counts = Counts {
+        traces: traces.len(),
+        roots,
+        sums: sums.len(),
+        products: products.len(),
+        auxiliaries: auxiliaries.len(),
+    };
     Ok(Certificate {
         statement: read_statement(&field.get("statement")?)?,
         evidence: read_evidence(&field.get("evidence")?, &counts)?,
@@ -178,7 +193,10 @@ fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection>
 }
 
 fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
-    field.only(&["to", "order", "signs", "start", "pivot", "cofactors"], "a cell: to, order, signs; start, or pivot and cofactors")?;
+    field.only(
+        &["to", "order", "signs", "start", "pivot", "cofactors"],
+        "a cell: to, order, signs; start, or pivot and cofactors",
+    )?;
     let order = field.get("order")?.count()?;
     within("order", usize::try_from(order).unwrap_or(usize::MAX), field.limits().order)?;
     let pivot = match (field.optional("start"), field.optional("pivot")) {
@@ -223,7 +241,8 @@ fn read_lead(field: &Field, counts: &Counts) -> Result<Option<Lead>, Rejection> 
 
 fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
     field.only(&["from", "base", "angles", "leads", "nodes"], "a cone: from, base, angles, leads, nodes")?;
-    let base = bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
+    let base =
+        bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
     let angles = bounded(&field.get("angles")?, "roots", field.limits().roots)?.each(|f| {
         f.only(&["root", "turns", "sum"], "an angle: root, turns, sum")?;
         Ok(Angle {
@@ -276,7 +295,8 @@ fn number(value: &Rational) -> Value {
 }
 
 fn write_family(family: &RootFamily) -> Value {
-    let centre = |(re, im): &(_, _)| object(vec![("re", Value::text(dyadic_text(re))), ("im", Value::text(dyadic_text(im)))]);
+    let centre =
+        |(re, im): &(_, _)| object(vec![("re", Value::text(dyadic_text(re))), ("im", Value::text(dyadic_text(im)))]);
     object(vec![
         ("polynomial", list(family.polynomial.coefficients(), number)),
         ("centres", list(&family.centres, centre)),
@@ -308,7 +328,8 @@ fn write_root(root: RootRef) -> Value {
 }
 
 fn write_sum(sum: &Sum) -> Value {
-    let part = |(times, root): &(i64, RootRef)| object(vec![("times", Value::text(times)), ("root", write_root(*root))]);
+    let part =
+        |(times, root): &(i64, RootRef)| object(vec![("times", Value::text(times)), ("root", write_root(*root))]);
     object(vec![
         ("root", write_root(sum.root)),
         ("parts", list(&sum.parts, part)),
@@ -326,9 +347,12 @@ fn write_cell(cell: &Cell) -> Value {
     let mut fields = vec![("to", number(&cell.to)), ("order", Value::text(cell.order)), ("signs", signs(&cell.signs))];
     match &cell.pivot {
         Pivot::None => {}
-        Pivot::Start(start) => fields.push(("start", list(start, |(trace, power, sign)| {
-            object(vec![("sign", write_signed(*trace, *sign)), ("power", Value::text(power))])
-        }))),
+        Pivot::Start(start) => fields.push((
+            "start",
+            list(start, |(trace, power, sign)| {
+                object(vec![("sign", write_signed(*trace, *sign)), ("power", Value::text(power))])
+            }),
+        )),
         Pivot::Auxiliary(pivot, cofactors) => {
             fields.push(("pivot", Value::text(pivot)));
             fields.push(("cofactors", signs(cofactors)));

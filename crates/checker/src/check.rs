@@ -28,6 +28,9 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     if *statement != certificate.statement {
         return Err(Rejection::OtherStatement);
     }
+    // SOUND: the proof below relies on what the readers ensure (one phase, a rate for each state, declared names, monic
+    // polynomials with all their roots, ...). Both types can be built in memory, so it is ensured here for each caller.
+    certificate.ensure_readable(limits)?;
     let mut budget = Budget::new(limits);
     let model = Model::new(certificate, limits, &mut budget)?;
     for (position, sum) in certificate.sums.iter().enumerate() {
@@ -61,7 +64,9 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
                 fits.ensure(before.is_empty())?;
             }
         }
-        (Claim::Never { .. }, Evidence::Enters { .. }) | (Claim::Enters { .. }, Evidence::Never { .. }) => return Err(fits.refuted()),
+        (Claim::Never { .. }, Evidence::Enters { .. }) | (Claim::Enters { .. }, Evidence::Never { .. }) => {
+            return Err(fits.refuted());
+        }
     }
     Ok(Verified { statement: statement.clone() })
 }

@@ -122,6 +122,29 @@ impl Rejection {
     }
 }
 
+impl Rejection {
+    /// The kind of refusal in one word, for programs.
+    pub fn kind(&self) -> &'static str {
+        match self {
+            Self::Refuted { .. } => "refuted",
+            Self::Inconclusive { .. } => "inconclusive",
+            Self::LimitExceeded { .. } => "limit_exceeded",
+            Self::Malformed { .. } => "malformed",
+            Self::OtherStatement => "other_statement",
+        }
+    }
+
+    /// The rule, the obligation and the position that a refuted or undecided certificate failed at.
+    pub fn failed_at(&self) -> Option<(Rule, Obligation, usize)> {
+        match self {
+            Self::Refuted { rule, obligation, position } | Self::Inconclusive { rule, obligation, position } => {
+                Some((*rule, *obligation, *position))
+            }
+            Self::Malformed { .. } | Self::OtherStatement | Self::LimitExceeded { .. } => None,
+        }
+    }
+}
+
 /// One obligation of one rule, for one of its objects: where a check stands.
 #[derive(Clone, Copy, Debug)]
 pub(crate) struct Duty {
@@ -206,7 +229,8 @@ impl fmt::Display for Obligation {
 
 impl fmt::Display for Rejection {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        let duty = |obligation: &Obligation, position: &usize| obligation.to_string().replace("{}", &position.to_string());
+        let duty =
+            |obligation: &Obligation, position: &usize| obligation.to_string().replace("{}", &position.to_string());
         match self {
             Self::Malformed { place, expected, found } => write!(f, "at {place}: expected {expected}, found {found}"),
             Self::OtherStatement => f.write_str("the certificate embeds another statement"),
@@ -216,11 +240,9 @@ impl fmt::Display for Rejection {
                 "rule {rule}: not so: {}; the certificate is wrong, which says nothing about the plant",
                 duty(obligation, position)
             ),
-            Self::Inconclusive { rule, obligation, position } => write!(
-                f,
-                "rule {rule}: not decided at the certificate's precision: {}",
-                duty(obligation, position)
-            ),
+            Self::Inconclusive { rule, obligation, position } => {
+                write!(f, "rule {rule}: not decided at the certificate's precision: {}", duty(obligation, position))
+            }
         }
     }
 }

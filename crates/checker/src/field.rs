@@ -115,7 +115,7 @@ impl<'a> Field<'a> {
         let text = self.text()?;
         within("number_length", text.len(), self.limits.number_length)?;
         let (mantissa, exponent) = text.split_once('p').unwrap_or((text, "0"));
-        let exponent = exponent.parse::<i64>().ok().filter(|e| e.abs() <= 1 << 24);
+        let exponent = exponent.parse::<i64>().ok().filter(|e| e.unsigned_abs() <= 1 << 24_u32);
         match (self.integer_text(mantissa), exponent) {
             (Some(m), Some(e)) => Ok(Dyadic::new(m, e)),
             _ => Err(self.refuse("a dyadic number \"MpE\" with |E| <= 2^24")),

@@ -145,7 +145,9 @@ impl Reader<'_> {
             Some('"') => self.string().map(Value::Text),
             Some('t') => self.word("true").map(|()| Value::Bool(true)),
             Some('f') => self.word("false").map(|()| Value::Bool(false)),
-            Some(_) | None => Err(self.unexpected("an object, an array, a string, true or false (numbers are strings)")),
+            Some(_) | None => {
+                Err(self.unexpected("an object, an array, a string, true or false (numbers are strings)"))
+            }
         }
     }
 
@@ -170,7 +172,11 @@ impl Reader<'_> {
             // Objects of the formats have a dozen keys at most; the limit keeps this comparison short.
             within("statement_entries", fields.len() + 1, self.limits.statement_entries)?;
             if fields.iter().any(|(k, _)| *k == key) {
-                return Err(Rejection::Malformed { place: format!("key {key:?}"), expected: "each key once", found: "it twice".into() });
+                return Err(Rejection::Malformed {
+                    place: format!("key {key:?}"),
+                    expected: "each key once",
+                    found: "it twice".into(),
+                });
             }
             self.expect(':', "':'")?;
             let value = self.value(depth + 1)?;

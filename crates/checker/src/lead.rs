@@ -70,7 +70,9 @@ impl LeadForm {
                 decreases.decide(*decay.lo() >= Dyadic::new(BigInt::from(excess), 0))?;
                 let power = power_of_start(&start, j + 1, top, bits).ok_or_else(|| decreases.inconclusive())?;
                 // SOUND(hi): exp(-x) is decreasing, so the least x = gap t0 gives the greatest value.
-                let factor = Complex::real(Interval::point(decay.lo().neg())).exp(bits).ok_or_else(|| decreases.inconclusive())?;
+                let factor = Complex::real(Interval::point(decay.lo().neg()))
+                    .exp(bits)
+                    .ok_or_else(|| decreases.inconclusive())?;
                 let bound = weighted.abs_hi(bits).mul(power.hi(), bits, Up).mul(factor.re.hi(), bits, Up);
                 lead.rest = lead.rest.add(&bound, bits, Up);
             }
@@ -89,7 +91,8 @@ impl LeadForm {
         let mut gradient = vec![Interval::integer(0); angles.len()];
         let mut curvature = Dyadic::zero();
         for wave in &self.waves {
-            let angle: Rational = wave.turns.iter().zip(angles).map(|(n, (c, _))| c * Rational::from_integer((*n).into())).sum();
+            let angle: Rational =
+                wave.turns.iter().zip(angles).map(|(n, (c, _))| c * Rational::from_integer((*n).into())).sum();
             let theta = Complex { re: Interval::integer(0), im: Interval::rational(&angle, bits) };
             let turned = wave.coefficient.mul(&theta.exp(bits)?, bits);
             value = value.add(&turned.re, bits);
@@ -143,13 +146,13 @@ pub fn full_turn() -> Rational {
 
 /// The box that covers the torus of this dimension.
 pub fn whole_torus(dimension: usize) -> AngleBox {
-    let half = full_turn() / Rational::from_integer(2.into());
+    let half = full_turn() / Rational::from_integer(2_i32.into());
     vec![(half.clone(), half); dimension]
 }
 
 /// The lower and the upper half of a box along an axis.
 pub fn halves(angles: &AngleBox, axis: usize) -> Option<(AngleBox, AngleBox)> {
-    let quarter = angles.get(axis)?.1.clone() / Rational::from_integer(2.into());
+    let quarter = angles.get(axis)?.1.clone() / Rational::from_integer(2_i32.into());
     let moved = |sign: Rational| {
         let mut half = angles.clone();
         if let Some((centre, radius)) = half.get_mut(axis) {

@@ -8,13 +8,15 @@
 //! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
 //! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
 //!
-//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `lead`, `sequence`, `formula`, `number/`.
+//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `lead`, `sequence`, `formula`, `number/`;
+//! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `field`, `json` read and write texts.
 
 pub use check::{Verified, check};
 pub use error::Rejection;
 pub use limits::Limits;
 
 pub mod certificate;
+pub mod decimal;
 pub mod error;
 pub mod formula;
 pub mod json;
@@ -33,3 +35,4 @@ mod check;
 mod field;
 mod rules;
 mod statement_text;
+mod words;

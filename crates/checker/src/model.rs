@@ -66,7 +66,14 @@ impl Model {
             let degree = check_degree(&auxiliary.factors, &table, limits)?;
             let duty = Duty::new(Rule::Trace, Obligation::ClosedFormIsEnclosed, position);
             duty.ensure(auxiliary.derivatives.len() == degree && !auxiliary.factors.is_empty())?;
-            let form = ClosedForm::new(&auxiliary.factors, &auxiliary.derivatives, &table, certificate.bits, position, budget)?;
+            let form = ClosedForm::new(
+                &auxiliary.factors,
+                &auxiliary.derivatives,
+                &table,
+                certificate.bits,
+                position,
+                budget,
+            )?;
             auxiliaries.push(form);
         }
         let model = Self { formula, table, traces, auxiliaries };
@@ -82,7 +89,14 @@ impl Model {
     /// of one of dimension p and one element of one of dimension c span a space of dimension at most
     /// binom(p + k - 1, k) c, closed under d/dt. So the difference of the two sides lies in a closed space of dimension
     /// <= B = deg(trace) + binom(p + k - 1, k) c, and is zero if its first B derivatives at 0 are.
-    fn check_product(&self, position: usize, product: &Product, auxiliaries: &[Auxiliary], limits: &Limits, budget: &mut Budget) -> Result<(), Rejection> {
+    fn check_product(
+        &self,
+        position: usize,
+        product: &Product,
+        auxiliaries: &[Auxiliary],
+        limits: &Limits,
+        budget: &mut Budget,
+    ) -> Result<(), Rejection> {
         let duty = Duty::new(Rule::Trace, Obligation::ProductEqualsTrace, position);
         let missing = || duty.refuted();
         let trace = self.traces.get(product.trace).ok_or_else(missing)?;

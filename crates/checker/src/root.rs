@@ -134,8 +134,13 @@ impl RootTable {
         let root = self.roots.get(index)?;
         let polynomial = self.families.get(root.family)?;
         let reflected = polynomial.reflected(&(line + line));
-        let sign = if polynomial.degree() % 2 == 0 { Rational::from_integer(1.into()) } else { Rational::from_integer((-1).into()) };
-        let symmetric = reflected.coefficients().iter().map(|c| c * &sign).eq(polynomial.coefficients().iter().cloned());
+        let sign = if polynomial.degree() % 2 == 0 {
+            Rational::from_integer(1_i32.into())
+        } else {
+            Rational::from_integer((-1_i32).into())
+        };
+        let symmetric =
+            reflected.coefficients().iter().map(|c| c * &sign).eq(polynomial.coefficients().iter().cloned());
         if !symmetric {
             return Some(false);
         }
@@ -151,7 +156,12 @@ impl RootTable {
 fn discs(position: usize, family: &RootFamily, bits: u32) -> Option<Vec<Root>> {
     let point = |re: &Dyadic, im: &Dyadic| Complex { re: Interval::point(re.clone()), im: Interval::point(im.clone()) };
     let mut all: Vec<Complex> = family.centres.iter().map(|(re, im)| point(re, im)).collect();
-    let lower: Vec<Complex> = family.centres.iter().filter(|(_, im)| im.sign() != Ordering::Equal).map(|(re, im)| point(re, &im.neg())).collect();
+    let lower: Vec<Complex> = family
+        .centres
+        .iter()
+        .filter(|(_, im)| im.sign() != Ordering::Equal)
+        .map(|(re, im)| point(re, &im.neg()))
+        .collect();
     all.extend(lower);
     let degree = Dyadic::new(family.polynomial.degree().into(), 0);
     let mut roots = Vec::new();

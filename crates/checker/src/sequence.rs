@@ -129,8 +129,10 @@ impl Sequence {
         for k in 0..length {
             let pairs = self.values.iter().zip(other.values.iter().take(k + 1).rev());
             values.push(pairs.zip(&binomials).map(|((f, g), b)| f * g * b).sum());
-            let shifted = binomials.iter().skip(1).chain(std::iter::once(&BigInt::zero())).map(BigInt::clone).collect::<Vec<_>>();
-            binomials = std::iter::once(BigInt::one()).chain(binomials.iter().zip(&shifted).map(|(a, b)| a + b)).collect();
+            let shifted =
+                binomials.iter().skip(1).chain(std::iter::once(&BigInt::zero())).map(BigInt::clone).collect::<Vec<_>>();
+            binomials =
+                std::iter::once(BigInt::one()).chain(binomials.iter().zip(&shifted).map(|(a, b)| a + b)).collect();
         }
         Self { rate: self.rate.clone(), denominator: &self.denominator * &other.denominator, values }
     }
@@ -195,7 +197,8 @@ impl<'a> Flow<'a> {
             Variable::Output(i) => self.statement.outputs.get(*i).map_or(0, |o| self.degree(&o.value)),
             Variable::State(_) | Variable::Drive(_) | Variable::Time => 1,
         };
-        let degree = |powers: &[(Variable, u32)]| powers.iter().map(|(v, k)| weight(v).saturating_mul(u64::from(*k))).sum();
+        let degree =
+            |powers: &[(Variable, u32)]| powers.iter().map(|(v, k)| weight(v).saturating_mul(u64::from(*k))).sum();
         expression.terms.iter().map(|t| degree(&t.powers)).max().unwrap_or(0)
     }
 
@@ -243,14 +246,19 @@ impl<'a> Flow<'a> {
             bound = bound * (dimension - 1 + i) / i;
             within("derivatives", usize::try_from(bound).unwrap_or(usize::MAX), self.limits.derivatives)?;
         }
-        usize::try_from(bound).map_err(|_| Rejection::LimitExceeded { limit: "derivatives", max: self.limits.derivatives, found: bound })
+        usize::try_from(bound).map_err(|_| Rejection::LimitExceeded {
+            limit: "derivatives",
+            max: self.limits.derivatives,
+            found: bound,
+        })
     }
 
     /// The trace of an expression: its order bound N, and 2 N derivatives at 0 (an annihilator of degree <= N is proved
     /// by N + N of them).
     ///
     /// # Errors
-    /// [`Rejection::LimitExceeded`] where the order bound or the degree is beyond the limits.
+    /// [`Rejection::LimitExceeded`] where the order bound or the degree is beyond the limits; [`Rejection::Malformed`] where
+    /// the expression names a quantity that the statement does not declare.
     pub fn trace(&self, expression: &Expression) -> Result<(usize, Sequence), Rejection> {
         let order = self.order_bound(expression)?;
         let length = 2 * order.max(1);
@@ -259,13 +267,21 @@ impl<'a> Flow<'a> {
             let value = self.evaluate(&output.value, &known, length);
             known.extend(value.map(|sequence| (Variable::Output(i), sequence)));
         }
-        let trace = self.evaluate(expression, &known, length);
-        let zero = Sequence::constant(&Rational::zero(), &self.rate, length);
-        Ok((order, trace.unwrap_or(zero)))
+        let trace = self.evaluate(expression, &known, length).ok_or_else(|| Rejection::Malformed {
+            place: "an expression".into(),
+            expected: "declared quantities only",
+            found: "another one".into(),
+        })?;
+        Ok((order, trace))
     }
 
     /// The sequence of an expression; `None` if it uses a variable that is not known.
-    fn evaluate(&self, expression: &Expression, known: &BTreeMap<Variable, Sequence>, length: usize) -> Option<Sequence> {
+    fn evaluate(
+        &self,
+        expression: &Expression,
+        known: &BTreeMap<Variable, Sequence>,
+        length: usize,
+    ) -> Option<Sequence> {
         let mut sum = Sequence::constant(&Rational::zero(), &self.rate, length);
         for term in &expression.terms {
             let mut product: Option<Sequence> = None;
@@ -298,7 +314,8 @@ impl<'a> Flow<'a> {
 
     /// Adds the sequences of the states: with X_k = x^(k) S q^k, U_k likewise, X_(k+1) = (q A) X_k + (q B) U_k + [k = 0] q c S.
     fn states(&self, support: &BTreeSet<Variable>, known: &mut BTreeMap<Variable, Sequence>, length: usize) {
-        let states: Vec<usize> = support.iter().filter_map(|v| if let Variable::State(i) = v { Some(*i) } else { None }).collect();
+        let states: Vec<usize> =
+            support.iter().filter_map(|v| if let Variable::State(i) = v { Some(*i) } else { None }).collect();
         let starts = states.iter().filter_map(|i| self.statement.states.get(*i)).map(|s| &s.start);
         let offsets = states.iter().filter_map(|i| self.rates().get(*i)).map(|r| &r.offset);
         let common = common_denominator(starts.chain(offsets));
@@ -348,12 +365,14 @@ impl<'a> Flow<'a> {
         let exponential = sequence(powers(integer(&term.rate)));
         // cos(w t): w^k (1, 0, -1, 0, ...); sin(w t): w^k (0, 1, 0, -1, ...).
         let wave = |w: &Rational, signs: [i32; 4]| {
-            sequence(powers(integer(w)).into_iter().zip(signs.iter().cycle()).map(|(p, s)| p * BigInt::from(*s)).collect())
+            sequence(
+                powers(integer(w)).into_iter().zip(signs.iter().cycle()).map(|(p, s)| p * BigInt::from(*s)).collect(),
+            )
         };
         let modulated = match &term.wave {
             Wave::One => exponential,
-            Wave::Cosine(w) => exponential.mul(&wave(w, [1, 0, -1, 0])),
-            Wave::Sine(w) => exponential.mul(&wave(w, [0, 1, 0, -1])),
+            Wave::Cosine(w) => exponential.mul(&wave(w, [1_i32, 0_i32, -1_i32, 0_i32])),
+            Wave::Sine(w) => exponential.mul(&wave(w, [0_i32, 1_i32, 0_i32, -1_i32])),
         };
         Sequence::time(&self.rate, length).power(term.power).mul(&modulated).scaled(&term.coefficient)
     }

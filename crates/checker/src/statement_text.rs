@@ -90,9 +90,13 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     })
 }
 
+/// Names with a meaning of their own in formulas.
+const RESERVED: [&str; 12] = ["t", "exp", "sin", "cos", "abs", "sqrt", "pi", "and", "or", "not", "true", "false"];
+
 fn is_name(text: &str) -> bool {
     let mut bytes = text.bytes();
-    bytes.next().is_some_and(|b| b.is_ascii_alphabetic() || b == b'_')
+    !RESERVED.contains(&text)
+        && bytes.next().is_some_and(|b| b.is_ascii_alphabetic() || b == b'_')
         && bytes.all(|b| b.is_ascii_alphanumeric() || b == b'_')
 }
 
@@ -107,7 +111,7 @@ fn declared<'a, T>(
         let name = item.get("name")?;
         let text = name.text()?;
         if !is_name(text) || names.iter().any(|(known, _)| known == text) {
-            return Err(name.refuse("a new name: a letter or _, then letters, digits or _"));
+            return Err(name.refuse("a new name, not reserved: a letter or _, then letters, digits or _"));
         }
         let unit = item.optional("unit").map(|u| u.text().map(str::to_string)).transpose()?;
         items.push(read(item, text.to_string(), unit, i)?);
@@ -212,7 +216,10 @@ fn read_formula(field: &Field, names: &Names) -> Result<Formula, Rejection> {
     }
     field.only(&["polynomial", "is"], "all, any, or a comparison: polynomial, is")?;
     let is = field.get("is")?;
-    let text = is.text()?.strip_suffix(" 0").ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
+    let text = is
+        .text()?
+        .strip_suffix(" 0")
+        .ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
     let relation = RELATIONS.iter().find(|(name, _)| *name == text).map(|(_, r)| *r);
     let relation = relation.ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
     Ok(Formula::Atom(Atom { polynomial: read_expression(&field.get("polynomial")?, names)?, relation }))
@@ -316,11 +323,8 @@ impl Statement {
 }
 
 fn write_signal(term: &SignalTerm) -> Value {
-    let mut fields = vec![
-        ("times", number(&term.coefficient)),
-        ("power", Value::text(term.power)),
-        ("rate", number(&term.rate)),
-    ];
+    let mut fields =
+        vec![("times", number(&term.coefficient)), ("power", Value::text(term.power)), ("rate", number(&term.rate))];
     match &term.wave {
         Wave::One => {}
         Wave::Cosine(w) => fields.push(("cos", number(w))),

@@ -98,7 +98,10 @@ impl ClosedForm {
         }
         let mut result = Interval::symmetric(&slack);
         if drop > 0 {
-            let Some(inverse) = Interval::point(h.clone()).power(u32::try_from(drop).unwrap_or(u32::MAX), stretch.bits).recip(stretch.bits) else {
+            let Some(inverse) = Interval::point(h.clone())
+                .power(u32::try_from(drop).unwrap_or(u32::MAX), stretch.bits)
+                .recip(stretch.bits)
+            else {
                 return Ok(None);
             };
             result = result.mul(&inverse, stretch.bits);
@@ -106,7 +109,8 @@ impl ClosedForm {
         let mut power = Dyadic::power_of_two(0);
         for (k, sum) in sums.iter().skip(drop).enumerate() {
             // SOUND(hi): |sum_k s^k| <= |sum_k| h^k, both factors from above, rounded up; the constant term enters as it is.
-            let part = if k == 0 { sum.clone() } else { Interval::symmetric(&sum.abs_hi().mul(&power, stretch.bits, Up)) };
+            let part =
+                if k == 0 { sum.clone() } else { Interval::symmetric(&sum.abs_hi().mul(&power, stretch.bits, Up)) };
             result = result.add(&part, stretch.bits);
             power = power.mul(&h, stretch.bits, Up);
         }
@@ -134,7 +138,8 @@ impl Term {
         }
         let centre = Interval::rational(stretch.centre, bits);
         let flow = self.exponent.mul_real(&centre, bits).exp(bits)?;
-        let shifted: Vec<Complex> = taylor_shift(&self.coefficients, &centre, bits).iter().map(|p| p.mul(&flow, bits)).collect();
+        let shifted: Vec<Complex> =
+            taylor_shift(&self.coefficients, &centre, bits).iter().map(|p| p.mul(&flow, bits)).collect();
         let mut tail = Dyadic::zero();
         for (i, p) in shifted.iter().enumerate() {
             let mut b = p.clone();

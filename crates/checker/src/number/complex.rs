@@ -74,10 +74,7 @@ impl Complex {
 
     /// z^2.
     pub fn square(&self, bits: u32) -> Self {
-        Self {
-            re: self.re.square(bits).sub(&self.im.square(bits), bits),
-            im: self.re.mul(&self.im, bits).scale(1),
-        }
+        Self { re: self.re.square(bits).sub(&self.im.square(bits), bits), im: self.re.mul(&self.im, bits).scale(1) }
     }
 
     /// |z|^2.

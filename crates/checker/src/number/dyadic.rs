@@ -70,7 +70,7 @@ impl Dyadic {
 
     /// The value as a rational number. Cost: exponential in the size of the exponent; `None` beyond 2^20.
     pub fn to_rational(&self) -> Option<Rational> {
-        let shift = u64::try_from(self.exponent.checked_abs()?).ok().filter(|s| *s <= 1 << 20)?;
+        let shift = u64::try_from(self.exponent.checked_abs()?).ok().filter(|s| *s <= 1 << 20_u32)?;
         let power = BigInt::one() << shift;
         Some(if self.exponent >= 0 {
             Rational::from_integer(&self.mantissa * power)
@@ -153,8 +153,11 @@ impl Dyadic {
         if numerator.is_zero() || denominator.is_zero() {
             return Self::zero();
         }
-        let (numerator, denominator) =
-            if denominator.is_negative() { (-numerator, -denominator) } else { (numerator.clone(), denominator.clone()) };
+        let (numerator, denominator) = if denominator.is_negative() {
+            (-numerator, -denominator)
+        } else {
+            (numerator.clone(), denominator.clone())
+        };
         let shift = (u64::from(bits) + 1 + denominator.bits()).saturating_sub(numerator.bits());
         let shifted = numerator << shift;
         // SOUND: `div_floor` is the floor of the exact quotient; the ceiling of x is minus the floor of -x.

@@ -41,7 +41,7 @@ pub(crate) fn prove_signs(
     budget: &mut Budget,
 ) -> Result<Cases, Rejection> {
     let on_cell = Duty::new(rule, Obligation::SignOnCell, position);
-    let half = Rational::new(1.into(), 2.into());
+    let half = Rational::new(1_i32.into(), 2_i32.into());
     let (centre, half_width) = ((from + &cell.to) * &half, (&cell.to - from) * &half);
     let stretch = Stretch { centre: &centre, half_width: &half_width, order: cell.order, bits: certificate.bits };
     let mut signs: Signs = vec![None; model.traces.len()];
@@ -62,7 +62,8 @@ pub(crate) fn prove_signs(
             for (index, power, sign) in listed {
                 let trace = model.traces.get(*index).ok_or_else(|| on_cell.refuted())?;
                 let power = usize::try_from(*power).unwrap_or(usize::MAX);
-                let vanishes = trace.sequence.len() >= power && trace.sequence.values().iter().take(power).all(Zero::is_zero);
+                let vanishes =
+                    trace.sequence.len() >= power && trace.sequence.values().iter().take(power).all(Zero::is_zero);
                 Duty::new(rule, Obligation::VanishesAtStart, position).ensure(vanishes)?;
                 let zero = Rational::zero();
                 let stretch = Stretch { centre: &zero, half_width: &cell.to, ..stretch };
@@ -98,7 +99,13 @@ fn set(signs: &mut Signs, index: usize, sign: Sign) {
 }
 
 /// Proves that a function has this sign on a stretch; `Equal` only for the zero function.
-fn prove_sign(duty: Duty, form: &ClosedForm, sign: Sign, stretch: Stretch, budget: &mut Budget) -> Result<(), Rejection> {
+fn prove_sign(
+    duty: Duty,
+    form: &ClosedForm,
+    sign: Sign,
+    stretch: Stretch,
+    budget: &mut Budget,
+) -> Result<(), Rejection> {
     if form.terms.is_empty() {
         return duty.ensure(sign == Ordering::Equal);
     }
@@ -107,7 +114,12 @@ fn prove_sign(duty: Duty, form: &ClosedForm, sign: Sign, stretch: Stretch, budge
 }
 
 /// The enclosure of an auxiliary function at an instant.
-pub(crate) fn value_at(form: &ClosedForm, at: &Rational, bits: u32, budget: &mut Budget) -> Result<Option<crate::number::Interval>, Rejection> {
+pub(crate) fn value_at(
+    form: &ClosedForm,
+    at: &Rational,
+    bits: u32,
+    budget: &mut Budget,
+) -> Result<Option<crate::number::Interval>, Rejection> {
     let zero = Rational::zero();
     form.enclose(Stretch { centre: at, half_width: &zero, order: form_order(form), bits }, budget)
 }

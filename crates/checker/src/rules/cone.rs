@@ -23,7 +23,13 @@ use std::collections::BTreeMap;
 type Turns = BTreeMap<usize, Vec<i64>>;
 
 /// Checks that the zone is false for all t >= cone.from. The certificate's sums have been checked.
-pub(crate) fn check(cone: &Cone, certificate: &Certificate, model: &Model, limits: &Limits, budget: &mut Budget) -> Result<(), Rejection> {
+pub(crate) fn check(
+    cone: &Cone,
+    certificate: &Certificate,
+    model: &Model,
+    limits: &Limits,
+    budget: &mut Budget,
+) -> Result<(), Rejection> {
     Duty::new(Rule::Cone, Obligation::CellsCoverWindow, 0).ensure(cone.from.is_positive())?;
     let forms = lead_forms(cone, certificate, model, budget)?;
     let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(cone.base.len()), 0)];
@@ -71,7 +77,12 @@ fn check_leaf(
 }
 
 /// The leading part of each trace that has one in the certificate.
-pub(crate) fn lead_forms(cone: &Cone, certificate: &Certificate, model: &Model, budget: &mut Budget) -> Result<Vec<Option<LeadForm>>, Rejection> {
+pub(crate) fn lead_forms(
+    cone: &Cone,
+    certificate: &Certificate,
+    model: &Model,
+    budget: &mut Budget,
+) -> Result<Vec<Option<LeadForm>>, Rejection> {
     let turns = check_angles(cone, certificate, model)?;
     let mut forms = Vec::new();
     for (position, (lead, trace)) in cone.leads.iter().zip(&model.traces).enumerate() {
@@ -96,14 +107,20 @@ pub(crate) fn lead_forms(cone: &Cone, certificate: &Certificate, model: &Model, 
 }
 
 /// Checks that the leading roots have equal real parts; returns a lower bound of it.
-fn check_real_parts(position: usize, lead: &Lead, certificate: &Certificate, model: &Model) -> Result<Dyadic, Rejection> {
+fn check_real_parts(
+    position: usize,
+    lead: &Lead,
+    certificate: &Certificate,
+    model: &Model,
+) -> Result<Dyadic, Rejection> {
     let equal = Duty::new(Rule::Cone, Obligation::RealPartsAreEqual, position);
     match &lead.real_part {
         RealPart::Single => equal.ensure(lead.roots.len() == 1)?,
         RealPart::Line(line) => {
             for root in &lead.roots {
                 let on_line = Duty::new(Rule::Equality, Obligation::RootIsOnLine, *root);
-                let decided = model.table.is_on_line(*root, line, certificate.bits).ok_or_else(|| on_line.inconclusive())?;
+                let decided =
+                    model.table.is_on_line(*root, line, certificate.bits).ok_or_else(|| on_line.inconclusive())?;
                 on_line.ensure(decided)?;
             }
         }
@@ -149,7 +166,11 @@ fn check_angles(cone: &Cone, certificate: &Certificate, model: &Model) -> Result
             let known = turns.get(&part.index).ok_or_else(|| duty.refuted())?;
             let sign = if part.conjugate { -1 } else { 1 };
             for (slot, n) in total.iter_mut().zip(known) {
-                *slot = times.checked_mul(*n).and_then(|x| x.checked_mul(sign)).and_then(|x| slot.checked_add(x)).ok_or_else(|| duty.refuted())?;
+                *slot = times
+                    .checked_mul(*n)
+                    .and_then(|x| x.checked_mul(sign))
+                    .and_then(|x| slot.checked_add(x))
+                    .ok_or_else(|| duty.refuted())?;
             }
         }
         let expected: Vec<i64> = if sum.root.conjugate { total.iter().map(|n| -n).collect() } else { total };

@@ -15,7 +15,13 @@ use crate::number::Rational;
 use std::cmp::Ordering;
 
 /// Checks that the zone is entered in [from, cell.to].
-pub(crate) fn check(from: &Rational, cell: &Cell, certificate: &Certificate, model: &Model, budget: &mut Budget) -> Result<(), Rejection> {
+pub(crate) fn check(
+    from: &Rational,
+    cell: &Cell,
+    certificate: &Certificate,
+    model: &Model,
+    budget: &mut Budget,
+) -> Result<(), Rejection> {
     Duty::new(Rule::Entry, Obligation::InstantIsInWindow, 0).ensure(*from <= cell.to)?;
     let cases = prove_signs(Rule::Entry, 0, from, cell, certificate, model, budget)?;
     let proved = Duty::new(Rule::Entry, Obligation::ZoneIsProvedAtInstant, 0);

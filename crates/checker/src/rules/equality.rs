@@ -16,7 +16,14 @@ use crate::number::{Complex, Interval, Rational};
 use num_traits::{One, Zero};
 
 /// Checks one sum.
-pub(crate) fn check(position: usize, sum: &Sum, certificate: &Certificate, model: &Model, limits: &Limits, budget: &mut Budget) -> Result<(), Rejection> {
+pub(crate) fn check(
+    position: usize,
+    sum: &Sum,
+    certificate: &Certificate,
+    model: &Model,
+    limits: &Limits,
+    budget: &mut Budget,
+) -> Result<(), Rejection> {
     let are_roots = Duty::new(Rule::Equality, Obligation::SumsAreRoots, position);
     let missing = || are_roots.refuted();
     let mut left = vec![Rational::one()];
