@@ -1,9 +1,9 @@
 //! The block structure of a matrix: strongly connected components of its dependency graph.
 //!
-//! State i depends on state j if A_ij is not 0. Listed so that each component comes after the ones that it depends on, the components
-//! bring A to block lower triangular form by a permutation; the characteristic polynomial is the product over the blocks. Exact,
-//! and linear in the number of non-zero entries: this is what makes large sparse models tractable.
-//! Source: Tarjan, SIAM J. Comput. 1 (1972) 146-160 (here without recursion).
+//! State i depends on state j if A_ij is not 0. Listed so that each component comes after the ones that it depends on,
+//! the components bring A to block lower triangular form by a permutation; the characteristic polynomial is the
+//! product over the blocks. Exact, and linear in the number of non-zero entries: this is what makes large sparse
+//! models tractable. Source: Tarjan, SIAM J. Comput. 1 (1972) 146-160 (here without recursion).
 
 use crate::characteristic::characteristic_polynomial;
 use crate::error::CoreError;
@@ -87,7 +87,8 @@ impl TryFrom<&RationalMatrix> for SparseMatrix {
     }
 }
 
-/// The strongly connected components of a graph given by successor lists; a component comes after all components that it can reach.
+/// The strongly connected components of a graph given by successor lists; a component comes after all components that
+/// it can reach.
 ///
 /// # Cost
 /// Linear in vertices and edges; no recursion.

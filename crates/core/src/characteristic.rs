@@ -1,8 +1,8 @@
 //! Characteristic polynomials of rational matrices.
 //!
 //! With d_i the common denominator of row i and R = diag(d) A, the polynomial det(diag(d) z - R) = d_1...d_n chi(z)
-//! has integer coefficients. Its coefficient of z^(n-k) is a sum of binom(n,k) products of a k x k minor of R and n-k scales, so
-//! Hadamard's inequality bounds it; it is computed modulo enough 62-bit primes to exceed twice the bound.
+//! has integer coefficients. Its coefficient of z^(n-k) is a sum of binom(n,k) products of a k x k minor of R and n-k
+//! scales, so Hadamard's inequality bounds it; it is computed modulo enough 62-bit primes to exceed twice the bound.
 //! Modulo p the matrix is brought to Hessenberg form by similarity. Results are exact.
 //! Source: Cohen, A Course in Computational Algebraic Number Theory, Algorithm 2.2.9 (from memory).
 

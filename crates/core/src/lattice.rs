@@ -1,10 +1,10 @@
 //! Lattice reduction, and proposals for integer relations among real numbers.
 //!
-//! LLL in the all-integer form: d_i are the Gram determinants, lambda_ij = d_j mu_ij, all integers; a basis is reduced with delta = 3/4.
-//! The output is exact and deterministic; that it is a basis of the same lattice holds by construction (only integer row operations).
-//! Relations proposed here are *not* proved: they are candidates for an exact test elsewhere.
-//! Source: Lenstra, Lenstra, Lovasz, Math. Ann. 261 (1982) 515-534; de Weger's integral variant, as in Cohen, A Course in Computational
-//! Algebraic Number Theory, Algorithm 2.6.7 (from memory).
+//! LLL in the all-integer form: d_i are the Gram determinants, lambda_ij = d_j mu_ij, all integers; a basis is reduced
+//! with delta = 3/4. The output is exact and deterministic; that it is a basis of the same lattice holds by
+//! construction (only integer row operations). Relations proposed here are *not* proved: they are candidates for an
+//! exact test elsewhere. Source: Lenstra, Lenstra, Lovasz, Math. Ann. 261 (1982) 515-534; de Weger's integral variant,
+//! as in Cohen, A Course in Computational Algebraic Number Theory, Algorithm 2.6.7 (from memory).
 
 use num_bigint::BigInt;
 use num_integer::Integer;
@@ -121,9 +121,10 @@ pub fn reduce_basis(rows: Vec<Vec<BigInt>>) -> Option<Vec<Vec<BigInt>>> {
 
 /// Proposes independent integer relations sum_j n_j x_j = 0 among real numbers given as integers X_j ~ x_j 2^bits.
 ///
-/// Returned are the vectors of a reduced basis of the lattice {(n, 2^-bits-scaled residual)} whose coefficients are at most `size` and whose
-/// residual |sum n_j X_j| is at most `size` times the number of terms: what rounding explains. **Not proved**; a relation with coefficients up to `size` that is exact
-/// is found if `bits` is well above (number of terms) * log2(size). Shortest first.
+/// Returned are the vectors of a reduced basis of the lattice {(n, 2^-bits-scaled residual)} whose coefficients are at
+/// most `size` and whose residual |sum n_j X_j| is at most `size` times the number of terms: what rounding explains.
+/// **Not proved**; a relation with coefficients up to `size` that is exact is found if `bits` is well above (number of
+/// terms) * log2(size). Shortest first.
 pub fn approx_integer_relations(scaled: &[BigInt], size: u32) -> Vec<Vec<BigInt>> {
     let n = scaled.len();
     let rows = scaled.iter().enumerate().map(|(i, x)| {

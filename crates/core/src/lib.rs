@@ -1,9 +1,10 @@
 //! The exact structure of exp(At) for a rational matrix A.
 //!
-//! Everything a certificate search needs to know about a linear system is here, exactly or by rigorous enclosure: integer
-//! polynomials and their factors, characteristic polynomials, root discs, order and equality of real parts, linear recurrences,
-//! matrix exponentials, and the ring of exponential polynomials. Floating-point numbers occur only in `approx` modules, in functions whose
-//! names start with `approx_`; what they return is a proposal that is proved before it is used.
+//! Everything a certificate search needs to know about a linear system is here, exactly or by rigorous enclosure:
+//! integer polynomials and their factors, characteristic polynomials, root discs, order and equality of real parts,
+//! linear recurrences, matrix exponentials, and the ring of exponential polynomials. Floating-point numbers occur only
+//! in `approx` modules, in functions whose names start with `approx_`; what they return is a proposal that is proved
+//! before it is used.
 
 pub mod blocks;
 pub mod characteristic;

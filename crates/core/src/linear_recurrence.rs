@@ -1,10 +1,10 @@
 //! Minimal annihilators of integer sequences that obey a linear recurrence.
 //!
-//! A sequence y is annihilated by m = sum m_j z^j if sum_j m_j y_(k+j) = 0 for all k. The annihilators form an ideal; if it
-//! contains a monic integer polynomial, its monic generator has integer coefficients too (Gauss's lemma). The generator is found modulo
-//! word-size primes (Berlekamp-Massey), lifted until stable, and verified on the whole sequence in integers. It is minimal because the
-//! Hankel rank modulo a prime is never above the rank over the rationals.
-//! Source: Massey, IEEE Trans. IT 15 (1969) 122-127, doi:10.1109/TIT.1969.1054260.
+//! A sequence y is annihilated by m = sum m_j z^j if sum_j m_j y_(k+j) = 0 for all k. The annihilators form an ideal;
+//! if it contains a monic integer polynomial, its monic generator has integer coefficients too (Gauss's lemma). The
+//! generator is found modulo word-size primes (Berlekamp-Massey), lifted until stable, and verified on the whole
+//! sequence in integers. It is minimal because the Hankel rank modulo a prime is never above the rank over the
+//! rationals. Source: Massey, IEEE Trans. IT 15 (1969) 122-127, doi:10.1109/TIT.1969.1054260.
 
 use crate::integer_polynomial::IntegerPolynomial;
 use crate::modular::{Field, Reconstruction, large_field};
@@ -16,8 +16,8 @@ use num_traits::Zero;
 /// `sequence` holds y_0 .. y_(2N-1). `None` if no monic integer annihilator of degree <= N was found.
 ///
 /// # Guarantee
-/// The result annihilates all terms given, exactly. If the sequence is known to obey *some* recurrence of order <= N, the result
-/// annihilates the infinite sequence and is its minimal annihilator; 1 stands for the zero sequence.
+/// The result annihilates all terms given, exactly. If the sequence is known to obey *some* recurrence of order <= N,
+/// the result annihilates the infinite sequence and is its minimal annihilator; 1 stands for the zero sequence.
 ///
 /// # Cost
 /// O(N^2) word operations for each 62 bits of the result, and N^2 integer products for the verification.
@@ -32,8 +32,9 @@ pub fn minimal_annihilator(sequence: &[BigInt]) -> Option<IntegerPolynomial> {
     if sequence.iter().all(Zero::is_zero) {
         return Some(IntegerPolynomial::one());
     }
-    // By Cramer's rule the coefficients are quotients of Hankel determinants of order <= N, of at most N (bits + log2(N)/2) bits
-    // (Hadamard). The cap allows twice that and some unlucky primes; it ends the search for sequences without integer annihilator.
+    // By Cramer's rule the coefficients are quotients of Hankel determinants of order <= N, of at most N (bits +
+    // log2(N)/2) bits (Hadamard). The cap allows twice that and some unlucky primes; it ends the search for sequences
+    // without integer annihilator.
     let largest = sequence.iter().map(BigInt::bits).max().unwrap_or(0) + 16;
     let cap = 16 + usize::try_from(largest).ok()?.checked_mul(sequence.len())? / 61;
     let mut best = 0;

@@ -1,9 +1,10 @@
 //! Minimal polynomials of rational matrices, at a vector and as a whole.
 //!
-//! The minimal polynomial of A at v generates the m with m(A) v = 0. It is found modulo word-size primes by elimination among v, Av, A^2 v, ..., lifted,
-//! and verified in integers. If the Krylov spaces of v_1..v_k together span Q^n, the least common multiple of
-//! the minimal polynomials at v_1..v_k is the one of A. Full rank modulo a prime proves full rank over the rationals. All results are exact.
-//! The multiplicity of a factor in the minimal polynomial is the size of the largest Jordan block of its roots.
+//! The minimal polynomial of A at v generates the m with m(A) v = 0. It is found modulo word-size primes by
+//! elimination among v, Av, A^2 v, ..., lifted, and verified in integers. If the Krylov spaces of v_1..v_k together
+//! span Q^n, the least common multiple of the minimal polynomials at v_1..v_k is the one of A. Full rank modulo a
+//! prime proves full rank over the rationals. All results are exact. The multiplicity of a factor in the minimal
+//! polynomial is the size of the largest Jordan block of its roots.
 
 use crate::error::CoreError;
 use crate::integer_polynomial::IntegerPolynomial;
@@ -93,8 +94,8 @@ impl Span {
 /// [`CoreError::NotSquare`]; [`CoreError::Shape`] if v has not n entries.
 ///
 /// # Guarantee
-/// m(A) v = 0 is verified in integers; the degree is minimal because the rank of v, Av, A^2 v, ... modulo a prime is never above the rank over
-/// the rationals.
+/// m(A) v = 0 is verified in integers; the degree is minimal because the rank of v, Av, A^2 v, ... modulo a prime is
+/// never above the rank over the rationals.
 pub fn minimal_polynomial_at(a: &RationalMatrix, v: &[Rational]) -> Result<IntegerPolynomial, CoreError> {
     let n = a.order()?;
     if v.len() != n {

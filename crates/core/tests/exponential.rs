@@ -1,4 +1,5 @@
-//! Matrix exponentials against published closed forms, printed reference results, an independent ball library, and themselves.
+//! Matrix exponentials against published closed forms, printed reference results, an independent ball library, and
+//! themselves.
 
 use keepout_checker::number::{Complex, Interval};
 use keepout_core::{CoreError, IntervalMatrix, RationalMatrix, enclose_exponential};
@@ -126,7 +127,8 @@ fn nilpotent_matrix_gives_a_polynomial() {
     }
 }
 
-/// Reference results printed to four decimals in the SLICOT Reference (BSD-3): MB05MD, MB05ND (exponential and integral), MB05OD.
+/// Reference results printed to four decimals in the SLICOT Reference (BSD-3): MB05MD, MB05ND (exponential and
+/// integral), MB05OD.
 fn assert_printed(exp: &IntervalMatrix, offset: usize, printed: &[&str]) {
     let slack = ratio(51, 1_000_000);
     for (i, row) in printed.iter().enumerate() {

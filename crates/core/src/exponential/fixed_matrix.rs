@@ -1,8 +1,9 @@
 //! Square fixed-point matrices with a proven error in the row-sum norm.
 //!
-//! A ball stands for all matrices P with |P - value|_inf <= error, where value = (+-magnitudes) 2^-fraction. Entries are sign and magnitude,
-//! `limbs` words each. Products drop less than one unit 2^-fraction of each entry, that is less than n units in the norm.
-//! Invariant: the true matrix is in the ball; every operation preserves it.
+//! A ball stands for all matrices P with |P - value|_inf <= error, where value = (+-magnitudes) 2^-fraction. Entries
+//! are sign and magnitude,
+//! `limbs` words each. Products drop less than one unit 2^-fraction of each entry, that is less than n units in the
+//! norm. Invariant: the true matrix is in the ball; every operation preserves it.
 
 use super::limb;
 use crate::root::magnitude::Magnitude;
@@ -162,7 +163,8 @@ impl Ball {
         Self { n, limbs, fraction, magnitudes, negative, error }
     }
 
-    /// sum of c_k matrices[k] + c_0 I for non-negative numbers c_k = scalars / 2^fraction, each in error by at most one unit.
+    /// sum of c_k matrices[k] + c_0 I for non-negative numbers c_k = scalars / 2^fraction, each in error by at most
+    /// one unit.
     ///
     /// `terms` pairs c_k with the power X^k; `constant` is c_0. The norms of the powers are at most 1.
     pub(super) fn combination(n: usize, fraction: u64, constant: &BigUint, terms: &[(&BigUint, &Self)]) -> Self {
@@ -193,8 +195,8 @@ impl Ball {
                 limb::sub_into(plus, &minus);
             }
         }
-        // SOUND(hi): c_k <= 1 and |X^k| <= 1 (asked of the caller): each term adds its own error and one unit for c_k; the shift drops
-        // less than n units; the constant one unit.
+        // SOUND(hi): c_k <= 1 and |X^k| <= 1 (asked of the caller): each term adds its own error and one unit for c_k;
+        // the shift drops less than n units; the constant one unit.
         let unit = Self::units(1, fraction);
         let error = terms
             .iter()

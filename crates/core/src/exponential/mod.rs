@@ -1,9 +1,10 @@
 //! Rigorous enclosures of exp(A t) for rational A and t.
 //!
-//! Scaling and squaring: X = A t / 2^s with |X| <= 2^-r, the Taylor polynomial of degree K by baby and giant steps, then s squarings, all in fixed-point
-//! integer matrices that carry a proven error in the row-sum norm. The remainder is at most 2 |X|^(K+1)/(K+1)!. If the error turns out too
-//! large, the computation is repeated with more bits: the first run tells how many are missing.
-//! Source: Moler and Van Loan, SIAM Rev. 45 (2003) 3-49, doi:10.1137/S00361445024180, methods 1 and 3; Paterson and Stockmeyer, SIAM J. Comput. 2 (1973) 60-66.
+//! Scaling and squaring: X = A t / 2^s with |X| <= 2^-r, the Taylor polynomial of degree K by baby and giant steps,
+//! then s squarings, all in fixed-point integer matrices that carry a proven error in the row-sum norm. The remainder
+//! is at most 2 |X|^(K+1)/(K+1)!. If the error turns out too large, the computation is repeated with more bits: the
+//! first run tells how many are missing. Source: Moler and Van Loan, SIAM Rev. 45 (2003) 3-49,
+//! doi:10.1137/S00361445024180, methods 1 and 3; Paterson and Stockmeyer, SIAM J. Comput. 2 (1973) 60-66.
 
 mod fixed_matrix;
 mod limb;
@@ -91,11 +92,12 @@ impl Index<(usize, usize)> for IntervalMatrix {
 /// Encloses exp(A t).
 ///
 /// # Guarantee
-/// Every entry of exp(A t) lies in its interval. The half-width of every entry is at most 2^-bits times the largest entry's modulus (the accuracy is relative to
-/// the matrix, not to each entry).
+/// Every entry of exp(A t) lies in its interval. The half-width of every entry is at most 2^-bits times the largest
+/// entry's modulus (the accuracy is relative to the matrix, not to each entry).
 ///
 /// # Errors
-/// [`CoreError::NotSquare`]; [`CoreError::LimitExceeded`] if more than [`FRACTION_LIMIT`] bits of working precision are needed: |A t| is huge.
+/// [`CoreError::NotSquare`]; [`CoreError::LimitExceeded`] if more than [`FRACTION_LIMIT`] bits of working precision
+/// are needed: |A t| is huge.
 ///
 /// # Cost
 /// About (log2 |A t| + 10) products of n x n matrices of `bits` + (growth) bits.
@@ -172,7 +174,8 @@ fn taylor(x: &Ball, n: usize, fraction: u64) -> Ball {
 fn taylor_degree(norm: Magnitude, fraction: u64) -> (usize, Magnitude) {
     let mut degree = 0;
     let mut term = norm;
-    // SOUND(hi): `term` is norm^(K+1)/(K+1)! rounded up; later terms at least halve, so the tail is at most twice the term.
+    // SOUND(hi): `term` is norm^(K+1)/(K+1)! rounded up; later terms at least halve, so the tail is at most twice the
+    // term.
     while term.top() > -(fraction as i64) {
         degree += 1;
         let ratio = norm.div_hi(Magnitude::exact(degree as u32 + 1, 0)).unwrap_or_else(Magnitude::zero);

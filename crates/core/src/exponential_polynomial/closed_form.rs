@@ -1,8 +1,8 @@
 //! Enclosures of an exponential polynomial through its closed form.
 //!
-//! Every exponent is enclosed by a root disc, every coefficient by interval power series at the disc; conjugate terms are joined to twice the
-//! real part. At a time the sum is evaluated term by term; over an interval of times it is met with the mean value form. Errors do
-//! not accumulate with time: t = 10^6 costs what t = 1 costs.
+//! Every exponent is enclosed by a root disc, every coefficient by interval power series at the disc; conjugate terms
+//! are joined to twice the real part. At a time the sum is evaluated term by term; over an interval of times it is met
+//! with the mean value form. Errors do not accumulate with time: t = 10^6 costs what t = 1 costs.
 
 use super::ExponentialPolynomial;
 use crate::error::CoreError;
@@ -160,7 +160,8 @@ impl ClosedForm {
         let middle = Interval::point(if inside { halfway } else { time.lo().clone() });
         let slope = self.derivative().sum(time)?;
         let centred = self.sum(&middle)?.add(&slope.mul(&time.sub(&middle, work), work), work);
-        // SOUND: both contain g(t) for each member t (the second by the mean value theorem, because `middle` is a member and
+        // SOUND: both contain g(t) for each member t (the second by the mean value theorem, because `middle` is a
+        // member and
         // `slope` encloses g' on all of `time`), so their intersection does.
         intersection(&direct, &centred).or(Some(direct))
     }
@@ -183,7 +184,8 @@ impl ClosedForm {
         let work = self.bits + 64;
         let mut terms: Vec<Term> = self.terms.clone();
         for (k, term) in self.terms.iter().enumerate() {
-            // (c t^j/j! exp(mu t))' = mu c t^j/j! exp(mu t) + c t^(j-1)/(j-1)! exp(mu t); powers of one exponent are consecutive.
+            // (c t^j/j! exp(mu t))' = mu c t^j/j! exp(mu t) + c t^(j-1)/(j-1)! exp(mu t); powers of one exponent are
+            // consecutive.
             let mut coefficient = term.coefficient.mul(&term.exponent.enclose(), work);
             let next = self.terms.get(k + 1).filter(|t| t.factor == term.factor && t.exponent == term.exponent);
             if let Some(next) = next {

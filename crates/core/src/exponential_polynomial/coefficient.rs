@@ -1,9 +1,10 @@
 //! Exact coefficients of the closed form, as elements of Q[z]/(q).
 //!
-//! With the Laplace transform N(z)/m(z), m = q^e c, and a root mu of q, the coefficient of t^j/j! exp(mu t) is h_(e-1-j), where h is the
-//! power series of N(mu+w) / u(mu+w), u = c (q/w)^e. Since h_i = (N_i - sum_(k>=1) u_k h_(i-k))/u_0, the element H_i = u_0^(i+1) h_i is
-//! obtained without division: H_i = u_0^i N_i - sum_(k=1..i) u_k u_0^(k-1) H_(i-k). As u_0(mu) != 0, the coefficient vanishes at mu if and only if mu is a
-//! root of gcd(H_i, q): one gcd decides it exactly.
+//! With the Laplace transform N(z)/m(z), m = q^e c, and a root mu of q, the coefficient of t^j/j! exp(mu t) is
+//! h_(e-1-j), where h is the power series of N(mu+w) / u(mu+w), u = c (q/w)^e. Since h_i = (N_i - sum_(k>=1) u_k
+//! h_(i-k))/u_0, the element H_i = u_0^(i+1) h_i is obtained without division: H_i = u_0^i N_i - sum_(k=1..i) u_k
+//! u_0^(k-1) H_(i-k). As u_0(mu) != 0, the coefficient vanishes at mu if and only if mu is a root of gcd(H_i, q): one
+//! gcd decides it exactly.
 
 use super::ExponentialPolynomial;
 use super::residue_ring::Residue;
@@ -54,8 +55,8 @@ impl ExponentialPolynomial {
     /// The exact coefficients, factor by factor, each with powers 0 .. multiplicity - 1.
     ///
     /// # Guarantee
-    /// g(t) is the sum over all roots mu of all factors, and all powers j, of (coefficient at mu) t^j/j! exp(mu t). Coefficients of the highest
-    /// power of each factor vanish nowhere, because the annihilator is minimal.
+    /// g(t) is the sum over all roots mu of all factors, and all powers j, of (coefficient at mu) t^j/j! exp(mu t).
+    /// Coefficients of the highest power of each factor vanish nowhere, because the annihilator is minimal.
     pub fn coefficients(&self) -> Vec<Coefficient> {
         let m = self.annihilator();
         let (numerator, denominator) = self.laplace_numerator(&m);

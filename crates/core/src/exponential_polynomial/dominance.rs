@@ -1,7 +1,7 @@
 //! The order of growth of the terms of an exponential polynomial.
 //!
-//! Classes (Re mu, j) in decreasing lexicographic order; only terms whose coefficient is exactly proved non-zero are listed. Equality of real parts is
-//! proved as in [`crate::structure`]; the first class is the lead for large t.
+//! Classes (Re mu, j) in decreasing lexicographic order; only terms whose coefficient is exactly proved non-zero are
+//! listed. Equality of real parts is proved as in [`crate::structure`]; the first class is the lead for large t.
 
 use super::ExponentialPolynomial;
 use crate::error::CoreError;
@@ -24,11 +24,12 @@ impl ExponentialPolynomial {
     /// The classes of terms with non-zero coefficients, dominant class first.
     ///
     /// # Guarantee
-    /// A class with [`Evidence::Proved`] in its rate has equal real parts; different classes have proved different (real part, power). No listed coefficient is 0, and
-    /// no non-zero term is missing.
+    /// A class with [`Evidence::Proved`] in its rate has equal real parts; different classes have proved different
+    /// (real part, power). No listed coefficient is 0, and no non-zero term is missing.
     ///
     /// # Errors
-    /// [`CoreError::LimitExceeded`] if roots cannot be separated, or a coefficient's vanishing cannot be located at `bits_limit`.
+    /// [`CoreError::LimitExceeded`] if roots cannot be separated, or a coefficient's vanishing cannot be located at
+    /// `bits_limit`.
     pub fn dominance(&self, bits: u32, bits_limit: u32) -> Result<Vec<DominanceClass>, CoreError> {
         let coefficients = self.coefficients();
         let factors: Vec<SpectralFactor> = self.factors.iter().map(spectral).collect();

@@ -1,10 +1,10 @@
 //! Real exponential polynomials with exact data: the ring of scalar traces.
 //!
-//! An exponential polynomial g(t) = sum c t^j exp(mu t) is held by an annihilator m = prod q_e^e over Q (m(d/dt) g = 0, the q_e square-free
-//! and coprime) and its derivatives g(0), g'(0), ..., g^(N-1)(0), N = deg m, all rational. Sums, products and derivatives stay in this form; no
-//! eigenvalue is ever approximated. The annihilator is the minimal one: it is found from the derivatives themselves, so that cancelled exponents
-//! disappear exactly. The zero function has m = 1 and no derivatives.
-//! Coefficients, dominance and enclosures are in the files beside this one.
+//! An exponential polynomial g(t) = sum c t^j exp(mu t) is held by an annihilator m = prod q_e^e over Q (m(d/dt) g =
+//! 0, the q_e square-free and coprime) and its derivatives g(0), g'(0), ..., g^(N-1)(0), N = deg m, all rational.
+//! Sums, products and derivatives stay in this form; no eigenvalue is ever approximated. The annihilator is the
+//! minimal one: it is found from the derivatives themselves, so that cancelled exponents disappear exactly. The zero
+//! function has m = 1 and no derivatives. Coefficients, dominance and enclosures are in the files beside this one.
 
 mod closed_form;
 mod coefficient;

@@ -1,7 +1,7 @@
 //! Lifting of a factorisation modulo p to one modulo a power of p.
 //!
-//! A binary tree of products: each node g h is lifted together with its Bezout pair s g + t h = 1, doubling the exponent.
-//! Invariant: at each node, f = g h and s g + t h = 1 modulo the current modulus, h and g monic.
+//! A binary tree of products: each node g h is lifted together with its Bezout pair s g + t h = 1, doubling the
+//! exponent. Invariant: at each node, f = g h and s g + t h = 1 modulo the current modulus, h and g monic.
 //! Source: von zur Gathen and Gerhard, Modern Computer Algebra, Algorithms 15.10 and 15.17 (from memory).
 
 use super::modular_factor::ModularFactors;
@@ -29,10 +29,11 @@ enum Tree {
     },
 }
 
-/// A bound B with |coefficient| < B for each integer polynomial that divides lead(f) f and has leading coefficient lead(f).
+/// A bound B with |coefficient| < B for each integer polynomial that divides lead(f) f and has leading coefficient
+/// lead(f).
 fn factor_bound(f: &IntegerPolynomial) -> BigInt {
-    // SOUND(hi): Mignotte: a factor of degree <= d with leading coefficient dividing lead has height <= 2^d |f|_2; times lead
-    // for the scaling by lead(f). The square root is rounded up by + 1.
+    // SOUND(hi): Mignotte: a factor of degree <= d with leading coefficient dividing lead has height <= 2^d |f|_2;
+    // times lead for the scaling by lead(f). The square root is rounded up by + 1.
     let square: BigInt = f.coefficients().iter().map(|c| c * c).sum();
     ((square.sqrt() + 1u32) * f.leading().abs()) << f.degree()
 }

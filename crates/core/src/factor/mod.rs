@@ -1,10 +1,11 @@
 //! Factorisation of integer polynomials over the rationals.
 //!
-//! Square-free decomposition; then, for each square-free part: factors modulo a small prime (Cantor-Zassenhaus), lifted to a modulus
-//! above twice the factor bound (Hensel), and recombined by exact trial division, subsets of growing size first. The number of subsets is
-//! capped: what is left over is reported as [`Irreducibility::NotFactoredFurther`]. The product of the factors with their multiplicities is
-//! the input, exactly, in every case.
-//! Source: von zur Gathen and Gerhard, Modern Computer Algebra, ch. 14 and 15 (from memory); Mignotte, Math. Comp. 28 (1974) 1153-1157.
+//! Square-free decomposition; then, for each square-free part: factors modulo a small prime (Cantor-Zassenhaus),
+//! lifted to a modulus above twice the factor bound (Hensel), and recombined by exact trial division, subsets of
+//! growing size first. The number of subsets is capped: what is left over is reported as
+//! [`Irreducibility::NotFactoredFurther`]. The product of the factors with their multiplicities is the input, exactly,
+//! in every case. Source: von zur Gathen and Gerhard, Modern Computer Algebra, ch. 14 and 15 (from memory); Mignotte,
+//! Math. Comp. 28 (1974) 1153-1157.
 
 mod hensel;
 mod modular_factor;

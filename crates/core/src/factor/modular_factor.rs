@@ -1,8 +1,8 @@
 //! Factors of a square-free polynomial modulo a small prime.
 //!
-//! Distinct-degree splitting for several primes; the prime with the fewest factors is kept, and the sets of possible degrees of rational
-//! factors are intersected. Equal-degree splitting with a fixed pseudo-random sequence: the result does not depend on chance.
-//! Source: Cantor and Zassenhaus, Math. Comp. 36 (1981) 587-592.
+//! Distinct-degree splitting for several primes; the prime with the fewest factors is kept, and the sets of possible
+//! degrees of rational factors are intersected. Equal-degree splitting with a fixed pseudo-random sequence: the result
+//! does not depend on chance. Source: Cantor and Zassenhaus, Math. Comp. 36 (1981) 587-592.
 
 use crate::integer_polynomial::IntegerPolynomial;
 use crate::modular::{Field, small_primes};

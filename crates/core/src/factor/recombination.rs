@@ -1,8 +1,8 @@
 //! From factors modulo p^k to factors over the rationals.
 //!
-//! Subsets of growing size are multiplied out modulo p^k with the leading coefficient, reduced to least absolute value, made primitive and
-//! tried by exact division. A quick test on the constant coefficient skips most subsets. When all subsets of at most half the remaining
-//! factors fail, the rest is irreducible.
+//! Subsets of growing size are multiplied out modulo p^k with the leading coefficient, reduced to least absolute
+//! value, made primitive and tried by exact division. A quick test on the constant coefficient skips most subsets.
+//! When all subsets of at most half the remaining factors fail, the rest is irreducible.
 //! Source: Zassenhaus, J. Number Theory 1 (1969) 291-311 (from memory).
 
 use super::Irreducibility;

@@ -1,7 +1,8 @@
 //! The value of an integer polynomial at a dyadic complex point, with a proven error bound.
 //!
-//! The point is written z = 2^s w with |w| < 1 and the coefficients A_k = a_k 2^(s k); Horner's rule runs on integers in units
-//! of 2^(M - g), M the top of the largest A_k. Each step drops less than one unit in each part, and |w| < 1 never enlarges an earlier error.
+//! The point is written z = 2^s w with |w| < 1 and the coefficients A_k = a_k 2^(s k); Horner's rule runs on integers
+//! in units of 2^(M - g), M the top of the largest A_k. Each step drops less than one unit in each part, and |w| < 1
+//! never enlarges an earlier error.
 
 use super::magnitude::Magnitude;
 use num_bigint::BigInt;

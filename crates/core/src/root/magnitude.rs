@@ -1,7 +1,7 @@
 //! Upper and lower bounds of non-negative numbers, in one word and an exponent.
 //!
-//! A magnitude is mantissa * 2^exponent with a mantissa below 2^62. Each operation rounds in the direction of its name. Cheap bounds
-//! of radii and norms, where a few bits are all that matters.
+//! A magnitude is mantissa * 2^exponent with a mantissa below 2^62. Each operation rounds in the direction of its
+//! name. Cheap bounds of radii and norms, where a few bits are all that matters.
 
 use keepout_checker::number::Dyadic;
 use num_bigint::BigInt;
@@ -93,8 +93,8 @@ impl Magnitude {
         let base = u128::from(large.mantissa) << 62;
         let exponent = large.exponent - 62;
         let shift = exponent - small.exponent;
-        // SOUND: a part below the unit counts as one unit upwards, as nothing downwards. The left shift loses nothing: the smaller
-        // number is below 2^(top of the larger), so below 2^(63 + 62) units.
+        // SOUND: a part below the unit counts as one unit upwards, as nothing downwards. The left shift loses nothing:
+        // the smaller number is below 2^(top of the larger), so below 2^(63 + 62) units.
         let part = match shift {
             s if s <= 0 => u128::from(small.mantissa) << s.unsigned_abs(),
             s if s > 0 && s < 64 => (u128::from(small.mantissa) >> s) + u128::from(up),

@@ -1,10 +1,11 @@
 //! All complex roots of a square-free integer polynomial, in proven disjoint discs.
 //!
-//! For distinct points z_1..z_d put W_i = q(z_i) / (lead prod_(j != i) (z_i - z_j)). All roots lie in the union of the discs
-//! |z - z_i| <= d |W_i|, and a disc disjoint from the others holds exactly one. The points are refined by z_i - W_i (Weierstrass)
-//! with more and more bits; every sweep evaluates the same W_i that prove the discs. Real roots have exactly real centres, the others come in exactly
-//! conjugate pairs: a disc centred on the axis and isolated holds a real root, because q is real.
-//! Floating-point numbers propose start points and step directions only.
+//! For distinct points z_1..z_d put W_i = q(z_i) / (lead prod_(j != i) (z_i - z_j)). All roots lie in the union of the
+//! discs
+//! |z - z_i| <= d |W_i|, and a disc disjoint from the others holds exactly one. The points are refined by z_i - W_i
+//! (Weierstrass) with more and more bits; every sweep evaluates the same W_i that prove the discs. Real roots have
+//! exactly real centres, the others come in exactly conjugate pairs: a disc centred on the axis and isolated holds a
+//! real root, because q is real. Floating-point numbers propose start points and step directions only.
 //! Source: Smith, J. ACM 17 (1970) 661-674; Boersch-Supan, Numer. Math. 5 (1963) 380-398.
 
 pub(crate) mod approx;
@@ -72,11 +73,12 @@ fn around(centre: &Dyadic, radius: &Dyadic) -> Interval {
 /// Order: by real part of the centre, then imaginary part; conjugates are exact mirror images.
 ///
 /// # Guarantee
-/// Each disc holds exactly one root and the discs are pairwise disjoint. `radius <= 2^-bits |centre|` for each root but 0, which is exact.
+/// Each disc holds exactly one root and the discs are pairwise disjoint. `radius <= 2^-bits |centre|` for each root
+/// but 0, which is exact.
 ///
 /// # Errors
-/// [`CoreError::ConstantPolynomial`], [`CoreError::NotSquareFree`], [`CoreError::LimitExceeded`] for more than [`BITS_LIMIT`] bits or if the
-/// refinement does not separate the roots within its limits.
+/// [`CoreError::ConstantPolynomial`], [`CoreError::NotSquareFree`], [`CoreError::LimitExceeded`] for more than
+/// [`BITS_LIMIT`] bits or if the refinement does not separate the roots within its limits.
 ///
 /// # Cost
 /// O(d^2) products of numbers of about `bits` + (condition) bits for each doubling of the accuracy.

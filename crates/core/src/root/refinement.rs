@@ -1,8 +1,9 @@
 //! Refinement of root proposals until their discs are proved.
 //!
-//! A sweep evaluates q at each point, bounds the disc radii d |W_i|, and stops if every disc is isolated and small. Otherwise
-//! each point moves by -W_i. In a *mirrored* set only real points and points of the upper half plane are stored; the conjugates are
-//! implied. A *free* set stores all points: it is used when the proposals are not mirror images, until it becomes clear which roots are real.
+//! A sweep evaluates q at each point, bounds the disc radii d |W_i|, and stops if every disc is isolated and small.
+//! Otherwise each point moves by -W_i. In a *mirrored* set only real points and points of the upper half plane are
+//! stored; the conjugates are implied. A *free* set stores all points: it is used when the proposals are not mirror
+//! images, until it becomes clear which roots are real.
 
 use super::RootDisc;
 use super::approx::{ApproxComplex, ScaledComplex, approx_roots};

@@ -1,9 +1,10 @@
 //! Proofs that two algebraic numbers are equal.
 //!
-//! *Reflection*: if f(2a - z) = +-f(z) and the mirror image {2a - conj z} of a root's disc meets no other disc of f, the root
-//! has real part exactly a, since 2a - conj lambda is a root of f in the mirrored disc. *Common polynomial*: if Q vanishes at alpha and at beta and Q has exactly
-//! one root in a disc that contains both, then alpha = beta; one root is proved by Rouche's theorem: |q_1| r > |q_0| + sum_(k>=2) |q_k| r^k
-//! for the Taylor coefficients q_k of Q at the centre.
+//! *Reflection*: if f(2a - z) = +-f(z) and the mirror image {2a - conj z} of a root's disc meets no other disc of f,
+//! the root has real part exactly a, since 2a - conj lambda is a root of f in the mirrored disc. *Common polynomial*:
+//! if Q vanishes at alpha and at beta and Q has exactly one root in a disc that contains both, then alpha = beta; one
+//! root is proved by Rouche's theorem: |q_1| r > |q_0| + sum_(k>=2) |q_k| r^k for the Taylor coefficients q_k of Q at
+//! the centre.
 
 use crate::integer_polynomial::IntegerPolynomial;
 use crate::root::{RootDisc, enclose_roots};
@@ -31,7 +32,8 @@ pub(super) fn has_real_part(f: &IntegerPolynomial, disc: &RootDisc, a: &Rational
     {
         return false;
     }
-    // SOUND: the mirror image of our root lies in the mirror of `own`; if that meets no other disc of `common`, it is our root.
+    // SOUND: the mirror image of our root lies in the mirror of `own`; if that meets no other disc of `common`, it is
+    // our root.
     let bits = bits + 64;
     let twice = Interval::rational(&(a + a), bits);
     let mirrored = Complex { re: twice.sub(&own.enclose_re(), bits), im: own.enclose_im() };
@@ -52,7 +54,8 @@ fn rectangles_apart(a: &Complex, b: &Complex) -> bool {
     a.re.is_disjoint(&b.re) || a.im.is_disjoint(&b.im)
 }
 
-/// Whether the root of f in the disc is a root of the divisor g of f (f square-free); `None` if the disc is too coarse to tell.
+/// Whether the root of f in the disc is a root of the divisor g of f (f square-free); `None` if the disc is too coarse
+/// to tell.
 pub(crate) fn vanishes_at(f: &IntegerPolynomial, g: &IntegerPolynomial, disc: &RootDisc, bits: u32) -> Option<bool> {
     if g.is_constant() {
         return Some(false);
@@ -88,7 +91,8 @@ pub(super) fn one_root_near(q: &IntegerPolynomial, a: &Complex, b: &Complex, bit
     let (x, y) = (middle(&re), middle(&im));
     let centre = Complex { re: Interval::point(x), im: Interval::point(y) };
     let offset = Complex { re: re.sub(&centre.re, work), im: im.sub(&centre.im, work) };
-    // SOUND(hi): abs_hi bounds the modulus of every member's distance from the centre; the disc is taken four times as large.
+    // SOUND(hi): abs_hi bounds the modulus of every member's distance from the centre; the disc is taken four times as
+    // large.
     let radius = offset.abs_hi(work).scale(2).max(Dyadic::power_of_two(-i64::from(bits)));
     let taylor = taylor_at(q, &centre, work + 4 * q.degree() as u32);
     let mut others = Dyadic::zero();

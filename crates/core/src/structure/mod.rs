@@ -1,8 +1,9 @@
 //! The exact structure of the spectrum of a rational matrix.
 //!
-//! Blocks, irreducible factors with algebraic multiplicity and Jordan index, root discs, the order of the real parts *including their exact equalities*,
-//! proposed and proved relations among the frequencies, and the growth of exp(At). What is not proved is said to be so: each fact carries
-//! its [`Evidence`]. The Jordan index of an eigenvalue is the size of its largest Jordan block, the multiplicity of its factor in the minimal polynomial.
+//! Blocks, irreducible factors with algebraic multiplicity and Jordan index, root discs, the order of the real parts
+//! *including their exact equalities*, proposed and proved relations among the frequencies, and the growth of exp(At).
+//! What is not proved is said to be so: each fact carries its [`Evidence`]. The Jordan index of an eigenvalue is the
+//! size of its largest Jordan block, the multiplicity of its factor in the minimal polynomial.
 
 mod equality;
 mod growth;
@@ -12,7 +13,7 @@ mod relation;
 
 pub(crate) use equality::vanishes_at;
 pub use growth::{Boundedness, Growth};
-pub use pair_sum::pair_sum_polynomial;
+pub use pair_sum::{pair_difference_polynomial, pair_sum_polynomial};
 pub use rate::RateClass;
 pub(crate) use rate::{PairSums, classes as rate_classes};
 pub use relation::FrequencyRelation;

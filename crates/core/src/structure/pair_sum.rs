@@ -1,8 +1,9 @@
-//! The polynomial whose roots are the sums of two roots of another one.
+//! The polynomials whose roots are the sums, or the differences, of two roots of another one.
 //!
 //! With power sums p_k of the roots of f, the sums lambda_i + lambda_j over all ordered pairs have power sums
-//! s_k = sum_l binom(k,l) p_l p_(k-l), and over i <= j (s_k + 2^k p_k)/2. Newton's identities give the polynomial. For 2 Re lambda = lambda + conj lambda.
-//! Computed exactly, for the monic integer polynomial lead^(d-1) f(z/lead), and scaled back.
+//! s_k = sum_l binom(k,l) p_l p_(k-l), and over i <= j (s_k + 2^k p_k)/2. Newton's identities give the polynomial. For
+//! 2 Re lambda = lambda + conj lambda. Computed exactly, for the monic integer polynomial lead^(d-1) f(z/lead), and
+//! scaled back.
 
 use crate::integer_polynomial::IntegerPolynomial;
 use num_bigint::BigInt;
@@ -22,15 +23,7 @@ use num_traits::{One, Zero};
 pub fn pair_sum_polynomial(f: &IntegerPolynomial) -> IntegerPolynomial {
     let d = f.degree();
     let count = d * (d + 1) / 2;
-    let lead = f.leading();
-    // Roots lead * lambda: monic with integer coefficients a_(d-k) lead^(k-1).
-    let mut signed = Vec::with_capacity(d);
-    let mut power = BigInt::one();
-    for k in 1..=d {
-        signed.push(f.coefficient(d - k) * &power);
-        power *= &lead;
-    }
-    let sums = power_sums(&signed, count);
+    let sums = power_sums(&integral(f), count);
     let mut pair_sums = vec![BigInt::from(count)];
     let mut binomials = vec![BigInt::one()];
     for k in 1..=count {
@@ -38,10 +31,58 @@ pub fn pair_sum_polynomial(f: &IntegerPolynomial) -> IntegerPolynomial {
         let ordered: BigInt = (0..=k).map(|l| &binomials[l] * &sums[l] * &sums[k - l]).sum();
         pair_sums.push((ordered + (&sums[k] << k)) >> 1u32);
     }
-    let mut coefficients = from_power_sums(&pair_sums);
+    assemble(&pair_sums, f)
+}
+
+/// The primitive polynomial prod_(i != j) (z - lambda_i + lambda_j), up to a constant; degree d (d - 1).
+///
+/// 2i Im lambda = lambda - conj lambda is one of its roots for each non-real root lambda.
+///
+/// # Cost
+/// O(d^4) integer products; meant for d <= 12.
+///
+/// ```
+/// use keepout_core::{IntegerPolynomial, structure::pair_difference_polynomial};
+/// // roots 1, 4: differences 3, -3
+/// let differences = pair_difference_polynomial(&IntegerPolynomial::from_small(&[4, -5, 1]));
+/// assert_eq!(differences, IntegerPolynomial::from_small(&[-9, 0, 1]));
+/// ```
+pub fn pair_difference_polynomial(f: &IntegerPolynomial) -> IntegerPolynomial {
+    let d = f.degree();
+    let count = d * d.saturating_sub(1);
+    let sums = power_sums(&integral(f), count);
+    let mut differences = vec![BigInt::from(count)];
+    let mut binomials = vec![BigInt::one()];
+    for k in 1..=count {
+        binomials = next_row(&binomials);
+        let term = |l: usize| {
+            let term = &binomials[l] * &sums[l] * &sums[k - l];
+            if (k - l) % 2 == 1 { -term } else { term }
+        };
+        differences.push((0..=k).map(term).sum());
+    }
+    assemble(&differences, f)
+}
+
+/// c_1..c_d of the monic integer polynomial with the roots lead * lambda: a_(d-k) lead^(k-1).
+fn integral(f: &IntegerPolynomial) -> Vec<BigInt> {
+    let (d, lead) = (f.degree(), f.leading());
+    let mut power = BigInt::one();
+    (1..=d)
+        .map(|k| {
+            let c = f.coefficient(d - k) * &power;
+            power *= &lead;
+            c
+        })
+        .collect()
+}
+
+/// The primitive polynomial with roots s / lead(f), s having the power sums given.
+fn assemble(sums: &[BigInt], f: &IntegerPolynomial) -> IntegerPolynomial {
+    let mut coefficients = from_power_sums(sums);
     coefficients.reverse();
     coefficients.push(BigInt::one());
-    IntegerPolynomial::new(coefficients).dilate_up(&lead).primitive_part()
+    IntegerPolynomial::new(coefficients).dilate_up(&f.leading()).primitive_part()
 }
 
 fn next_row(row: &[BigInt]) -> Vec<BigInt> {

@@ -1,7 +1,8 @@
 //! The order of the real parts of eigenvalues, with their exact equalities.
 //!
-//! Real-part intervals that are disjoint decide the order; intervals that overlap form a group, and a group is a class only if all
-//! its real parts are proved equal: to one rational number by reflection, or to each other by the pair-sum polynomial.
+//! Real-part intervals that are disjoint decide the order; intervals that overlap form a group, and a group is a class
+//! only if all its real parts are proved equal: to one rational number by reflection, or to each other by the pair-sum
+//! polynomial.
 
 use super::equality::{contains, has_real_part, may_vanish, one_root_near, simplest_rational};
 use super::pair_sum::pair_sum_polynomial;
@@ -46,7 +47,8 @@ pub struct RateClass {
     pub rate: Interval,
     /// The common real part, if it is proved to be this rational number.
     pub rational: Option<Rational>,
-    /// `Proved`: all real parts are equal. `Open`: the enclosures overlap and nothing is proved; the class may have to be split.
+    /// `Proved`: all real parts are equal. `Open`: the enclosures overlap and nothing is proved; the class may have to
+    /// be split.
     pub equality: Evidence,
 }
 

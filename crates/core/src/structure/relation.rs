@@ -1,11 +1,12 @@
 //! Integer relations among the frequencies (imaginary parts) of the eigenvalues.
 //!
-//! Lattice reduction proposes; a proposal sum n_j omega_j = 0 is proved if it splits into cases that can be decided:
-//! *square roots* - every omega_j^2 is rational, then the terms of each class of Q*/Q*^2 must cancel; *two terms* with rational real parts - then
-//! n_1 (lambda_1 - a_1) and -n_2 (lambda_2 - a_2) are roots of known polynomials, and one common disc proves them equal.
-//! All other proposals are reported as open.
+//! Lattice reduction proposes; a proposal sum n_j omega_j = 0 is proved if the terms cancel within classes of frequencies whose ratios are
+//! proved rational. A ratio p/q is proved by one common disc: 2i q omega_1 and 2i p omega_2 are roots of known square-free polynomials
+//! (a factor shifted by its rational real part, or the differences of its roots), whose least common multiple has exactly one root there.
+//! All other proposals, relations of three unrelated frequencies above all, are reported as open.
 
-use super::equality::one_root_near;
+use super::equality::{may_vanish, one_root_near, simplest_rational};
+use super::pair_sum::pair_difference_polynomial;
 use super::{Eigenvalue, Evidence, RateClass, SpectralFactor};
 use crate::error::CoreError;
 use crate::integer_polynomial::IntegerPolynomial;
@@ -13,10 +14,16 @@ use crate::lattice::approx_integer_relations;
 use crate::root::enclose_roots;
 use keepout_checker::number::{Complex, Dyadic, Interval, Rational};
 use num_bigint::BigInt;
-use num_traits::{Signed, Zero};
+use num_traits::Zero;
 
 /// Frequencies up to which relations are looked for.
 const FREQUENCY_LIMIT: usize = 16;
+
+/// Degrees up to which the pair-difference polynomial of a factor is formed.
+const PAIR_DIFFERENCE_DEGREE: usize = 12;
+
+/// Ratios of frequencies with more bits than this in numerator and denominator are not tried.
+const RATIO_BITS: u64 = 32;
 
 /// sum_k coefficient_k Im(lambda_k) = 0, proposed or proved.
 #[derive(Clone, Debug, PartialEq, Eq)]
@@ -70,7 +77,7 @@ pub(super) fn relations(
         .map(|coefficients| {
             let used: Vec<(&Frequency<'_>, BigInt)> =
                 frequencies.iter().zip(coefficients).filter(|(_, c)| !c.is_zero()).collect();
-            let proved = proved_by_square_roots(&used) || proved_by_common_root(&used, bits);
+            let proved = proved_by_ratios(&used, bits);
             FrequencyRelation {
                 terms: used.into_iter().map(|(f, c)| (f.place, c)).collect(),
                 evidence: if proved { Evidence::Proved } else { Evidence::Open },
@@ -85,47 +92,57 @@ fn approx_scaled(value: &Dyadic, scale: i64) -> BigInt {
     if shift >= 0 { value.mantissa() << shift.unsigned_abs() } else { value.mantissa() >> shift.unsigned_abs() }
 }
 
-/// omega^2 for the roots of a quadratic c z^2 + b z + a with negative discriminant.
-fn rational_square(f: &IntegerPolynomial) -> Option<Rational> {
-    if f.degree() != 2 {
-        return None;
-    }
-    let (a, b, c) = (f.coefficient(0), f.coefficient(1), f.coefficient(2));
-    let discriminant: BigInt = &a * &c * 4 - &b * &b;
-    Some(Rational::new(discriminant, &c * &c * 4)).filter(Signed::is_positive)
-}
-
-/// The positive square root of a positive rational number, if it is rational.
-fn rational_root(value: &Rational) -> Option<Rational> {
-    let (n, d) = (value.numer().sqrt(), value.denom().sqrt());
-    (&n * &n == *value.numer() && &d * &d == *value.denom()).then(|| Rational::new(n, d))
-}
-
-/// Square roots of positive rationals in distinct square classes are linearly independent: each class must cancel.
-fn proved_by_square_roots(used: &[(&Frequency<'_>, BigInt)]) -> bool {
-    let squares: Option<Vec<Rational>> = used.iter().map(|(f, _)| rational_square(f.polynomial)).collect();
-    let Some(squares) = squares else { return false };
-    let mut sums: Vec<(Rational, Rational)> = Vec::new();
-    for (square, (_, c)) in squares.iter().zip(used) {
-        let c = Rational::from_integer(c.clone());
-        match sums.iter_mut().find_map(|(class, sum)| Some((rational_root(&(square / &*class))?, sum))) {
-            Some((ratio, sum)) => *sum += ratio * c,
-            None => sums.push((square.clone(), c)),
+/// Whether the terms cancel class by class, a class being frequencies with proved rational ratios.
+fn proved_by_ratios(used: &[(&Frequency<'_>, BigInt)], bits: u32) -> bool {
+    // (first member, sum of coefficients in units of its frequency)
+    let mut classes: Vec<(&Frequency<'_>, Rational)> = Vec::new();
+    for (frequency, coefficient) in used {
+        let coefficient = Rational::from_integer(coefficient.clone());
+        match classes.iter_mut().find_map(|(base, sum)| Some((proved_ratio(frequency, base, bits)?, sum))) {
+            Some((ratio, sum)) => *sum += ratio * coefficient,
+            None => classes.push((frequency, coefficient)),
         }
     }
-    sums.iter().all(|(_, sum)| sum.is_zero())
+    classes.iter().all(|(_, sum)| sum.is_zero())
 }
 
-/// Two terms with rational real parts: n_1 i omega_1 = -n_2 i omega_2 as roots of one polynomial.
+/// The proved rational value of omega / omega_base, if there is one of small size.
+fn proved_ratio(frequency: &Frequency<'_>, base: &Frequency<'_>, bits: u32) -> Option<Rational> {
+    let quotient = frequency.im.mul(&base.im.recip(bits)?, bits);
+    let ratio = simplest_rational(&quotient)?;
+    if ratio.numer().bits() + ratio.denom().bits() > RATIO_BITS {
+        return None;
+    }
+    let terms = [(frequency, ratio.denom().clone()), (base, -ratio.numer())];
+    proved_by_common_root(&terms, bits).then_some(ratio)
+}
+
+/// Two terms: 2i n_1 omega_1 = -2i n_2 omega_2 as roots of one polynomial.
 fn proved_by_common_root(used: &[(&Frequency<'_>, BigInt)], bits: u32) -> bool {
     let [(f, n), (g, m)] = used else { return false };
-    let (Some(a), Some(b)) = (&f.rate, &g.rate) else { return false };
-    let common = scaled_imaginary(f.polynomial, a, n).lcm(&scaled_imaginary(g.polynomial, b, &-m)).square_free_part();
-    let value = |frequency: &Frequency<'_>, factor: &BigInt| {
-        let factor = Interval::rational(&Rational::from_integer(factor.clone()), bits);
-        Complex { re: Interval::integer(0), im: frequency.im.mul(&factor, bits) }
+    let (Some(first), Some(second)) = (doubled_frequency(f, n, bits), doubled_frequency(g, &-m, bits)) else {
+        return false;
     };
-    one_root_near(&common, &value(f, n), &value(g, &-m), bits)
+    // Both polynomials are square-free: so is their least common multiple, and it vanishes at both numbers.
+    one_root_near(&first.0.lcm(&second.0), &first.1, &second.1, bits)
+}
+
+/// A square-free polynomial that vanishes at 2i n omega, and an enclosure of that number.
+fn doubled_frequency(f: &Frequency<'_>, n: &BigInt, bits: u32) -> Option<(IntegerPolynomial, Complex)> {
+    let twice: BigInt = n * 2;
+    let factor = Interval::rational(&Rational::from_integer(twice.clone()), bits);
+    let value = Complex { re: Interval::integer(0), im: f.im.mul(&factor, bits) };
+    if let Some(rate) = &f.rate {
+        return Some((scaled_imaginary(f.polynomial, rate, &twice).square_free_part(), value));
+    }
+    if f.polynomial.degree() > PAIR_DIFFERENCE_DEGREE {
+        return None;
+    }
+    let differences = scaled_imaginary(&pair_difference_polynomial(f.polynomial), &Rational::zero(), n);
+    let parts = differences.square_free_decomposition().into_iter().map(|(part, _)| part);
+    let mut possible = parts.filter(|part| may_vanish(part, &value, bits));
+    let part = possible.next()?;
+    possible.next().is_none().then_some((part, value))
 }
 
 /// The primitive polynomial with roots n (lambda - a).

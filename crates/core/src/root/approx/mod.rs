@@ -1,8 +1,8 @@
 //! Floating-point proposals for roots. Nothing here is proved.
 //!
-//! Start points on the circles of the Newton polygon, then the Ehrlich-Aberth iteration. Each evaluation rescales the coefficients
-//! to the modulus of the point, so that coefficients of any size work as long as the roots themselves are ordinary doubles.
-//! Source: Bini, Numer. Algorithms 13 (1996) 179-200.
+//! Start points on the circles of the Newton polygon, then the Ehrlich-Aberth iteration. Each evaluation rescales the
+//! coefficients to the modulus of the point, so that coefficients of any size work as long as the roots themselves are
+//! ordinary doubles. Source: Bini, Numer. Algorithms 13 (1996) 179-200.
 
 mod scaled;
 
