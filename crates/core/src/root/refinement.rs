@@ -6,7 +6,7 @@
 //! images, until it becomes clear which roots are real.
 
 use super::RootDisc;
-use super::approx::{ApproxComplex, ScaledComplex, approx_roots};
+use super::approx::{ScaledComplex, approx_mirrored_points, approx_point, approx_roots};
 use super::evaluation::{Point, Value, evaluate};
 use super::magnitude::Magnitude;
 use crate::error::CoreError;
@@ -50,14 +50,14 @@ struct Disc {
 pub(super) fn isolate(q: &IntegerPolynomial, bits: u32) -> Result<Vec<RootDisc>, CoreError> {
     let proposals = approx_roots(q.coefficients());
     let extra = bits as usize / 40;
-    if let Some(points) = mirror(&proposals) {
+    if let Some(points) = approx_mirrored_points(&proposals) {
         let mut set = PointSet::new(q, Symmetry::Mirrored, points, bits);
         if let Some(discs) = set.run(MIRRORED_SWEEPS + extra) {
             return Ok(discs);
         }
     }
     let limit = CoreError::LimitExceeded { what: "separation of roots", limit: FREE_SWEEPS as u64 };
-    let points = proposals.iter().map(|z| to_point(*z)).collect::<Option<Vec<_>>>().ok_or(limit.clone())?;
+    let points = proposals.iter().map(|z| approx_point(*z)).collect::<Option<Vec<_>>>().ok_or(limit.clone())?;
     let mut free = PointSet::new(q, Symmetry::Free, points, 8);
     free.perturb_equal();
     free.break_symmetry();
@@ -73,47 +73,6 @@ pub(super) fn isolate(q: &IntegerPolynomial, bits: u32) -> Result<Vec<RootDisc>,
         }
     }
     Err(limit)
-}
-
-fn to_point(z: ApproxComplex) -> Option<Point> {
-    if !z.is_finite() {
-        return None;
-    }
-    let parts = |x: f64| {
-        let bits = x.to_bits();
-        let (raw, fraction) = ((bits >> 52 & 0x7ff) as i64, bits & ((1 << 52) - 1));
-        let mantissa = if raw == 0 { fraction } else { fraction | 1 << 52 };
-        let value = BigInt::from(mantissa);
-        (if x < 0.0 { -value } else { value }, raw.max(1) - 1075)
-    };
-    let ((re, e), (im, g)) = (parts(z.re), parts(z.im));
-    // Parts far below the modulus are noise: align to 64 bits below the top.
-    let exponent = (e.max(g)) - 64;
-    let align = |v: BigInt, from: i64| if from >= exponent { v << (from - exponent) } else { v >> (exponent - from) };
-    Some(Point { re: align(re, e), im: align(im, g), exponent })
-}
-
-/// The real and upper points, if the proposals pair off as mirror images.
-fn mirror(proposals: &[ApproxComplex]) -> Option<Vec<Point>> {
-    let partner = |i: usize| {
-        let z = proposals[i];
-        let distance = |w: &ApproxComplex| (w.re - z.re).hypot(w.im + z.im);
-        (0..proposals.len()).min_by(|a, b| distance(&proposals[*a]).total_cmp(&distance(&proposals[*b])))
-    };
-    let mut points = Vec::new();
-    for (i, z) in proposals.iter().enumerate() {
-        let j = partner(i)?;
-        if partner(j)? != i {
-            return None;
-        }
-        if i == j {
-            points.push(to_point(ApproxComplex { re: z.re, im: 0.0 })?);
-        } else if z.im > 0.0 {
-            points.push(to_point(*z)?);
-        }
-    }
-    let count: usize = points.iter().map(|p| if p.im.is_zero() { 1 } else { 2 }).sum();
-    (count == proposals.len()).then_some(points)
 }
 
 impl<'a> PointSet<'a> {
@@ -326,18 +285,5 @@ impl Denominator {
         let numerator = value.modulus_hi().mul_hi(Magnitude::exact(degree, 0));
         // SOUND(hi): numerator rounded up, denominator |lead| sqrt(square_lo) rounded down.
         numerator.div_hi(lead_lo.mul_lo(self.square_lo.sqrt_lo()))
-    }
-}
-
-#[cfg(test)]
-mod tests {
-    use super::super::approx::approx_parts;
-    use super::*;
-
-    #[test]
-    fn doubles_become_points_near_themselves() {
-        let p = to_point(ApproxComplex { re: -1.5, im: 0.25 }).unwrap();
-        assert_eq!(approx_parts(&p.re).0 * 2f64.powi((approx_parts(&p.re).1 + p.exponent) as i32), -1.5);
-        assert!(to_point(ApproxComplex { re: f64::NAN, im: 0.0 }).is_none());
     }
 }

@@ -4,8 +4,10 @@
 //! coefficients to the modulus of the point, so that coefficients of any size work as long as the roots themselves are
 //! ordinary doubles. Source: Bini, Numer. Algorithms 13 (1996) 179-200.
 
+mod proposal;
 mod scaled;
 
+pub(crate) use proposal::{approx_mirrored_points, approx_point};
 pub(crate) use scaled::ScaledComplex;
 
 use num_bigint::{BigInt, Sign};
