@@ -1,193 +1,259 @@
-//! A statement in plain words, for the person who reads what has been proved.
+//! Statements in plain words, for the assessor who asks what has been proved.
 //!
-//! Every number is printed exactly, with a decimal beside it where it is not an integer.
+//! Every number is printed exactly (see `decimal`), every name as the engineer declared it; products with `*`, powers with `^`
+//! (which binds tighter than a sign: -x^2 is -(x^2)), `and` tighter than `or`. Free text is quoted, with control characters
+//! escaped, so that no title can pass for a line of the report.
 
 use crate::decimal::fraction_and_decimal;
-use crate::number::Rational;
-use crate::statement::{Affine, Claim, Drive, Expression, Formula, Relation, SignalTerm, Statement, Variable, Wave};
+use crate::formula::claimed_formula;
+use crate::statement::{
+    Affine, Atom, Claim, Expression, Formula, Phase, Rational, Relation, SignalTerm, Statement, Variable, Wave,
+};
 use num_traits::{One, Signed, Zero};
-use std::fmt::Write;
+
+const PREFACE: &str = "\
+This statement speaks of one trajectory: the solution of the equations below from exactly the start below, driven by exactly
+the known inputs below. It says nothing about other starts or other inputs, nor whether the equations describe the plant.
+All numbers are exact. A decimal in parentheses repeats the number before it; where it says \"about\" it is rounded, and the
+fraction counts. t is time, counted from 0 in the unit of the model; x' is the derivative of x with respect to t.
+";
 
 impl Statement {
-    /// The statement in words: system, start, inputs, zone, window, claim.
+    /// The statement in plain words: several lines, closed by a line feed.
+    ///
+    /// # Guarantee
+    /// All that decides the truth of the claim is printed, and nothing is rounded without the exact number beside it.
     pub fn words(&self) -> String {
-        let mut out = format!("System: {}\n", self.title);
-        for (state, rate) in self.states.iter().zip(self.phases.iter().flat_map(|p| &p.rates)) {
-            let _ = writeln!(out, "  {}' = {}{}", state.name, self.affine(rate), unit(state.unit.as_ref()));
-        }
-        out.push_str("Start, at t = 0 exactly:\n");
-        for state in &self.states {
-            let _ = writeln!(out, "  {} = {}", state.name, fraction_and_decimal(&state.start));
-        }
-        if !self.drives.is_empty() {
-            out.push_str("Known inputs, exactly:\n");
-        }
-        for drive in &self.drives {
-            let _ = writeln!(out, "  {} = {}{}", drive.name, signal(drive), unit(drive.unit.as_ref()));
-        }
-        if !self.outputs.is_empty() {
-            out.push_str("Named expressions:\n");
-        }
-        for output in &self.outputs {
-            let _ =
-                writeln!(out, "  {} = {}{}", output.name, self.expression(&output.value), unit(output.unit.as_ref()));
-        }
-        let zone = &self.zone;
-        let reference = zone.reference.as_ref().map_or(String::new(), |r| format!(" (requirement {r})"));
-        let _ = writeln!(out, "Keep-out zone \"{}\"{reference}:\n  {}", zone.name, self.formula(&zone.inside));
-        let _ = writeln!(out, "Window: {}", window(&zone.from, zone.until.as_ref()));
-        let _ = writeln!(out, "Claim: {}", self.claim());
-        out
+        let mut lines = vec![format!("Model: {}", quoted(&self.title)), String::new()];
+        lines.extend(PREFACE.lines().map(str::to_string));
+        self.start_lines(&mut lines);
+        self.equation_lines(&mut lines);
+        self.input_lines(&mut lines);
+        self.output_lines(&mut lines);
+        self.zone_lines(&mut lines);
+        self.claim_lines(&mut lines);
+        lines.push(String::new());
+        lines.join("\n")
     }
 
-    fn claim(&self) -> String {
+    fn start_lines(&self, lines: &mut Vec<String>) {
+        section(lines, "States, and their exact values at t = 0:");
+        for state in &self.states {
+            let unit = unit_label(state.unit.as_ref());
+            lines.push(format!("  {} = {}{unit}", state.name, fraction_and_decimal(&state.start)));
+        }
+    }
+
+    fn equation_lines(&self, lines: &mut Vec<String>) {
+        for (i, phase) in self.phases.iter().enumerate() {
+            let title = if self.phases.len() == 1 { "Equations:".into() } else { format!("Equations of phase {i}:") };
+            section(lines, &title);
+            self.phase_lines(phase, lines);
+        }
+    }
+
+    fn phase_lines(&self, phase: &Phase, lines: &mut Vec<String>) {
+        for (i, rate) in phase.rates.iter().enumerate() {
+            lines.push(format!("  {}' = {}", self.name(Variable::State(i)), self.affine_words(rate)));
+        }
+    }
+
+    fn input_lines(&self, lines: &mut Vec<String>) {
+        if self.drives.is_empty() {
+            section(lines, "Known inputs: none.");
+            return;
+        }
+        section(lines, "Known inputs, for all t >= 0:");
+        for drive in &self.drives {
+            let signal = sum(drive.signal.iter().map(|term| (&term.coefficient, signal_factors(term))));
+            lines.push(format!("  {} = {signal}{}", drive.name, unit_label(drive.unit.as_ref())));
+        }
+    }
+
+    fn output_lines(&self, lines: &mut Vec<String>) {
+        if self.outputs.is_empty() {
+            return;
+        }
+        section(lines, "Outputs, by definition:");
+        for output in &self.outputs {
+            let unit = unit_label(output.unit.as_ref());
+            lines.push(format!("  {} = {}{unit}", output.name, self.expression_words(&output.value)));
+        }
+    }
+
+    fn zone_lines(&self, lines: &mut Vec<String>) {
+        let zone = &self.zone;
+        let reference = zone.reference.as_ref().map_or(String::new(), |r| format!(", from requirement {}", quoted(r)));
+        let title = format!(
+            "Keep-out zone {}{reference}. The trajectory is in the zone at an instant t if and only if at t:",
+            quoted(&zone.name)
+        );
+        section(lines, &title);
+        lines.push(format!("  {}", self.formula_words(&zone.inside, false)));
+        let from = fraction_and_decimal(&zone.from);
+        let window = match &zone.until {
+            None => format!("Window: all instants t >= {from}, without end; t = {from} counts."),
+            Some(until) => {
+                let until = fraction_and_decimal(until);
+                format!("Window: all instants t from {from} to {until}; both ends count.")
+            }
+        };
+        section(lines, &window);
+    }
+
+    fn claim_lines(&self, lines: &mut Vec<String>) {
+        section(lines, "Claim:");
         match &self.claim {
             Claim::Never { margin } => {
-                let never = "the trajectory from exactly this start is in the zone at no instant of the window.";
-                if margin.is_zero() {
-                    return never.into();
+                lines.push(format!(
+                    "  From exactly this start, the trajectory never enters the zone, {}:",
+                    self.window()
+                ));
+                lines.push("  it is in the zone at no instant of the window.".into());
+                if margin.is_positive() {
+                    self.margin_lines(margin, lines);
                 }
-                format!(
-                    "{never} Nor does it come within the margin {}: {}.",
-                    fraction_and_decimal(margin),
-                    self.widened(margin)
-                )
             }
             Claim::Enters { from, to, first } => {
+                lines.push("  From exactly this start, the trajectory is in the zone".into());
+                let (after, before) = (fraction_and_decimal(from), fraction_and_decimal(to));
                 let when = if from == to {
-                    format!("at t = {}", fraction_and_decimal(from))
+                    format!("at the instant t = {after}")
                 } else {
-                    format!(
-                        "at some instant t with {} <= t <= {}",
-                        fraction_and_decimal(from),
-                        fraction_and_decimal(to)
-                    )
+                    format!("at some instant t of the window between {after} and {before} (both ends count)")
                 };
-                let first = if *first {
-                    format!(", and at no instant of the window before {}", fraction_and_decimal(from))
-                } else {
-                    String::new()
-                };
-                format!("the trajectory from exactly this start is in the zone {when}{first}.")
+                let end = if *first { "," } else { ". Nothing is said about other instants." };
+                lines.push(format!("  {when}{end}"));
+                if *first {
+                    lines.push(format!(
+                        "  and at no earlier instant of the window, that is, at none before t = {after}."
+                    ));
+                }
             }
         }
     }
 
-    fn widened(&self, margin: &Rational) -> String {
-        let Formula::Atom(atom) = &self.zone.inside else { return "the zone is not a single comparison".into() };
-        let p = self.expression(&atom.polynomial);
-        let m = fraction_and_decimal(margin);
-        match atom.relation {
-            Relation::Positive | Relation::NonNegative => format!("{p} >= -{m} holds at no instant of the window"),
-            Relation::Negative | Relation::NonPositive => format!("{p} <= {m} holds at no instant of the window"),
-            Relation::Zero | Relation::NonZero => format!("-{m} <= {p} <= {m} holds at no instant of the window"),
+    fn margin_lines(&self, margin: &Rational, lines: &mut Vec<String>) {
+        let margin = fraction_and_decimal(margin);
+        lines.push(format!("  Margin: {margin}. The same holds for the zone widened by this margin, which is:"));
+        match claimed_formula(self) {
+            Some(widened) => lines.push(format!("    {}", self.formula_words(&widened, false))),
+            None => {
+                lines.push("    (this zone is not a single inequality, so no certificate can prove the claim)".into())
+            }
         }
     }
 
-    fn affine(&self, affine: &Affine) -> String {
-        let mut terms: Vec<(Rational, String)> =
-            affine.terms.iter().map(|(factor, variable)| (factor.clone(), self.name(*variable).to_string())).collect();
-        if !affine.offset.is_zero() || terms.is_empty() {
-            terms.push((affine.offset.clone(), String::new()));
+    fn window(&self) -> String {
+        let from = fraction_and_decimal(&self.zone.from);
+        match &self.zone.until {
+            None => format!("for all t >= {from}"),
+            Some(until) => format!("in the window from {from} to {}", fraction_and_decimal(until)),
         }
-        sum(&terms)
     }
 
-    fn expression(&self, expression: &Expression) -> String {
-        let power = |(variable, k): &(Variable, u32)| match k {
-            1 => self.name(*variable).to_string(),
-            _ => format!("{}^{k}", self.name(*variable)),
-        };
-        let product = |powers: &[(Variable, u32)]| powers.iter().map(power).collect::<Vec<_>>().join("*");
-        let terms: Vec<(Rational, String)> =
-            expression.terms.iter().map(|t| (t.coefficient.clone(), product(&t.powers))).collect();
-        if terms.is_empty() { "0".into() } else { sum(&terms) }
+    fn affine_words(&self, affine: &Affine) -> String {
+        let terms = affine.terms.iter().map(|(factor, variable)| (factor, vec![self.name(*variable).to_string()]));
+        let offset = Some((&affine.offset, Vec::new())).filter(|(offset, _)| !offset.is_zero());
+        sum(terms.chain(offset))
     }
 
-    fn formula(&self, formula: &Formula) -> String {
-        let joined = |parts: &[Formula], word: &str, empty: &str| match parts {
-            [] => empty.to_string(),
-            [one] => self.formula(one),
-            _ => parts.iter().map(|p| self.grouped(p)).collect::<Vec<_>>().join(word),
-        };
+    fn expression_words(&self, expression: &Expression) -> String {
+        let factor = |(variable, power): &(Variable, u32)| raised(self.name(*variable), *power);
+        sum(expression.terms.iter().map(|t| (&t.coefficient, t.powers.iter().map(factor).collect())))
+    }
+
+    /// The formula; `tight`: as a part of a conjunction, so that a disjunction needs parentheses.
+    fn formula_words(&self, formula: &Formula, tight: bool) -> String {
         match formula {
-            Formula::And(parts) => joined(parts, " and ", "always"),
-            Formula::Or(parts) => joined(parts, " or ", "nowhere"),
-            Formula::Atom(atom) => {
-                let sign = match atom.relation {
-                    Relation::Negative => "<",
-                    Relation::NonPositive => "<=",
-                    Relation::Zero => "=",
-                    Relation::NonNegative => ">=",
-                    Relation::Positive => ">",
-                    Relation::NonZero => "is not",
-                };
-                format!("{} {sign} 0", self.expression(&atom.polynomial))
+            Formula::Atom(Atom { polynomial, relation }) => {
+                format!("{} {}", self.expression_words(polynomial), compared(*relation))
             }
+            Formula::And(parts) => match parts.as_slice() {
+                [] => "always (a conjunction of nothing)".into(),
+                [only] => self.formula_words(only, tight),
+                _ => parts.iter().map(|p| self.formula_words(p, true)).collect::<Vec<_>>().join(" and "),
+            },
+            Formula::Or(parts) => match parts.as_slice() {
+                [] => "never (a disjunction of nothing)".into(),
+                [only] => self.formula_words(only, tight),
+                _ => {
+                    let text = parts.iter().map(|p| self.formula_words(p, false)).collect::<Vec<_>>().join(" or ");
+                    if tight { format!("({text})") } else { text }
+                }
+            },
         }
     }
+}
 
-    /// A part of a conjunction or disjunction: in parentheses unless it is a single comparison.
-    fn grouped(&self, part: &Formula) -> String {
-        match part {
-            Formula::Atom(_) => self.formula(part),
-            Formula::And(_) | Formula::Or(_) => format!("({})", self.formula(part)),
-        }
+fn section(lines: &mut Vec<String>, title: &str) {
+    lines.push(String::new());
+    lines.push(title.to_string());
+}
+
+/// Free text in quotation marks, on one line.
+fn quoted(text: &str) -> String {
+    format!("{text:?}")
+}
+
+fn unit_label(unit: Option<&String>) -> String {
+    unit.map_or(String::new(), |u| format!("    [unit label {}]", quoted(u)))
+}
+
+fn compared(relation: Relation) -> &'static str {
+    match relation {
+        Relation::Negative => "< 0",
+        Relation::NonPositive => "<= 0",
+        Relation::Zero => "= 0",
+        Relation::NonNegative => ">= 0",
+        Relation::Positive => "> 0",
+        Relation::NonZero => "is different from 0",
     }
 }
 
-fn window(from: &Rational, until: Option<&Rational>) -> String {
-    match until {
-        None if from.is_zero() => "all t >= 0".into(),
-        None => format!("all t >= {}", fraction_and_decimal(from)),
-        Some(until) => format!("{} <= t <= {}", fraction_and_decimal(from), fraction_and_decimal(until)),
-    }
+fn raised(name: &str, power: u32) -> String {
+    if power == 1 { name.to_string() } else { format!("{name}^{power}") }
 }
 
-fn unit(unit: Option<&String>) -> String {
-    unit.map_or(String::new(), |u| format!("   [{u}]"))
-}
-
-/// A sum of products with signs between them.
-fn sum(terms: &[(Rational, String)]) -> String {
-    let mut out = String::new();
-    for (coefficient, product) in terms {
-        out.push_str(match (out.is_empty(), coefficient.is_negative()) {
-            (true, false) => "",
-            (true, true) => "-",
+/// The sum of coefficients times factors: `-2 * x + 1/2 (0.5) * y^2 - z`. Of no terms: `0`.
+fn sum<'a>(terms: impl Iterator<Item = (&'a Rational, Vec<String>)>) -> String {
+    let mut text = String::new();
+    for (coefficient, mut factors) in terms {
+        let is_first = text.is_empty();
+        let is_unit = !factors.is_empty() && coefficient.abs().is_one();
+        text.push_str(match (is_first, coefficient.is_negative()) {
+            (true, true) if is_unit => "-",
+            // The sign of the first number stays with it.
+            (true, _) => "",
             (false, false) => " + ",
             (false, true) => " - ",
         });
-        let size = coefficient.abs();
-        match (size.is_one(), product.is_empty()) {
-            (_, true) => out.push_str(&fraction_and_decimal(&size)),
-            (true, false) => out.push_str(product),
-            (false, false) => {
-                let _ = write!(out, "{}*{product}", fraction_and_decimal(&size));
-            }
+        if !is_unit {
+            let number = if is_first { coefficient.clone() } else { coefficient.abs() };
+            factors.insert(0, fraction_and_decimal(&number));
         }
+        text.push_str(&factors.join(" * "));
     }
-    out
+    if text.is_empty() { "0".into() } else { text }
 }
 
-fn signal(drive: &Drive) -> String {
-    let factors = |term: &SignalTerm| {
-        let mut list = Vec::new();
-        match term.power {
-            0 => {}
-            1 => list.push("t".to_string()),
-            k => list.push(format!("t^{k}")),
-        }
-        if !term.rate.is_zero() {
-            list.push(format!("exp({}*t)", fraction_and_decimal(&term.rate)));
-        }
-        match &term.wave {
-            Wave::One => {}
-            Wave::Cosine(w) => list.push(format!("cos({}*t)", fraction_and_decimal(w))),
-            Wave::Sine(w) => list.push(format!("sin({}*t)", fraction_and_decimal(w))),
-        }
-        list.join("*")
+/// The factors of a signal's term after its coefficient.
+fn signal_factors(term: &SignalTerm) -> Vec<String> {
+    let of_time = |function: &str, rate: &Rational| {
+        let argument = sum(std::iter::once((rate, vec!["t".to_string()])));
+        format!("{function}({argument})")
     };
-    let terms: Vec<(Rational, String)> = drive.signal.iter().map(|t| (t.coefficient.clone(), factors(t))).collect();
-    if terms.is_empty() { "0".into() } else { sum(&terms) }
+    let mut factors = Vec::new();
+    if term.power > 0 {
+        factors.push(raised("t", term.power));
+    }
+    if !term.rate.is_zero() {
+        factors.push(of_time("exp", &term.rate));
+    }
+    match &term.wave {
+        Wave::One => {}
+        Wave::Cosine(w) => factors.push(of_time("cos", w)),
+        Wave::Sine(w) => factors.push(of_time("sin", w)),
+    }
+    factors
 }
