@@ -6,9 +6,8 @@ use crate::certificate::{
 };
 use crate::error::Rejection;
 use crate::field::{Field, dyadic_text};
-use crate::json::Value;
+use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
-use crate::number::Rational;
 use crate::polynomial::Polynomial;
 use crate::statement_text::read_statement;
 use std::cmp::Ordering;
@@ -39,9 +38,9 @@ impl Certificate {
     /// The certificate as a JSON value.
     pub fn to_json(&self) -> Value {
         object(vec![
-            ("format", Value::text(CERTIFICATE_FORMAT)),
+            ("format", text(CERTIFICATE_FORMAT)),
             ("statement", self.statement.to_json()),
-            ("bits", Value::text(self.bits)),
+            ("bits", text(self.bits)),
             ("families", list(&self.families, write_family)),
             ("traces", list(&self.traces, |factors| list(factors, write_factor))),
             ("auxiliaries", list(&self.auxiliaries, write_auxiliary)),
@@ -61,8 +60,7 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
     if format.text()? != CERTIFICATE_FORMAT {
         return Err(format.refuse("\"keepout-certificate/1\""));
     }
-    let bits = field.get("bits")?.count()?;
-    within("bits", usize::try_from(bits).unwrap_or(usize::MAX), field.limits().bits)?;
+    let bits = field.get("bits")?.count_within("bits", field.limits().bits)?;
     if bits < 2 {
         return Err(field.get("bits")?.refuse("at least 2 bits"));
     }
@@ -96,16 +94,9 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
         products: products.len(),
         auxiliaries: auxiliaries.len(),
     };
-    Ok(Certificate {
-        statement: read_statement(&field.get("statement")?)?,
-        evidence: read_evidence(&field.get("evidence")?, &counts)?,
-        bits,
-        families,
-        traces,
-        auxiliaries,
-        products,
-        sums,
-    })
+    let (statement, evidence) =
+        (read_statement(&field.get("statement")?)?, read_evidence(&field.get("evidence")?, &counts)?);
+    Ok(Certificate { statement, bits, families, traces, auxiliaries, products, sums, evidence })
 }
 
 /// The lengths of the lists that positions refer to.
@@ -150,8 +141,7 @@ fn read_family(field: &Field) -> Result<RootFamily, Rejection> {
 
 fn read_factor(field: &Field, families: usize) -> Result<Factor, Rejection> {
     field.only(&["family", "multiplicity"], "a factor: family, multiplicity")?;
-    let multiplicity = field.get("multiplicity")?.count()?;
-    within("roots", usize::try_from(multiplicity).unwrap_or(usize::MAX), field.limits().roots)?;
+    let multiplicity = field.get("multiplicity")?.count_within("roots", field.limits().roots)?;
     if multiplicity == 0 {
         return Err(field.get("multiplicity")?.refuse("at least 1"));
     }
@@ -160,8 +150,7 @@ fn read_factor(field: &Field, families: usize) -> Result<Factor, Rejection> {
 
 fn read_product(field: &Field, traces: usize, auxiliaries: usize) -> Result<Product, Rejection> {
     field.only(&["trace", "pivot", "power", "cofactor"], "a product: trace, pivot, power, cofactor")?;
-    let power = field.get("power")?.count()?;
-    within("degree", usize::try_from(power).unwrap_or(usize::MAX), field.limits().degree)?;
+    let power = field.get("power")?.count_within("degree", field.limits().degree)?;
     Ok(Product {
         trace: field.get("trace")?.position(traces)?,
         pivot: field.get("pivot")?.position(auxiliaries)?,
@@ -179,17 +168,13 @@ fn read_root(field: &Field, roots: usize) -> Result<RootRef, Rejection> {
     Ok(RootRef { index, conjugate: plain.is_some() })
 }
 
-fn read_sign(field: &Field, symbol: &str) -> Result<Sign, Rejection> {
-    let found = SIGNS.iter().find(|(c, _)| symbol.len() == 1 && symbol.starts_with(*c));
-    found.map(|(_, sign)| *sign).ok_or_else(|| field.refuse("one of - 0 +"))
-}
-
 /// `K:S`, S one of - 0 +.
 fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection> {
-    let expected = "\"K:S\", K a position in a list above, S one of - 0 +";
-    let (position, symbol) = field.text()?.split_once(':').ok_or_else(|| field.refuse(expected))?;
-    let position = position.parse::<usize>().ok().filter(|p| *p < length).ok_or_else(|| field.refuse(expected))?;
-    Ok((position, read_sign(field, symbol)?))
+    let refused = || field.refuse("\"K:S\", K a position in a list above, S one of - 0 +");
+    let (position, symbol) = field.text()?.split_once(':').ok_or_else(refused)?;
+    let position = position.parse::<usize>().ok().filter(|p| *p < length).ok_or_else(refused)?;
+    let found = SIGNS.iter().find(|(c, _)| symbol.len() == 1 && symbol.starts_with(*c)).ok_or_else(refused)?;
+    Ok((position, found.1))
 }
 
 fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
@@ -197,15 +182,13 @@ fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
         &["to", "order", "signs", "start", "pivot", "cofactors"],
         "a cell: to, order, signs; start, or pivot and cofactors",
     )?;
-    let order = field.get("order")?.count()?;
-    within("order", usize::try_from(order).unwrap_or(usize::MAX), field.limits().order)?;
+    let order = field.get("order")?.count_within("order", field.limits().order)?;
     let pivot = match (field.optional("start"), field.optional("pivot")) {
         (None, None) => Pivot::None,
         (Some(start), None) => Pivot::Start(start.each(|f| {
             f.only(&["sign", "power"], "a trace that vanishes at the start: sign, power")?;
             let (trace, sign) = read_signed(&f.get("sign")?, counts.traces)?;
-            let power = f.get("power")?.count()?;
-            within("order", usize::try_from(power).unwrap_or(usize::MAX), f.limits().order)?;
+            let power = f.get("power")?.count_within("order", f.limits().order)?;
             Ok((trace, power, sign))
         })?),
         (None, Some(pivot)) => Pivot::Auxiliary(
@@ -214,6 +197,9 @@ fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
         ),
         (Some(_), Some(_)) => return Err(field.refuse("start or pivot, not both")),
     };
+    if field.optional("cofactors").is_some() && field.optional("pivot").is_none() {
+        return Err(field.refuse("cofactors only beside a pivot"));
+    }
     let signs = field.get("signs")?.each(|f| read_signed(f, counts.traces))?;
     if order == 0 {
         return Err(field.get("order")?.refuse("at least 1"));
@@ -282,45 +268,29 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
     })
 }
 
-fn object(fields: Vec<(&str, Value)>) -> Value {
-    Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
-}
-
 fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
     Value::List(items.iter().map(write).collect())
 }
 
-fn number(value: &Rational) -> Value {
-    Value::text(value)
-}
-
 fn write_family(family: &RootFamily) -> Value {
-    let centre =
-        |(re, im): &(_, _)| object(vec![("re", Value::text(dyadic_text(re))), ("im", Value::text(dyadic_text(im)))]);
+    let centre = |(re, im): &(_, _)| object(vec![("re", text(dyadic_text(re))), ("im", text(dyadic_text(im)))]);
     object(vec![
-        ("polynomial", list(family.polynomial.coefficients(), number)),
+        ("polynomial", list(family.polynomial.coefficients(), |x| text(x))),
         ("centres", list(&family.centres, centre)),
     ])
 }
 
 fn write_factor(factor: &Factor) -> Value {
-    object(vec![("family", Value::text(factor.family)), ("multiplicity", Value::text(factor.multiplicity))])
+    object(vec![("family", text(factor.family)), ("multiplicity", text(factor.multiplicity))])
 }
 
-fn write_auxiliary(auxiliary: &Auxiliary) -> Value {
-    object(vec![
-        ("factors", list(&auxiliary.factors, write_factor)),
-        ("derivatives", list(&auxiliary.derivatives, number)),
-    ])
+fn write_auxiliary(w: &Auxiliary) -> Value {
+    object(vec![("factors", list(&w.factors, write_factor)), ("derivatives", list(&w.derivatives, |x| text(x)))])
 }
 
-fn write_product(product: &Product) -> Value {
-    object(vec![
-        ("trace", Value::text(product.trace)),
-        ("pivot", Value::text(product.pivot)),
-        ("power", Value::text(product.power)),
-        ("cofactor", Value::text(product.cofactor)),
-    ])
+fn write_product(p: &Product) -> Value {
+    let (trace, pivot, cofactor) = (text(p.trace), text(p.pivot), text(p.cofactor));
+    object(vec![("trace", trace), ("pivot", pivot), ("power", text(p.power)), ("cofactor", cofactor)])
 }
 
 fn write_root(root: RootRef) -> Value {
@@ -328,8 +298,7 @@ fn write_root(root: RootRef) -> Value {
 }
 
 fn write_sum(sum: &Sum) -> Value {
-    let part =
-        |(times, root): &(i64, RootRef)| object(vec![("times", Value::text(times)), ("root", write_root(*root))]);
+    let part = |(times, root): &(i64, RootRef)| object(vec![("times", text(times)), ("root", write_root(*root))]);
     object(vec![
         ("root", write_root(sum.root)),
         ("parts", list(&sum.parts, part)),
@@ -344,17 +313,15 @@ fn write_signed(position: usize, sign: Sign) -> Value {
 
 fn write_cell(cell: &Cell) -> Value {
     let signs = |signs: &[(usize, Sign)]| list(signs, |(position, sign)| write_signed(*position, *sign));
-    let mut fields = vec![("to", number(&cell.to)), ("order", Value::text(cell.order)), ("signs", signs(&cell.signs))];
+    let order = |(trace, power, sign): &(usize, u32, Sign)| {
+        object(vec![("sign", write_signed(*trace, *sign)), ("power", text(power))])
+    };
+    let mut fields = vec![("to", text(&cell.to)), ("order", text(cell.order)), ("signs", signs(&cell.signs))];
     match &cell.pivot {
         Pivot::None => {}
-        Pivot::Start(start) => fields.push((
-            "start",
-            list(start, |(trace, power, sign)| {
-                object(vec![("sign", write_signed(*trace, *sign)), ("power", Value::text(power))])
-            }),
-        )),
+        Pivot::Start(start) => fields.push(("start", list(start, order))),
         Pivot::Auxiliary(pivot, cofactors) => {
-            fields.push(("pivot", Value::text(pivot)));
+            fields.push(("pivot", text(pivot)));
             fields.push(("cofactors", signs(cofactors)));
         }
     }
@@ -363,27 +330,27 @@ fn write_cell(cell: &Cell) -> Value {
 
 fn write_cone(cone: &Cone) -> Value {
     let angle = |angle: &Angle| {
-        let mut fields = vec![("root", Value::text(angle.root)), ("turns", list(&angle.turns, |n| Value::text(n)))];
-        fields.extend(angle.sum.map(|sum| ("sum", Value::text(sum))));
+        let mut fields = vec![("root", text(angle.root)), ("turns", list(&angle.turns, |n| text(n)))];
+        fields.extend(angle.sum.map(|sum| ("sum", text(sum))));
         object(fields)
     };
     let lead = |lead: &Option<Lead>| {
         let Some(lead) = lead else { return Value::Bool(false) };
-        let mut fields = vec![("roots", list(&lead.roots, |r| Value::text(r)))];
+        let mut fields = vec![("roots", list(&lead.roots, |r| text(r)))];
         match &lead.real_part {
             RealPart::Single => {}
-            RealPart::Line(line) => fields.push(("line", number(line))),
-            RealPart::Doubled(sums) => fields.push(("doubled", list(sums, |s| Value::text(s)))),
+            RealPart::Line(line) => fields.push(("line", text(line))),
+            RealPart::Doubled(sums) => fields.push(("doubled", list(sums, |s| text(s)))),
         }
         object(fields)
     };
     let node = |node: &Node| match node {
-        Node::Split(axis) => object(vec![("split", Value::text(axis))]),
+        Node::Split(axis) => object(vec![("split", text(axis))]),
         Node::Leaf(signs) => list(signs, |(position, sign)| write_signed(*position, *sign)),
     };
     object(vec![
-        ("from", number(&cone.from)),
-        ("base", list(&cone.base, |b| Value::text(b))),
+        ("from", text(&cone.from)),
+        ("base", list(&cone.base, |b| text(b))),
         ("angles", list(&cone.angles, angle)),
         ("leads", list(&cone.leads, lead)),
         ("nodes", list(&cone.nodes, node)),
@@ -398,7 +365,7 @@ fn write_evidence(evidence: &Evidence) -> Value {
             object(vec![("never", object(fields))])
         }
         Evidence::Enters { before, from, cell } => {
-            let fields = vec![("before", list(before, write_cell)), ("from", number(from)), ("cell", write_cell(cell))];
+            let fields = vec![("before", list(before, write_cell)), ("from", text(from)), ("cell", write_cell(cell))];
             object(vec![("enters", object(fields))])
         }
     }

@@ -3,7 +3,7 @@
 use crate::certificate::{Certificate, Evidence};
 use crate::error::{Duty, Obligation, Rejection, Rule};
 use crate::limits::{Budget, Limits};
-use crate::model::Model;
+use crate::model::{Model, Setting};
 use crate::rules::{cone, cover, entry, equality};
 use crate::statement::{Claim, Statement};
 
@@ -33,33 +33,34 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     certificate.ensure_readable(limits)?;
     let mut budget = Budget::new(limits);
     let model = Model::new(certificate, limits, &mut budget)?;
+    let on = Setting { certificate, model: &model, limits };
     for (position, sum) in certificate.sums.iter().enumerate() {
-        equality::check(position, sum, certificate, &model, limits, &mut budget)?;
+        equality::check(position, sum, on, &mut budget)?;
     }
     let zone = &statement.zone;
     let fits = Duty::new(Rule::Cover, Obligation::EvidenceFitsClaim, 0);
     match (&statement.claim, &certificate.evidence) {
         (Claim::Never { .. }, Evidence::Never { cells, cone: None }) => {
             let until = zone.until.as_ref().ok_or_else(|| fits.refuted())?;
-            cover::check(&zone.from, until, cells, certificate, &model, &mut budget)?;
+            cover::check(&zone.from, until, cells, on, &mut budget)?;
         }
         (Claim::Never { .. }, Evidence::Never { cells, cone: Some(cone) }) => {
             // The cone holds from its start on; cells are needed for the part of the window before it.
             if cone.from > zone.from {
-                cover::check(&zone.from, &cone.from, cells, certificate, &model, &mut budget)?;
+                cover::check(&zone.from, &cone.from, cells, on, &mut budget)?;
             } else {
                 fits.ensure(cells.is_empty())?;
             }
-            cone::check(cone, certificate, &model, limits, &mut budget)?;
+            cone::check(cone, on, &mut budget)?;
         }
         (Claim::Enters { from, to, first }, Evidence::Enters { before, from: start, cell }) => {
             let in_window = start >= &zone.from && zone.until.as_ref().is_none_or(|until| cell.to <= *until);
             let in_bracket = start >= from && cell.to <= *to;
             Duty::new(Rule::Entry, Obligation::InstantIsInWindow, 0).ensure(in_window && in_bracket)?;
-            entry::check(start, cell, certificate, &model, &mut budget)?;
+            entry::check(start, cell, on, &mut budget)?;
             // Nothing comes before the window's start.
             if *first && *from > zone.from {
-                cover::check(&zone.from, from, before, certificate, &model, &mut budget)?;
+                cover::check(&zone.from, from, before, on, &mut budget)?;
             } else {
                 fits.ensure(before.is_empty())?;
             }

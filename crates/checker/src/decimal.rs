@@ -1,17 +1,17 @@
 //! Rational numbers for people: the exact fraction, with a decimal beside it.
 //!
 //! The fraction is what counts. The decimal is the same number where it has at most 15 digits after the point; else it
-//! is marked `about` and has six significant digits. Integers stand alone. All arithmetic is on integers.
+//! is marked `about` and cut off after six significant digits. Integers stand alone. All arithmetic is on integers.
 
 use crate::number::Rational;
 use num_bigint::BigInt;
 use num_integer::Integer;
-use num_traits::{One, Signed, Zero};
+use num_traits::{One, Signed};
 
 /// The most digits after the point of an exact decimal.
 const EXACT_DIGITS: u32 = 15;
 
-/// The significant digits of a rounded decimal.
+/// The significant digits of a decimal that is cut off.
 const ROUNDED_DIGITS: i64 = 6;
 
 /// The number as `7`, `3/50 (0.06)` or `1/3 (about 0.333333)`.
@@ -38,42 +38,21 @@ pub fn exact_decimal(value: &Rational) -> Option<String> {
     None
 }
 
-/// The number rounded to six significant digits, ties away from zero; with a power of ten where it is large or small.
+/// The first six significant digits of a number, with a power of ten where it is large or small.
 pub fn rounded_decimal(value: &Rational) -> String {
-    if value.is_zero() {
-        return "0".into();
-    }
-    let length = |x: &BigInt| i64::try_from(x.abs().to_string().len()).unwrap_or(i64::MAX);
-    // 10^(exponent - 1) < |value| < 10^(exponent + 1).
-    let exponent = length(value.numer()) - length(value.denom());
-    let top = BigInt::from(10_u32).pow(6);
-    let mut shift = ROUNDED_DIGITS - exponent;
-    let mut digits = rounded_integer(&value.abs(), shift);
-    if digits >= top {
+    let length = |x: &BigInt| i64::try_from(x.magnitude().to_string().len()).unwrap_or(i64::MAX);
+    // 10^(e-1) < |value| < 10^(e+1) for the difference e of the lengths, so six or seven digits stand before the point.
+    let mut shift = ROUNDED_DIGITS + length(value.denom()) - length(value.numer());
+    let power = Rational::from_integer(BigInt::from(10_u32)).pow(i32::try_from(shift).unwrap_or(i32::MAX));
+    let mut digits = (value * power).to_integer();
+    if digits.magnitude().to_string().len() > 6 {
+        digits /= 10_u32;
         shift -= 1;
-        digits = rounded_integer(&value.abs(), shift);
     }
-    if digits == top {
-        // The rounding carried into a seventh digit.
-        shift -= 1;
-        digits = BigInt::from(10_u32).pow(5);
-    }
-    let sign = if value.is_negative() { "-" } else { "" };
     match usize::try_from(shift) {
-        Ok(after) if after <= 10 => format!("{sign}{}", point(&digits, after)),
-        Ok(_) | Err(_) => format!("{sign}{}e{}", point(&digits, 5), ROUNDED_DIGITS - 1 - shift),
+        Ok(after) if after <= 10 => point(&digits, after),
+        Ok(_) | Err(_) => format!("{}e{}", point(&digits, 5), ROUNDED_DIGITS - 1 - shift),
     }
-}
-
-/// value 10^shift, rounded to an integer; value > 0.
-fn rounded_integer(value: &Rational, shift: i64) -> BigInt {
-    let power = BigInt::from(10_u32).pow(u32::try_from(shift.unsigned_abs()).unwrap_or(u32::MAX));
-    let (top, bottom) = if shift >= 0 {
-        (value.numer() * power, value.denom().clone())
-    } else {
-        (value.numer().clone(), value.denom() * power)
-    };
-    (top * 2_u32 + &bottom).div_floor(&(bottom * 2_u32))
 }
 
 /// scaled / 10^after in decimal digits, without closing zeros after the point.

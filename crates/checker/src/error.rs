@@ -1,6 +1,6 @@
 //! Why a certificate is not accepted.
 
-use crate::number::{Interval, Rational};
+use crate::number::Interval;
 use std::fmt;
 
 /// The proof rules.
@@ -122,28 +122,8 @@ impl Rejection {
     }
 }
 
-impl Rejection {
-    /// The kind of refusal in one word, for programs.
-    pub fn kind(&self) -> &'static str {
-        match self {
-            Self::Refuted { .. } => "refuted",
-            Self::Inconclusive { .. } => "inconclusive",
-            Self::LimitExceeded { .. } => "limit_exceeded",
-            Self::Malformed { .. } => "malformed",
-            Self::OtherStatement => "other_statement",
-        }
-    }
-
-    /// The rule, the obligation and the position that a refuted or undecided certificate failed at.
-    pub fn failed_at(&self) -> Option<(Rule, Obligation, usize)> {
-        match self {
-            Self::Refuted { rule, obligation, position } | Self::Inconclusive { rule, obligation, position } => {
-                Some((*rule, *obligation, *position))
-            }
-            Self::Malformed { .. } | Self::OtherStatement | Self::LimitExceeded { .. } => None,
-        }
-    }
-}
+/// The answer of a check: nothing, or why not.
+pub(crate) type Checked = Result<(), Rejection>;
 
 /// One obligation of one rule, for one of its objects: where a check stands.
 #[derive(Clone, Copy, Debug)]
@@ -248,8 +228,3 @@ impl fmt::Display for Rejection {
 }
 
 impl std::error::Error for Rejection {}
-
-/// Prints a rational the way the formats do: `p` or `p/q`.
-pub fn rational_text(value: &Rational) -> String {
-    value.to_string()
-}

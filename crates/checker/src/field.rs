@@ -127,6 +127,13 @@ impl<'a> Field<'a> {
         self.text()?.parse().map_err(|_| self.refuse("a non-negative integer"))
     }
 
+    /// A small non-negative integer within a limit.
+    pub(crate) fn count_within(&self, limit: &'static str, max: u64) -> Result<u32, Rejection> {
+        let count = self.count()?;
+        within(limit, usize::try_from(count).unwrap_or(usize::MAX), max)?;
+        Ok(count)
+    }
+
     /// A position in a list of this length.
     pub(crate) fn position(&self, length: usize) -> Result<usize, Rejection> {
         let position = self.text()?.parse::<usize>().ok().filter(|p| *p < length);

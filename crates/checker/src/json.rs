@@ -51,6 +51,16 @@ impl Value {
     }
 }
 
+/// A string value.
+pub(crate) fn text(text: impl ToString) -> Value {
+    Value::text(text)
+}
+
+/// An object with these keys, which are distinct.
+pub(crate) fn object(fields: Vec<(&str, Value)>) -> Value {
+    Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
+}
+
 fn write_block<T>(
     out: &mut String,
     indent: usize,
@@ -152,12 +162,8 @@ impl Reader<'_> {
     }
 
     fn word(&mut self, word: &'static str) -> Result<(), Rejection> {
-        for wanted in word.chars() {
-            if self.rest.next_if(|(_, c)| *c == wanted).is_none() {
-                return Err(self.unexpected(word));
-            }
-        }
-        Ok(())
+        let is_there = word.chars().all(|wanted| self.rest.next_if(|(_, c)| *c == wanted).is_some());
+        if is_there { Ok(()) } else { Err(self.unexpected(word)) }
     }
 
     fn object(&mut self, depth: usize) -> Result<Value, Rejection> {

@@ -54,10 +54,8 @@ impl LeadForm {
         for term in &form.terms {
             let turns = turns_of(term.root);
             // SOUND(lo): rho - rho' >= rho_lo - (upper end of rho'), rounded down; 0 for a leading root, exactly.
-            let gap = match turns {
-                Some(_) => Dyadic::zero(),
-                None => rho_lo.add(&term.exponent.re.hi().neg(), bits, Down),
-            };
+            let below = || rho_lo.add(&term.exponent.re.hi().neg(), bits, Down);
+            let gap = turns.map_or_else(below, |_| Dyadic::zero());
             lower.decide(turns.is_some() || gap.sign() == std::cmp::Ordering::Greater)?;
             let decay = Interval::point(gap.clone()).mul(&start, bits);
             for (j, c) in term.coefficients.iter().enumerate() {

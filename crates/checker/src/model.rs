@@ -2,8 +2,8 @@
 //!
 //! Theorem page: docs/theorems/trace.md.
 
-use crate::certificate::{Auxiliary, Certificate, Factor, Product};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::certificate::{Certificate, Factor, Product};
+use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::formula::{IndexedFormula, claimed_formula};
 use crate::limits::{Budget, Limits, within};
 use crate::root::RootTable;
@@ -34,6 +34,14 @@ pub struct Model {
     pub traces: Vec<Trace>,
     /// The auxiliary functions.
     pub auxiliaries: Vec<ClosedForm>,
+}
+
+/// What every proof rule works on.
+#[derive(Clone, Copy)]
+pub(crate) struct Setting<'a> {
+    pub(crate) certificate: &'a Certificate,
+    pub(crate) model: &'a Model,
+    pub(crate) limits: &'a Limits,
 }
 
 impl Model {
@@ -77,49 +85,11 @@ impl Model {
             auxiliaries.push(form);
         }
         let model = Self { formula, table, traces, auxiliaries };
+        let on = Setting { certificate, model: &model, limits };
         for (position, product) in certificate.products.iter().enumerate() {
-            model.check_product(position, product, &certificate.auxiliaries, limits, budget)?;
+            check_product(position, product, on, budget)?;
         }
         Ok(model)
-    }
-
-    /// Checks `trace = pivot^power * cofactor`.
-    ///
-    /// Lemma: the solutions of m(d/dt) g = 0 form a space of dimension deg m closed under d/dt. Products of k elements
-    /// of one of dimension p and one element of one of dimension c span a space of dimension at most
-    /// binom(p + k - 1, k) c, closed under d/dt. So the difference of the two sides lies in a closed space of dimension
-    /// <= B = deg(trace) + binom(p + k - 1, k) c, and is zero if its first B derivatives at 0 are.
-    fn check_product(
-        &self,
-        position: usize,
-        product: &Product,
-        auxiliaries: &[Auxiliary],
-        limits: &Limits,
-        budget: &mut Budget,
-    ) -> Result<(), Rejection> {
-        let duty = Duty::new(Rule::Trace, Obligation::ProductEqualsTrace, position);
-        let missing = || duty.refuted();
-        let trace = self.traces.get(product.trace).ok_or_else(missing)?;
-        let pivot = auxiliaries.get(product.pivot).ok_or_else(missing)?;
-        let cofactor = auxiliaries.get(product.cofactor).ok_or_else(missing)?;
-        let trace_degree = self.degree(&trace.factors);
-        let pivot_degree = self.degree(&pivot.factors);
-        let mut ways = 1_usize;
-        for i in 1..=usize::try_from(product.power).unwrap_or(usize::MAX) {
-            ways = ways.saturating_mul((pivot_degree + i).saturating_sub(1)) / i;
-            within("derivatives", ways, limits.derivatives)?;
-        }
-        let bound = trace_degree.saturating_add(ways.saturating_mul(self.degree(&cofactor.factors)));
-        within("derivatives", bound, limits.derivatives)?;
-        budget.spend(bound.saturating_mul(bound), 64)?;
-        let left = self.extended(&trace.factors, &trace.sequence.derivatives(trace_degree), bound);
-        let pivot = self.extended(&pivot.factors, &pivot.derivatives, bound).ok_or_else(missing)?;
-        let mut right = self.extended(&cofactor.factors, &cofactor.derivatives, bound).ok_or_else(missing)?;
-        for _ in 0..product.power {
-            right = right.mul(&pivot);
-        }
-        let equal = left.is_some_and(|left| left.derivatives(bound) == right.derivatives(bound));
-        duty.ensure(equal)
     }
 
     fn degree(&self, factors: &[Factor]) -> usize {
@@ -138,6 +108,39 @@ impl Model {
         }
         Some(Sequence::from_rationals(&values))
     }
+}
+
+/// Checks `trace = pivot^power * cofactor`.
+///
+/// Lemma: the solutions of m(d/dt) g = 0 form a space of dimension deg m closed under d/dt. Products of k elements
+/// of one of dimension p and one element of one of dimension c span a space of dimension at most
+/// binom(p + k - 1, k) c, closed under d/dt. So the difference of the two sides lies in a closed space of dimension
+/// <= B = deg(trace) + binom(p + k - 1, k) c, and is zero if its first B derivatives at 0 are.
+fn check_product(position: usize, product: &Product, on: Setting, budget: &mut Budget) -> Checked {
+    let Setting { certificate: Certificate { auxiliaries, .. }, model, limits } = on;
+    let duty = Duty::new(Rule::Trace, Obligation::ProductEqualsTrace, position);
+    let missing = || duty.refuted();
+    let trace = model.traces.get(product.trace).ok_or_else(missing)?;
+    let pivot = auxiliaries.get(product.pivot).ok_or_else(missing)?;
+    let cofactor = auxiliaries.get(product.cofactor).ok_or_else(missing)?;
+    let trace_degree = model.degree(&trace.factors);
+    let pivot_degree = model.degree(&pivot.factors);
+    let mut ways = 1_usize;
+    for i in 1..=usize::try_from(product.power).unwrap_or(usize::MAX) {
+        ways = ways.saturating_mul((pivot_degree + i).saturating_sub(1)) / i;
+        within("derivatives", ways, limits.derivatives)?;
+    }
+    let bound = trace_degree.saturating_add(ways.saturating_mul(model.degree(&cofactor.factors)));
+    within("derivatives", bound, limits.derivatives)?;
+    budget.spend(bound.saturating_mul(bound), 64)?;
+    let left = model.extended(&trace.factors, &trace.sequence.derivatives(trace_degree), bound);
+    let pivot = model.extended(&pivot.factors, &pivot.derivatives, bound).ok_or_else(missing)?;
+    let mut right = model.extended(&cofactor.factors, &cofactor.derivatives, bound).ok_or_else(missing)?;
+    for _ in 0..product.power {
+        right = right.mul(&pivot);
+    }
+    let equal = left.is_some_and(|left| left.derivatives(bound) == right.derivatives(bound));
+    duty.ensure(equal)
 }
 
 /// The degree of a product of families, within the limit, with each family at most once.

@@ -134,11 +134,7 @@ impl RootTable {
         let root = self.roots.get(index)?;
         let polynomial = self.families.get(root.family)?;
         let reflected = polynomial.reflected(&(line + line));
-        let sign = if polynomial.degree() % 2 == 0 {
-            Rational::from_integer(1_i32.into())
-        } else {
-            Rational::from_integer((-1_i32).into())
-        };
+        let sign = Rational::from_integer(if polynomial.degree() % 2 == 0 { 1_i32 } else { -1_i32 }.into());
         let symmetric =
             reflected.coefficients().iter().map(|c| c * &sign).eq(polynomial.coefficients().iter().cloned());
         if !symmetric {

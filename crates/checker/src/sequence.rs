@@ -13,7 +13,8 @@ use crate::polynomial::Polynomial;
 use crate::statement::{Affine, Drive, Expression, SignalTerm, Statement, Variable, Wave};
 use num_bigint::BigInt;
 use num_integer::Integer;
-use num_traits::{One, Signed, Zero};
+use num_traits::{One, Zero};
+use std::cmp::Ordering;
 use std::collections::{BTreeMap, BTreeSet};
 
 /// The derivatives at 0 of one function.
@@ -55,6 +56,11 @@ impl Sequence {
     /// Whether all known derivatives are 0.
     pub fn is_zero(&self) -> bool {
         self.values.iter().all(Zero::is_zero)
+    }
+
+    /// The sign of the function's value at 0, exactly.
+    pub fn sign_at_zero(&self) -> Ordering {
+        self.values.first().map_or(Ordering::Equal, |value| value.cmp(&BigInt::zero()))
     }
 
     /// The first `count` derivatives as rationals.
@@ -192,13 +198,13 @@ impl<'a> Flow<'a> {
         support
     }
 
-    fn degree(&self, expression: &Expression) -> u64 {
+    fn degree(&self, expression: &Expression) -> usize {
         let weight = |variable: &Variable| match variable {
             Variable::Output(i) => self.statement.outputs.get(*i).map_or(0, |o| self.degree(&o.value)),
             Variable::State(_) | Variable::Drive(_) | Variable::Time => 1,
         };
-        let degree =
-            |powers: &[(Variable, u32)]| powers.iter().map(|(v, k)| weight(v).saturating_mul(u64::from(*k))).sum();
+        let factor = |(v, k): &(Variable, u32)| weight(v).saturating_mul(usize::try_from(*k).unwrap_or(usize::MAX));
+        let degree = |powers: &[(Variable, u32)]| powers.iter().map(factor).fold(0, usize::saturating_add);
         expression.terms.iter().map(|t| degree(&t.powers)).max().unwrap_or(0)
     }
 
@@ -213,14 +219,14 @@ impl<'a> Flow<'a> {
     /// d/dt that has N vanishing derivatives at 0 is zero (Cayley-Hamilton, uniqueness of solutions).
     fn order_bound(&self, expression: &Expression) -> Result<usize, Rejection> {
         let degree = self.degree(expression);
-        within("degree", usize::try_from(degree).unwrap_or(usize::MAX), self.limits.degree)?;
+        within("degree", degree, self.limits.degree)?;
         let zero = Rational::zero();
-        let mut exponents: BTreeMap<(&Rational, Option<&Rational>), u64> = BTreeMap::from([((&zero, None), 0)]);
-        let mut raise = |key, power: u64| {
+        let mut exponents: BTreeMap<(&Rational, Option<&Rational>), u32> = BTreeMap::from([((&zero, None), 0)]);
+        let mut raise = |key, power: u32| {
             let top = exponents.entry(key).or_insert(0);
             *top = power.max(*top);
         };
-        let mut dimension: u64 = 0;
+        let mut dimension: usize = 0;
         for variable in self.support(expression) {
             match variable {
                 Variable::State(_) => dimension += 1,
@@ -232,25 +238,21 @@ impl<'a> Flow<'a> {
                             Wave::One => None,
                             Wave::Cosine(w) | Wave::Sine(w) => Some(w),
                         };
-                        raise((&term.rate, frequency), u64::from(term.power));
+                        raise((&term.rate, frequency), term.power);
                     }
                 }
             }
         }
         for ((_, frequency), power) in exponents {
-            dimension += (power + 1) * if frequency.is_some() { 2 } else { 1 };
+            dimension += usize::try_from(power + 1).unwrap_or(usize::MAX) * if frequency.is_some() { 2 } else { 1 };
         }
         // binom(dimension - 1 + degree, degree), cut off above the limit.
-        let mut bound: u64 = 1;
+        let mut bound = 1;
         for i in 1..=degree {
             bound = bound * (dimension - 1 + i) / i;
-            within("derivatives", usize::try_from(bound).unwrap_or(usize::MAX), self.limits.derivatives)?;
+            within("derivatives", bound, self.limits.derivatives)?;
         }
-        usize::try_from(bound).map_err(|_| Rejection::LimitExceeded {
-            limit: "derivatives",
-            max: self.limits.derivatives,
-            found: bound,
-        })
+        Ok(bound)
     }
 
     /// The trace of an expression: its order bound N, and 2 N derivatives at 0 (an annihilator of degree <= N is proved
@@ -380,15 +382,4 @@ impl<'a> Flow<'a> {
 
 fn variables(expression: &Expression) -> impl Iterator<Item = Variable> + '_ {
     expression.terms.iter().flat_map(|t| t.powers.iter().map(|(v, _)| *v))
-}
-
-impl Sequence {
-    /// The sign of the function's value at 0, exactly.
-    pub fn sign_at_zero(&self) -> std::cmp::Ordering {
-        match self.values.first() {
-            Some(v) if v.is_positive() => std::cmp::Ordering::Greater,
-            Some(v) if v.is_negative() => std::cmp::Ordering::Less,
-            Some(_) | None => std::cmp::Ordering::Equal,
-        }
-    }
 }

@@ -1,8 +1,8 @@
 //! Statements as JSON: reading with all its refusals, and writing.
 
-use crate::error::{Rejection, rational_text};
+use crate::error::Rejection;
 use crate::field::Field;
-use crate::json::Value;
+use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::statement::{
     Affine, Atom, Claim, Drive, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State, Statement,
@@ -56,21 +56,21 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
         return Err(format.refuse("\"keepout-statement/1\""));
     }
     let mut names: Names = Vec::new();
-    let states = declared(&field.get("states")?, &mut names, Variable::State, |f, name, unit, _| {
+    let states = declared(&field.get("states")?, &mut names, Variable::State, |f, name, unit| {
         f.only(&["name", "unit", "start"], "a state: name, unit, start")?;
         Ok(State { name, unit, start: f.get("start")?.rational()? })
     })?;
     if states.is_empty() {
         return Err(field.get("states")?.refuse("at least one state"));
     }
-    let drives = declared(&field.get("drives")?, &mut names, Variable::Drive, |f, name, unit, _| {
+    let drives = declared(&field.get("drives")?, &mut names, Variable::Drive, |f, name, unit| {
         f.only(&["name", "unit", "signal"], "a drive: name, unit, signal")?;
         Ok(Drive { name, unit, signal: entries(&f.get("signal")?)?.iter().map(read_signal).collect::<Result<_, _>>()? })
     })?;
     let affine_names = names.clone();
     names.push(("t".into(), Variable::Time));
     let value_names = names.clone();
-    let outputs = declared(&field.get("outputs")?, &mut names, Variable::Output, |f, name, unit, _| {
+    let outputs = declared(&field.get("outputs")?, &mut names, Variable::Output, |f, name, unit| {
         f.only(&["name", "unit", "value"], "an output: name, unit, value")?;
         Ok(Output { name, unit, value: read_expression(&f.get("value")?, &value_names)? })
     })?;
@@ -79,15 +79,9 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
         return Err(field.get("phases")?.refuse("exactly one phase"));
     }
     let phases = phases.iter().map(|f| read_phase(f, &states, &affine_names)).collect::<Result<_, _>>()?;
-    Ok(Statement {
-        title: field.get("title")?.text()?.to_string(),
-        zone: read_zone(&field.get("zone")?, &names)?,
-        claim: read_claim(&field.get("claim")?)?,
-        states,
-        drives,
-        outputs,
-        phases,
-    })
+    let title = field.get("title")?.text()?.to_string();
+    let (zone, claim) = (read_zone(&field.get("zone")?, &names)?, read_claim(&field.get("claim")?)?);
+    Ok(Statement { title, states, drives, outputs, phases, zone, claim })
 }
 
 /// Names with a meaning of their own in formulas.
@@ -104,7 +98,7 @@ fn declared<'a, T>(
     field: &Field<'a>,
     names: &mut Names,
     variable: fn(usize) -> Variable,
-    read: impl Fn(&Field<'a>, String, Option<String>, usize) -> Result<T, Rejection>,
+    read: impl Fn(&Field<'a>, String, Option<String>) -> Result<T, Rejection>,
 ) -> Result<Vec<T>, Rejection> {
     let mut items = Vec::new();
     for (i, item) in entries(field)?.iter().enumerate() {
@@ -114,7 +108,7 @@ fn declared<'a, T>(
             return Err(name.refuse("a new name, not reserved: a letter or _, then letters, digits or _"));
         }
         let unit = item.optional("unit").map(|u| u.text().map(str::to_string)).transpose()?;
-        items.push(read(item, text.to_string(), unit, i)?);
+        items.push(read(item, text.to_string(), unit)?);
         names.push((text.to_string(), variable(i)));
     }
     Ok(items)
@@ -138,8 +132,7 @@ fn read_signal(field: &Field) -> Result<SignalTerm, Rejection> {
         (None, Some(w)) => Wave::Sine(frequency(w)?),
         (Some(_), Some(_)) => return Err(field.refuse("cos or sin, not both")),
     };
-    let power = field.get("power")?.count()?;
-    within("degree", usize::try_from(power).unwrap_or(usize::MAX), field.limits().degree)?;
+    let power = field.get("power")?.count_within("degree", field.limits().degree)?;
     let (coefficient, rate) = (field.get("times")?.rational()?, field.get("rate")?.rational()?);
     Ok(SignalTerm { coefficient, power, rate, wave })
 }
@@ -216,11 +209,8 @@ fn read_formula(field: &Field, names: &Names) -> Result<Formula, Rejection> {
     }
     field.only(&["polynomial", "is"], "all, any, or a comparison: polynomial, is")?;
     let is = field.get("is")?;
-    let text = is
-        .text()?
-        .strip_suffix(" 0")
-        .ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
-    let relation = RELATIONS.iter().find(|(name, _)| *name == text).map(|(_, r)| *r);
+    let symbol = is.text()?.strip_suffix(" 0");
+    let relation = RELATIONS.iter().find(|(name, _)| Some(*name) == symbol).map(|(_, r)| *r);
     let relation = relation.ok_or_else(|| is.refuse("\"< 0\", \"<= 0\", \"= 0\", \">= 0\", \"> 0\" or \"!= 0\""))?;
     Ok(Formula::Atom(Atom { polynomial: read_expression(&field.get("polynomial")?, names)?, relation }))
 }
@@ -232,13 +222,9 @@ fn read_zone(field: &Field, names: &Names) -> Result<Zone, Rejection> {
     if from.is_negative() || until.as_ref().is_some_and(|u| *u < from) {
         return Err(field.refuse("0 <= from <= until"));
     }
-    Ok(Zone {
-        name: field.get("name")?.text()?.to_string(),
-        reference: field.optional("ref").map(|r| r.text().map(str::to_string)).transpose()?,
-        inside: read_formula(&field.get("inside")?, names)?,
-        from,
-        until,
-    })
+    let reference = field.optional("ref").map(|r| r.text().map(str::to_string)).transpose()?;
+    let (name, inside) = (field.get("name")?.text()?.to_string(), read_formula(&field.get("inside")?, names)?);
+    Ok(Zone { name, reference, inside, from, until })
 }
 
 fn read_claim(field: &Field) -> Result<Claim, Rejection> {
@@ -258,17 +244,9 @@ fn read_claim(field: &Field) -> Result<Claim, Rejection> {
     Ok(Claim::Enters { from, to, first: enters.get("first")?.flag()? })
 }
 
-fn object(fields: Vec<(&str, Value)>) -> Value {
-    Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
-}
-
-fn number(value: &Rational) -> Value {
-    Value::Text(rational_text(value))
-}
-
 fn declaration(name: &str, unit: Option<&String>, key: &'static str, value: Value) -> Value {
-    let mut fields = vec![("name", Value::text(name))];
-    fields.extend(unit.map(|u| ("unit", Value::text(u))));
+    let mut fields = vec![("name", text(name))];
+    fields.extend(unit.map(|u| ("unit", text(u))));
     fields.push((key, value));
     object(fields)
 }
@@ -286,12 +264,12 @@ impl Statement {
 
     fn write_expression(&self, expression: &Expression) -> Value {
         let factor = |(variable, power): &(Variable, u32)| match power {
-            1 => Value::text(self.name(*variable)),
-            _ => object(vec![("name", Value::text(self.name(*variable))), ("power", Value::text(power))]),
+            1 => text(self.name(*variable)),
+            _ => object(vec![("name", text(self.name(*variable))), ("power", text(power))]),
         };
         let term = |t: &Term| {
             let of = Value::List(t.powers.iter().map(factor).collect());
-            object(vec![("times", number(&t.coefficient)), ("of", of)])
+            object(vec![("times", text(&t.coefficient)), ("of", of)])
         };
         Value::List(expression.terms.iter().map(term).collect())
     }
@@ -303,17 +281,17 @@ impl Statement {
             Formula::Or(parts) => object(vec![("any", list(parts))]),
             Formula::Atom(Atom { polynomial, relation }) => {
                 let is = RELATIONS.iter().find(|(_, r)| r == relation).map_or("?", |(name, _)| name);
-                object(vec![("polynomial", self.write_expression(polynomial)), ("is", Value::text(format!("{is} 0")))])
+                object(vec![("polynomial", self.write_expression(polynomial)), ("is", text(format!("{is} 0")))])
             }
         }
     }
 
     fn write_affine(&self, of: &str, affine: &Affine) -> Value {
         let term = |(factor, variable): &(Rational, Variable)| {
-            object(vec![("times", number(factor)), ("of", Value::text(self.name(*variable)))])
+            object(vec![("times", text(factor)), ("of", text(self.name(*variable)))])
         };
         let terms = Value::List(affine.terms.iter().map(term).collect());
-        object(vec![("of", Value::text(of)), ("terms", terms), ("offset", number(&affine.offset))])
+        object(vec![("of", text(of)), ("terms", terms), ("offset", text(&affine.offset))])
     }
 
     fn write_phase(&self, phase: &Phase) -> Value {
@@ -323,39 +301,38 @@ impl Statement {
 }
 
 fn write_signal(term: &SignalTerm) -> Value {
-    let mut fields =
-        vec![("times", number(&term.coefficient)), ("power", Value::text(term.power)), ("rate", number(&term.rate))];
+    let mut fields = vec![("times", text(&term.coefficient)), ("power", text(term.power)), ("rate", text(&term.rate))];
     match &term.wave {
         Wave::One => {}
-        Wave::Cosine(w) => fields.push(("cos", number(w))),
-        Wave::Sine(w) => fields.push(("sin", number(w))),
+        Wave::Cosine(w) => fields.push(("cos", text(w))),
+        Wave::Sine(w) => fields.push(("sin", text(w))),
     }
     object(fields)
 }
 
 fn write_statement(s: &Statement) -> Value {
-    let states = s.states.iter().map(|x| declaration(&x.name, x.unit.as_ref(), "start", number(&x.start)));
+    let states = s.states.iter().map(|x| declaration(&x.name, x.unit.as_ref(), "start", text(&x.start)));
     let drives = s.drives.iter().map(|d| {
         let signal = Value::List(d.signal.iter().map(write_signal).collect());
         declaration(&d.name, d.unit.as_ref(), "signal", signal)
     });
     let outputs =
         s.outputs.iter().map(|o| declaration(&o.name, o.unit.as_ref(), "value", s.write_expression(&o.value)));
-    let mut zone = vec![("name", Value::text(&s.zone.name))];
-    zone.extend(s.zone.reference.as_ref().map(|r| ("ref", Value::text(r))));
+    let mut zone = vec![("name", text(&s.zone.name))];
+    zone.extend(s.zone.reference.as_ref().map(|r| ("ref", text(r))));
     zone.push(("inside", s.write_formula(&s.zone.inside)));
-    zone.push(("from", number(&s.zone.from)));
-    zone.extend(s.zone.until.as_ref().map(|u| ("until", number(u))));
+    zone.push(("from", text(&s.zone.from)));
+    zone.extend(s.zone.until.as_ref().map(|u| ("until", text(u))));
     let claim = match &s.claim {
-        Claim::Never { margin } => object(vec![("never", object(vec![("margin", number(margin))]))]),
+        Claim::Never { margin } => object(vec![("never", object(vec![("margin", text(margin))]))]),
         Claim::Enters { from, to, first } => object(vec![(
             "enters",
-            object(vec![("from", number(from)), ("to", number(to)), ("first", Value::Bool(*first))]),
+            object(vec![("from", text(from)), ("to", text(to)), ("first", Value::Bool(*first))]),
         )]),
     };
     object(vec![
-        ("format", Value::text(STATEMENT_FORMAT)),
-        ("title", Value::text(&s.title)),
+        ("format", text(STATEMENT_FORMAT)),
+        ("title", text(&s.title)),
         ("states", Value::List(states.collect())),
         ("drives", Value::List(drives.collect())),
         ("outputs", Value::List(outputs.collect())),

@@ -7,14 +7,15 @@
 use crate::decimal::fraction_and_decimal;
 use crate::formula::claimed_formula;
 use crate::statement::{
-    Affine, Atom, Claim, Expression, Formula, Phase, Rational, Relation, SignalTerm, Statement, Variable, Wave,
+    Affine, Atom, Claim, Drive, Expression, Formula, Output, Rational, Relation, SignalTerm, State, Statement,
+    Variable, Wave,
 };
 use num_traits::{One, Signed, Zero};
 
 const PREFACE: &str = "\
 This statement speaks of one trajectory: the solution of the equations below from exactly the start below, driven by exactly
 the known inputs below. It says nothing about other starts or other inputs, nor whether the equations describe the plant.
-All numbers are exact. A decimal in parentheses repeats the number before it; where it says \"about\" it is rounded, and the
+All numbers are exact. A decimal in parentheses repeats the number before it; where it says \"about\" it is cut off, and the
 fraction counts. t is time, counted from 0 in the unit of the model; x' is the derivative of x with respect to t.
 ";
 
@@ -38,47 +39,30 @@ impl Statement {
 
     fn start_lines(&self, lines: &mut Vec<String>) {
         section(lines, "States, and their exact values at t = 0:");
-        for state in &self.states {
-            let unit = unit_label(state.unit.as_ref());
-            lines.push(format!("  {} = {}{unit}", state.name, fraction_and_decimal(&state.start)));
-        }
+        let line = |s: &State| declared(&s.name, &fraction_and_decimal(&s.start), s.unit.as_ref());
+        lines.extend(self.states.iter().map(line));
     }
 
     fn equation_lines(&self, lines: &mut Vec<String>) {
-        for (i, phase) in self.phases.iter().enumerate() {
-            let title = if self.phases.len() == 1 { "Equations:".into() } else { format!("Equations of phase {i}:") };
-            section(lines, &title);
-            self.phase_lines(phase, lines);
-        }
-    }
-
-    fn phase_lines(&self, phase: &Phase, lines: &mut Vec<String>) {
-        for (i, rate) in phase.rates.iter().enumerate() {
-            lines.push(format!("  {}' = {}", self.name(Variable::State(i)), self.affine_words(rate)));
+        section(lines, "Equations:");
+        // A statement with another number of phases is never verified.
+        for rate in self.phases.iter().flat_map(|p| p.rates.iter().enumerate()) {
+            lines.push(format!("  {}' = {}", self.name(Variable::State(rate.0)), self.affine_words(rate.1)));
         }
     }
 
     fn input_lines(&self, lines: &mut Vec<String>) {
-        if self.drives.is_empty() {
-            section(lines, "Known inputs: none.");
-            return;
-        }
-        section(lines, "Known inputs, for all t >= 0:");
-        for drive in &self.drives {
-            let signal = sum(drive.signal.iter().map(|term| (&term.coefficient, signal_factors(term))));
-            lines.push(format!("  {} = {signal}{}", drive.name, unit_label(drive.unit.as_ref())));
-        }
+        section(lines, if self.drives.is_empty() { "Known inputs: none." } else { "Known inputs, for all t >= 0:" });
+        let signal = |d: &Drive| sum(d.signal.iter().map(|term| (&term.coefficient, signal_factors(term))));
+        lines.extend(self.drives.iter().map(|d| declared(&d.name, &signal(d), d.unit.as_ref())));
     }
 
     fn output_lines(&self, lines: &mut Vec<String>) {
-        if self.outputs.is_empty() {
-            return;
+        if !self.outputs.is_empty() {
+            section(lines, "Outputs, by definition:");
         }
-        section(lines, "Outputs, by definition:");
-        for output in &self.outputs {
-            let unit = unit_label(output.unit.as_ref());
-            lines.push(format!("  {} = {}{unit}", output.name, self.expression_words(&output.value)));
-        }
+        let line = |o: &Output| declared(&o.name, &self.expression_words(&o.value), o.unit.as_ref());
+        lines.extend(self.outputs.iter().map(line));
     }
 
     fn zone_lines(&self, lines: &mut Vec<String>) {
@@ -111,7 +95,13 @@ impl Statement {
                 ));
                 lines.push("  it is in the zone at no instant of the window.".into());
                 if margin.is_positive() {
-                    self.margin_lines(margin, lines);
+                    let margin = fraction_and_decimal(margin);
+                    lines.push(format!(
+                        "  Margin: {margin}. The same holds for the zone widened by this margin, which is:"
+                    ));
+                    let none = "(this zone is not a single inequality, so no certificate can prove the claim)".into();
+                    let widened = claimed_formula(self).map_or(none, |zone| self.formula_words(&zone, false));
+                    lines.push(format!("    {widened}"));
                 }
             }
             Claim::Enters { from, to, first } => {
@@ -129,17 +119,6 @@ impl Statement {
                         "  and at no earlier instant of the window, that is, at none before t = {after}."
                     ));
                 }
-            }
-        }
-    }
-
-    fn margin_lines(&self, margin: &Rational, lines: &mut Vec<String>) {
-        let margin = fraction_and_decimal(margin);
-        lines.push(format!("  Margin: {margin}. The same holds for the zone widened by this margin, which is:"));
-        match claimed_formula(self) {
-            Some(widened) => lines.push(format!("    {}", self.formula_words(&widened, false))),
-            None => {
-                lines.push("    (this zone is not a single inequality, so no certificate can prove the claim)".into())
             }
         }
     }
@@ -196,8 +175,9 @@ fn quoted(text: &str) -> String {
     format!("{text:?}")
 }
 
-fn unit_label(unit: Option<&String>) -> String {
-    unit.map_or(String::new(), |u| format!("    [unit label {}]", quoted(u)))
+fn declared(name: &str, value: &str, unit: Option<&String>) -> String {
+    let unit = unit.map_or(String::new(), |u| format!("    [unit label {}]", quoted(u)));
+    format!("  {name} = {value}{unit}")
 }
 
 fn compared(relation: Relation) -> &'static str {

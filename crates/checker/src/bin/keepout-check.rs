@@ -5,7 +5,6 @@
 //! limit, 3 malformed, unreadable, for another statement, or wrong usage. Only the library decides; here is no mathematics.
 
 use keepout_checker::certificate::Certificate;
-use keepout_checker::error::{Obligation, Rule};
 use keepout_checker::json::Value;
 use keepout_checker::statement::Statement;
 use keepout_checker::{Limits, Rejection, Verified, check};
@@ -147,6 +146,21 @@ impl Failure {
         self.rejection().map_or(3, Rejection::exit_status)
     }
 
+    /// The rule, the obligation and the position that the certificate failed at.
+    fn duty_fields(&self) -> Vec<(&'static str, Value)> {
+        let Some(
+            Rejection::Refuted { rule, obligation, position } | Rejection::Inconclusive { rule, obligation, position },
+        ) = self.rejection()
+        else {
+            return Vec::new();
+        };
+        vec![
+            ("rule", Value::text(rule)),
+            ("obligation", Value::Text(format!("{obligation:?}"))),
+            ("position", Value::text(position)),
+        ]
+    }
+
     /// The verdict in one word or a few.
     fn verdict(&self) -> &'static str {
         match (self.exit_status(), self.rejection()) {
@@ -210,23 +224,12 @@ impl Report {
         ];
         if let Err(failure) = &self.result {
             fields.push(("reason", Value::text(failure)));
-            fields.extend(failure.rejection().map(|r| ("kind", Value::text(r.kind()))));
-            if let Some((rule, obligation, position)) = failure.rejection().and_then(Rejection::failed_at) {
-                fields.extend(duty_fields(rule, obligation, position));
-            }
+            fields.extend(failure.duty_fields());
         }
         fields.extend(self.bits.map(|bits| ("bits", Value::text(bits))));
         fields.extend(self.statement.as_ref().map(|s| ("words", Value::Text(s.words()))));
         Value::Object(fields.into_iter().map(|(key, value)| (key.to_string(), value)).collect())
     }
-}
-
-fn duty_fields(rule: Rule, obligation: Obligation, position: usize) -> [(&'static str, Value); 3] {
-    [
-        ("rule", Value::text(rule)),
-        ("obligation", Value::Text(format!("{obligation:?}"))),
-        ("position", Value::text(position)),
-    ]
 }
 
 /// Prints a result. A reader that has gone away is no error: the exit status still tells.

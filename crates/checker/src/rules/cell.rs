@@ -7,17 +7,20 @@
 //!   sign of g / t^k.
 //! - An auxiliary function w: g = w^k h has the sign of w^k times that of h.
 
-use crate::certificate::{Cell, Certificate, Pivot, Sign};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::certificate::{Cell, Pivot, Sign};
+use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::limits::Budget;
-use crate::model::Model;
-use crate::number::Rational;
+use crate::model::Setting;
+use crate::number::{Interval, Rational};
 use crate::trace::{ClosedForm, Stretch};
 use num_traits::Zero;
 use std::cmp::Ordering;
 
 /// The signs of all traces in one case; `None`: not known.
 pub(crate) type Signs = Vec<Option<Sign>>;
+
+/// An enclosure; `None`: an argument is out of range.
+pub(crate) type Enclosed = Result<Option<Interval>, Rejection>;
 
 /// The signs of traces on a cell, case by case.
 pub(crate) struct Cases {
@@ -32,14 +35,13 @@ pub(crate) struct Cases {
 /// # Errors
 /// The first listed sign that is refuted, or not decided.
 pub(crate) fn prove_signs(
-    rule: Rule,
-    position: usize,
+    (rule, position): (Rule, usize),
     from: &Rational,
     cell: &Cell,
-    certificate: &Certificate,
-    model: &Model,
+    on: Setting,
     budget: &mut Budget,
 ) -> Result<Cases, Rejection> {
+    let Setting { certificate, model, .. } = on;
     let on_cell = Duty::new(rule, Obligation::SignOnCell, position);
     let half = Rational::new(1_i32.into(), 2_i32.into());
     let (centre, half_width) = ((from + &cell.to) * &half, (&cell.to - from) * &half);
@@ -92,40 +94,25 @@ pub(crate) fn prove_signs(
     }
 }
 
-fn set(signs: &mut Signs, index: usize, sign: Sign) {
+pub(crate) fn set(signs: &mut Signs, index: usize, sign: Sign) {
     if let Some(slot) = signs.get_mut(index) {
         *slot = Some(sign);
     }
 }
 
 /// Proves that a function has this sign on a stretch; `Equal` only for the zero function.
-fn prove_sign(
-    duty: Duty,
-    form: &ClosedForm,
-    sign: Sign,
-    stretch: Stretch,
-    budget: &mut Budget,
-) -> Result<(), Rejection> {
+fn prove_sign(duty: Duty, form: &ClosedForm, sign: Sign, on: Stretch, budget: &mut Budget) -> Checked {
     if form.terms.is_empty() {
         return duty.ensure(sign == Ordering::Equal);
     }
-    let value = form.enclose(stretch, budget)?.ok_or_else(|| duty.inconclusive())?;
+    let value = form.enclose(on, budget)?.ok_or_else(|| duty.inconclusive())?;
     duty.sign(&value, sign)
 }
 
 /// The enclosure of an auxiliary function at an instant.
-pub(crate) fn value_at(
-    form: &ClosedForm,
-    at: &Rational,
-    bits: u32,
-    budget: &mut Budget,
-) -> Result<Option<crate::number::Interval>, Rejection> {
-    let zero = Rational::zero();
-    form.enclose(Stretch { centre: at, half_width: &zero, order: form_order(form), bits }, budget)
-}
-
-/// Enough terms for a stretch of length 0: one more than the greatest power of t.
-fn form_order(form: &ClosedForm) -> u32 {
+pub(crate) fn value_at(form: &ClosedForm, at: &Rational, on: Setting, budget: &mut Budget) -> Enclosed {
+    // Enough terms for a stretch of length 0: one more than the greatest power of t.
     let longest = form.terms.iter().map(|t| t.coefficients.len()).max().unwrap_or(1);
-    u32::try_from(longest).unwrap_or(u32::MAX)
+    let order = u32::try_from(longest).unwrap_or(u32::MAX);
+    form.enclose(Stretch { centre: at, half_width: &Rational::zero(), order, bits: on.certificate.bits }, budget)
 }

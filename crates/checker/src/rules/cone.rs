@@ -9,11 +9,12 @@
 //! The claim is about the trajectory; it says nothing of other starts.
 //! Source: doi:10.4230/LIPIcs.ICALP.2020.107, docs/theorems/cone.md.
 
-use crate::certificate::{Certificate, Cone, Lead, Node, RealPart, RootRef, Sign};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use super::cell::set;
+use crate::certificate::{Cone, Lead, Node, RealPart, RootRef, Sign};
+use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::lead::{AngleBox, LeadForm, halves, whole_torus};
-use crate::limits::{Budget, Limits, within};
-use crate::model::Model;
+use crate::limits::{Budget, within};
+use crate::model::Setting;
 use crate::number::Dyadic;
 use num_traits::Signed;
 use std::cmp::Ordering;
@@ -23,27 +24,21 @@ use std::collections::BTreeMap;
 type Turns = BTreeMap<usize, Vec<i64>>;
 
 /// Checks that the zone is false for all t >= cone.from. The certificate's sums have been checked.
-pub(crate) fn check(
-    cone: &Cone,
-    certificate: &Certificate,
-    model: &Model,
-    limits: &Limits,
-    budget: &mut Budget,
-) -> Result<(), Rejection> {
+pub(crate) fn check(cone: &Cone, on: Setting, budget: &mut Budget) -> Checked {
     Duty::new(Rule::Cone, Obligation::CellsCoverWindow, 0).ensure(cone.from.is_positive())?;
-    let forms = lead_forms(cone, certificate, model, budget)?;
+    let forms = lead_forms(cone, on, budget)?;
     let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(cone.base.len()), 0)];
     for (position, node) in cone.nodes.iter().enumerate() {
         let covers = Duty::new(Rule::Cone, Obligation::LeavesCoverTorus, position);
         let (angles, depth) = open.pop().ok_or_else(|| covers.refuted())?;
         match node {
             Node::Split(axis) => {
-                within("depth", usize::try_from(depth + 1).unwrap_or(usize::MAX), limits.depth)?;
+                within("depth", usize::try_from(depth + 1).unwrap_or(usize::MAX), on.limits.depth)?;
                 let (lower, upper) = halves(&angles, *axis).ok_or_else(|| covers.refuted())?;
                 open.push((upper, depth + 1));
                 open.push((lower, depth + 1));
             }
-            Node::Leaf(listed) => check_leaf(position, &angles, listed, &forms, model, certificate.bits, budget)?,
+            Node::Leaf(listed) => check_leaf(position, &angles, listed, &forms, on, budget)?,
         }
     }
     Duty::new(Rule::Cone, Obligation::LeavesCoverTorus, cone.nodes.len()).ensure(open.is_empty())
@@ -54,10 +49,10 @@ fn check_leaf(
     angles: &AngleBox,
     listed: &[(usize, Sign)],
     forms: &[Option<LeadForm>],
-    model: &Model,
-    bits: u32,
+    on: Setting,
     budget: &mut Budget,
-) -> Result<(), Rejection> {
+) -> Checked {
+    let Setting { certificate, model, .. } = on;
     let on_leaf = Duty::new(Rule::Cone, Obligation::SignOnLeaf, position);
     let mut signs = vec![None; model.traces.len()];
     for (index, sign) in listed {
@@ -66,24 +61,18 @@ fn check_leaf(
             on_leaf.ensure(*sign == Ordering::Equal)?;
         } else {
             let form = forms.get(*index).and_then(Option::as_ref).ok_or_else(|| on_leaf.refuted())?;
-            budget.spend(40 * form.len(), bits)?;
+            budget.spend(40 * form.len(), certificate.bits)?;
             on_leaf.sign(&form.enclose(angles).ok_or_else(|| on_leaf.inconclusive())?, *sign)?;
         }
-        if let Some(slot) = signs.get_mut(*index) {
-            *slot = Some(*sign);
-        }
+        set(&mut signs, *index, *sign);
     }
     Duty::new(Rule::Cone, Obligation::ZoneIsRefutedOnLeaf, position).ensure(model.formula.truth(&signs) == Some(false))
 }
 
 /// The leading part of each trace that has one in the certificate.
-pub(crate) fn lead_forms(
-    cone: &Cone,
-    certificate: &Certificate,
-    model: &Model,
-    budget: &mut Budget,
-) -> Result<Vec<Option<LeadForm>>, Rejection> {
-    let turns = check_angles(cone, certificate, model)?;
+fn lead_forms(cone: &Cone, on: Setting, budget: &mut Budget) -> Result<Vec<Option<LeadForm>>, Rejection> {
+    let Setting { certificate, model, .. } = on;
+    let turns = check_angles(cone, on)?;
     let mut forms = Vec::new();
     for (position, (lead, trace)) in cone.leads.iter().zip(&model.traces).enumerate() {
         let Some(lead) = lead else {
@@ -91,14 +80,13 @@ pub(crate) fn lead_forms(
             continue;
         };
         budget.spend(100 * trace.form.terms.len(), certificate.bits)?;
-        let rho_lo = check_real_parts(position, lead, certificate, model)?;
+        let rho_lo = check_real_parts(position, lead, on)?;
         let mut leading = Vec::new();
         for root in &lead.roots {
             let known = Duty::new(Rule::Cone, Obligation::AngleIsCombination, *root);
             let is_real = model.table.roots().get(*root).is_some_and(|r| r.is_real);
-            let zero = vec![0; cone.base.len()];
-            let angle = if is_real { Some(&zero) } else { turns.get(root) };
-            leading.push((*root, angle.ok_or_else(|| known.refuted())?.clone()));
+            let angle = if is_real { Some(vec![0; cone.base.len()]) } else { turns.get(root).cloned() };
+            leading.push((*root, angle.ok_or_else(|| known.refuted())?));
         }
         let form = LeadForm::new(&trace.form, &leading, &rho_lo, &cone.from, position, certificate.bits)?;
         forms.push(Some(form));
@@ -107,12 +95,8 @@ pub(crate) fn lead_forms(
 }
 
 /// Checks that the leading roots have equal real parts; returns a lower bound of it.
-fn check_real_parts(
-    position: usize,
-    lead: &Lead,
-    certificate: &Certificate,
-    model: &Model,
-) -> Result<Dyadic, Rejection> {
+fn check_real_parts(position: usize, lead: &Lead, on: Setting) -> Result<Dyadic, Rejection> {
+    let Setting { certificate, model, .. } = on;
     let equal = Duty::new(Rule::Cone, Obligation::RealPartsAreEqual, position);
     match &lead.real_part {
         RealPart::Single => equal.ensure(lead.roots.len() == 1)?,
@@ -146,7 +130,8 @@ fn check_real_parts(
 ///
 /// Lemma: a sum n_1 a + n_2 b = r of roots holds for imaginary parts too; the imaginary part of conj a is minus that of a, and
 /// that of a real root is 0.
-fn check_angles(cone: &Cone, certificate: &Certificate, model: &Model) -> Result<Turns, Rejection> {
+fn check_angles(cone: &Cone, on: Setting) -> Result<Turns, Rejection> {
+    let Setting { certificate, model, .. } = on;
     let mut turns = Turns::new();
     let is_real = |index: usize| model.table.roots().get(index).is_some_and(|r| r.is_real);
     for angle in &cone.angles {

@@ -7,28 +7,21 @@
 //! Source: docs/theorems/cover.md.
 
 use super::cell::prove_signs;
-use crate::certificate::{Cell, Certificate};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::certificate::Cell;
+use crate::error::{Checked, Duty, Obligation, Rule};
 use crate::limits::Budget;
-use crate::model::Model;
+use crate::model::Setting;
 use crate::number::Rational;
 
 /// Checks that the cells cover [from, to] and that the zone is false on each of them.
-pub(crate) fn check(
-    from: &Rational,
-    to: &Rational,
-    cells: &[Cell],
-    certificate: &Certificate,
-    model: &Model,
-    budget: &mut Budget,
-) -> Result<(), Rejection> {
+pub(crate) fn check(from: &Rational, to: &Rational, cells: &[Cell], on: Setting, budget: &mut Budget) -> Checked {
     let mut reached = from;
     for (position, cell) in cells.iter().enumerate() {
         Duty::new(Rule::Cover, Obligation::CellsCoverWindow, position).ensure(*reached <= cell.to)?;
-        let cases = prove_signs(Rule::Cover, position, reached, cell, certificate, model, budget)?;
+        let cases = prove_signs((Rule::Cover, position), reached, cell, on, budget)?;
         let refuted = Duty::new(Rule::Cover, Obligation::ZoneIsRefutedOnCell, position);
         for signs in cases.at_zero.iter().chain(&cases.elsewhere) {
-            refuted.ensure(model.formula.truth(signs) == Some(false))?;
+            refuted.ensure(on.model.formula.truth(signs) == Some(false))?;
         }
         reached = &cell.to;
     }

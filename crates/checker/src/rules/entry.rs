@@ -7,25 +7,19 @@
 //! Source: docs/theorems/entry.md.
 
 use super::cell::{Signs, prove_signs, value_at};
-use crate::certificate::{Cell, Certificate, Pivot};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::certificate::{Cell, Pivot};
+use crate::error::{Checked, Duty, Obligation, Rule};
 use crate::limits::Budget;
-use crate::model::Model;
+use crate::model::Setting;
 use crate::number::Rational;
 use std::cmp::Ordering;
 
 /// Checks that the zone is entered in [from, cell.to].
-pub(crate) fn check(
-    from: &Rational,
-    cell: &Cell,
-    certificate: &Certificate,
-    model: &Model,
-    budget: &mut Budget,
-) -> Result<(), Rejection> {
+pub(crate) fn check(from: &Rational, cell: &Cell, on: Setting, budget: &mut Budget) -> Checked {
     Duty::new(Rule::Entry, Obligation::InstantIsInWindow, 0).ensure(*from <= cell.to)?;
-    let cases = prove_signs(Rule::Entry, 0, from, cell, certificate, model, budget)?;
+    let cases = prove_signs((Rule::Entry, 0), from, cell, on, budget)?;
     let proved = Duty::new(Rule::Entry, Obligation::ZoneIsProvedAtInstant, 0);
-    let inside = |signs: &Signs| model.formula.truth(signs) == Some(true);
+    let inside = |signs: &Signs| on.model.formula.truth(signs) == Some(true);
     match (&cell.pivot, &cases.at_zero) {
         // At t = 0, or at every instant after it up to the cell's end (if there is one).
         (Pivot::Start(_), Some(at_zero)) => {
@@ -34,10 +28,10 @@ pub(crate) fn check(
         }
         (Pivot::Auxiliary(pivot, _), Some(at_zero)) => {
             let changes = Duty::new(Rule::Entry, Obligation::PivotChangesSign, *pivot);
-            let form = model.auxiliaries.get(*pivot).ok_or_else(|| changes.refuted())?;
+            let form = on.model.auxiliaries.get(*pivot).ok_or_else(|| changes.refuted())?;
             let mut ends = Vec::new();
             for at in [from, &cell.to] {
-                let value = value_at(form, at, certificate.bits, budget)?;
+                let value = value_at(form, at, on, budget)?;
                 let sign = value.and_then(|v| v.certain_sign()).ok_or_else(|| changes.inconclusive())?;
                 ends.push(sign);
             }

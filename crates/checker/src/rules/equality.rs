@@ -8,22 +8,16 @@
 //! (Newton's identities); the k-th power sum of n_1 a + n_2 b is sum_j binom(k, j) n_1^j s_j n_2^(k-j) s'_(k-j).
 //! Source: docs/theorems/equality.md.
 
-use crate::certificate::{Certificate, RootRef, Sum};
-use crate::error::{Duty, Obligation, Rejection, Rule};
-use crate::limits::{Budget, Limits, within};
-use crate::model::{Model, binomials};
+use crate::certificate::{RootRef, Sum};
+use crate::error::{Checked, Duty, Obligation, Rule};
+use crate::limits::{Budget, within};
+use crate::model::{Model, Setting, binomials};
 use crate::number::{Complex, Interval, Rational};
 use num_traits::{One, Zero};
 
 /// Checks one sum.
-pub(crate) fn check(
-    position: usize,
-    sum: &Sum,
-    certificate: &Certificate,
-    model: &Model,
-    limits: &Limits,
-    budget: &mut Budget,
-) -> Result<(), Rejection> {
+pub(crate) fn check(position: usize, sum: &Sum, on: Setting, budget: &mut Budget) -> Checked {
+    let Setting { certificate, model, limits } = on;
     let are_roots = Duty::new(Rule::Equality, Obligation::SumsAreRoots, position);
     let missing = || are_roots.refuted();
     let mut left = vec![Rational::one()];
