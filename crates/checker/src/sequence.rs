@@ -316,8 +316,9 @@ impl<'a> Flow<'a> {
 
     /// Adds the sequences of the states: with X_k = x^(k) S q^k, U_k likewise, X_(k+1) = (q A) X_k + (q B) U_k + [k = 0] q c S.
     fn states(&self, support: &BTreeSet<Variable>, known: &mut BTreeMap<Variable, Sequence>, length: usize) {
-        let states: Vec<usize> =
-            support.iter().filter_map(|v| if let Variable::State(i) = v { Some(*i) } else { None }).collect();
+        let state = |v: &Variable| if let Variable::State(i) = v { Some(*i) } else { None };
+        let known_states = self.rates().len().min(self.statement.states.len());
+        let states: Vec<usize> = support.iter().filter_map(state).filter(|i| *i < known_states).collect();
         let starts = states.iter().filter_map(|i| self.statement.states.get(*i)).map(|s| &s.start);
         let offsets = states.iter().filter_map(|i| self.rates().get(*i)).map(|r| &r.offset);
         let common = common_denominator(starts.chain(offsets));

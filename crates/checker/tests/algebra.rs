@@ -10,13 +10,13 @@
 
 mod sample;
 
+use keepout_checker::Limits;
 use keepout_checker::certificate::{Factor, RootFamily, RootRef};
 use keepout_checker::error::{Obligation, Rejection, Rule};
 use keepout_checker::limits::Budget;
 use keepout_checker::number::{Complex, Dyadic, Interval, Rational};
 use keepout_checker::polynomial::Polynomial;
 use keepout_checker::root::RootTable;
-use keepout_checker::Limits;
 use sample::{Source, contains, dyadic, exact, rational};
 
 fn polynomial(coefficients: &str) -> Polynomial {

@@ -158,10 +158,8 @@ fn interval_operations_contain_the_results_of_members() {
 fn products_at_many_bits_are_exact_hulls() {
     for x in intervals() {
         for y in intervals() {
-            let corners: Vec<Rational> = [x.lo(), x.hi()]
-                .into_iter()
-                .flat_map(|a| [y.lo(), y.hi()].map(|b| exact(a) * exact(b)))
-                .collect();
+            let corners: Vec<Rational> =
+                [x.lo(), x.hi()].into_iter().flat_map(|a| [y.lo(), y.hi()].map(|b| exact(a) * exact(b))).collect();
             let product = x.mul(&y, 60);
             assert_eq!(exact(product.lo()), corners.iter().min().unwrap().clone(), "{x:?} {y:?}");
             assert_eq!(exact(product.hi()), corners.iter().max().unwrap().clone(), "{x:?} {y:?}");

@@ -111,9 +111,13 @@ fn every_defect_of_a_statement_is_refused_with_its_place() {
         (r#"{"name": "speed", "power": "2"}, "torque""#, r#""load""#, ".value[1].of[0]"),
         (r#""is": ">= 0""#, r#""is": "== 0""#, ".is"),
         (r#""is": ">= 0""#, r#""is": ">=0""#, ".is"),
-        (r#"{"any": [
-      {"poly"#, r#"{"all": [], "any": [
-      {"poly"#, ".inside"),
+        (
+            r#"{"any": [
+      {"poly"#,
+            r#"{"all": [], "any": [
+      {"poly"#,
+            ".inside",
+        ),
         (r#""from": "0", "until": "60""#, r#""from": "61", "until": "60""#, ".zone"),
         (r#""from": "0", "until": "60""#, r#""from": "-1""#, ".zone"),
         (r#"{"never": {"margin": "0"}}"#, r#"{"never": {"margin": "-1"}}"#, ".claim.never"),
@@ -211,7 +215,7 @@ fn each_limit_passes_its_value_and_refuses_one_more() {
     let cases: [(&str, Set, &str, u64); 13] = [
         ("text_bytes", |l, v| l.text_bytes = v, DECAY, DECAY.len() as u64),
         ("nesting", |l, v| l.nesting = v, DECAY, 8),
-        ("number_length", |l, v| l.number_length = v, DECAY, 3),
+        ("number_length", |l, v| l.number_length = v, DECAY, 4),
         ("statement_entries", |l, v| l.statement_entries = v, DECAY, 9),
         ("degree", |l, v| l.degree = v, SQUARE, 2),
         ("derivatives", |l, v| l.derivatives = v, ROTATION, 3),
@@ -247,11 +251,23 @@ fn work_is_limited() {
 fn default_limits_are_pinned() {
     let l = Limits::default();
     let found = [
-        l.text_bytes, l.nesting, l.number_length, l.statement_entries, l.degree, l.derivatives, l.roots, l.bits, l.order,
-        l.cells, l.depth, l.nodes, l.dimension, l.multiplier_bits, l.work,
+        l.text_bytes,
+        l.nesting,
+        l.number_length,
+        l.statement_entries,
+        l.degree,
+        l.derivatives,
+        l.roots,
+        l.bits,
+        l.order,
+        l.cells,
+        l.depth,
+        l.nodes,
+        l.dimension,
+        l.multiplier_bits,
+        l.work,
     ];
-    let expected = [
-        268_435_456, 64, 100_000, 10_000, 24, 4_000, 600, 20_000, 400, 200_000, 200, 400_000, 8, 16, 20_000_000_000,
-    ];
+    let expected =
+        [268_435_456, 64, 100_000, 10_000, 24, 4_000, 600, 20_000, 400, 200_000, 200, 400_000, 8, 16, 20_000_000_000];
     assert_eq!(found, expected, "docs/certificate-format.md lists these");
 }
