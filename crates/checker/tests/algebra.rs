@@ -158,7 +158,7 @@ fn double_roots_are_refused() {
 fn families_that_share_a_root_are_refused() {
     let first = family("-1 0 1", &[at((-1, 0), (0, 0)), at(ONE, (0, 0))]);
     let second = family("-1 1", &[at(ONE, (0, 0))]);
-    assert!(table(&[first.clone()], 64).is_ok());
+    assert!(table(std::slice::from_ref(&first), 64).is_ok());
     assert_eq!(table(&[first, second], 64).unwrap_err(), not_separated(0));
 }
 
