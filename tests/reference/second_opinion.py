@@ -1,0 +1,70 @@
+"""A second opinion with mpmath at 60 digits: its own exponential, its own root finder, its own exp, cos and sin.
+
+mpmath's results carry no proof; they must lie within 10^-20 (relative) of the proven bounds.
+"""
+
+from fractions import Fraction as F
+
+import mpmath as mp
+
+mp.mp.dps = 60
+CLOSE = mp.mpf(10) ** -20
+
+
+def number(q):
+    q = F(q)
+    return mp.mpf(q.numerator) / q.denominator
+
+
+def near(pair, x):
+    low, high = (number(end) for end in pair)
+    slack = CLOSE * max(1, abs(high))
+    return low - slack <= x <= high + slack
+
+
+def exponentials(cases):
+    for case in cases:
+        a = mp.matrix([[number(v) for v in row] for row in case["a"]])
+        exp = mp.expm(a * number(case["t"]), method="taylor")
+        for i, row in enumerate(case["exp"]):
+            for j, pair in enumerate(row):
+                if not near(pair, exp[i, j]):
+                    yield f"{case['source']}, t = {case['t']}: entry {i}, {j} is {exp[i, j]}"
+
+
+def step_responses(cases):
+    """At the time of the supremum, y is the supremum and h = y' is 0."""
+    for case in cases:
+        d = [number(v) for v in case["denominator"]]
+        roots = mp.polyroots([1] + d[::-1], maxsteps=500, extraprec=500)
+        weights = [d[0] / mp.polyval([(k + 1) * c for k, c in reversed(list(enumerate(d[1:] + [1])))], mu) for mu in roots]
+        t = number(case["time"][0])
+        rate = sum(c * mp.exp(mu * t) for c, mu in zip(weights, roots)).real
+        value = 1 + sum(c / mu * mp.exp(mu * t) for c, mu in zip(weights, roots)).real
+        if abs(rate) > CLOSE or not near(case["supremum"], value):
+            yield f"{case['name']}: y = {value}, y' = {rate}"
+
+
+def functions(cases):
+    for case in cases:
+        x = number(case["x"])
+        for name in ("cos", "sin", "exp"):
+            if name in case and not near(case[name], getattr(mp, name)(x)):
+                yield f"{name} {case['x']}"
+
+
+def traces(cases):
+    """At the near times, where mpmath's exponential is quick."""
+    for number_, case in enumerate(cases):
+        a = mp.matrix([[number(v) for v in row] for row in case["a"]])
+        start = mp.matrix([number(v) for v in case["start"]])
+        for value in case["values"]:
+            x = mp.expm(a * number(value["t"]), method="taylor") * start
+            total = sum((number(c) * mp.fprod(x[i] ** k for i, k in enumerate(powers)) for c, powers in case["terms"]), mp.mpf(0))
+            if not near(value["value"], total):
+                yield f"trace {number_}, t = {value['t']}: {total}"
+
+
+def disagreements(values):
+    for opinion in (exponentials, step_responses, functions, traces):
+        yield from opinion(values[opinion.__name__])
