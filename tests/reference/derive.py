@@ -33,6 +33,7 @@ HERE = Path(__file__).resolve().parent
 def derived():
     return {
         "step_responses": step_response.step_responses(),
+        "late_peaks": step_response.late_peaks(),
         "exponentials": exponential.exponentials(),
         "functions": elementary.functions(),
         "relative_motion": relative_motion.relative_motion(),

@@ -20,6 +20,7 @@ NORMS = {
 TIMES = {"butterworth 3": "4.92221650740"}
 ABSCISSAE = {
     "building_A.mtx": "-0.26180", "dlr_A.mtx": "-0.0049756", "jetengine_A.mtx": "-0.18240", "distillation_A.mtx": "-0.00012152",
+    "iss_A.mtx": "-0.0031173", "cdplayer_A.mtx": "-0.024344",
     "heat 200": "-0.0986940348", "pde": "-353.3908", "fom": "-1",
 }
 
