@@ -49,18 +49,18 @@ pub(crate) fn settle(statement: &Statement, margin: &Rational, options: &Options
 struct Attempt<'a> {
     problem: Problem,
     enclosure: Enclosure,
-    plan: Option<Plan>,
+    /// Made when it is first needed; then `None` if no cone can be planned.
+    plan: Option<Option<Plan>>,
     cover: Cover,
     effort: &'a mut u64,
 }
 
 impl<'a> Attempt<'a> {
     fn new(statement: &Statement, claim: Claim, bits: u32, options: &Options, effort: &'a mut u64) -> Result<Self, Rejection> {
-        let mut problem = Problem::new(statement, claim, &options.limits)?;
-        let mut enclosure = Enclosure::new(&problem, bits, &options.limits)?;
-        let plan = Plan::new(&mut problem, &mut enclosure);
+        let problem = Problem::new(statement, claim, &options.limits)?;
+        let enclosure = Enclosure::new(&problem, bits, &options.limits)?;
         let cover = Cover::new(&statement.zone.from);
-        Ok(Self { problem, enclosure, plan, cover, effort })
+        Ok(Self { problem, enclosure, plan: None, cover, effort })
     }
 
     /// Looks for a cone at doubling starts, and extends the cover to each of them, until one of the two settles the zone.
@@ -81,12 +81,13 @@ impl<'a> Attempt<'a> {
             }
             t0 *= Rational::from_integer(2.into());
         }
-        let unproved = self.plan.as_ref().is_none_or(|p| p.unproved);
+        let unproved = self.plan.flatten().is_none_or(|p| p.unproved);
         Finding::Open(if unproved { Reason::EqualRates } else { Reason::TouchesInTheLimit })
     }
 
     fn cone(&mut self, t0: &Rational) -> Option<Cone> {
-        self.plan.as_ref()?.cone(t0, &self.problem, &self.enclosure, self.effort)
+        let plan = self.plan.get_or_insert_with(|| Plan::new(&mut self.problem, &mut self.enclosure));
+        plan.as_ref()?.cone(t0, &self.problem, &self.enclosure, self.effort)
     }
 
     /// Extends the cover; what it finds, if it does not just get there.
@@ -107,7 +108,7 @@ impl<'a> Attempt<'a> {
         {
             return end;
         }
-        let sums = self.plan.as_ref().filter(|_| cone.is_some()).map_or_else(Vec::new, |p| p.sums.clone());
+        let sums = self.plan.iter().flatten().find(|_| cone.is_some()).map_or_else(Vec::new, |p| p.sums.clone());
         let cells = std::mem::take(&mut self.cover.cells);
         Finding::Never(self.certificate(self.problem.statement.clone(), sums, Evidence::Never { cells, cone }))
     }
