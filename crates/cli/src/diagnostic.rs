@@ -85,7 +85,8 @@ fn floor_boundary(text: &str, at: usize) -> usize {
 
 /// The known name that is closest to a misspelt one, if any is close.
 pub fn nearest<'a>(name: &str, known: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
-    let best = known.into_iter().map(|k| (distance(&name.to_lowercase(), &k.to_lowercase()), k)).min_by_key(|(d, _)| *d)?;
+    let best =
+        known.into_iter().map(|k| (distance(&name.to_lowercase(), &k.to_lowercase()), k)).min_by_key(|(d, _)| *d)?;
     (best.0 <= 1 + name.chars().count() / 4).then_some(best.1)
 }
 

@@ -36,7 +36,8 @@ pub fn read(text: &str) -> Result<Rows, (usize, String)> {
     let mut lines = lines.filter(|(_, l)| !l.is_empty() && !l.starts_with('%'));
     let (at, sizes) = lines.next().ok_or((1, "expected a line with the sizes".to_string()))?;
     let sizes: Option<Vec<usize>> = sizes.split_whitespace().map(|w| w.parse().ok()).collect();
-    let wrong_sizes = || (at, "expected the sizes: rows, columns, and in coordinate layout the number of entries".to_string());
+    let wrong_sizes =
+        || (at, "expected the sizes: rows, columns, and in coordinate layout the number of entries".to_string());
     let sizes = sizes.ok_or_else(wrong_sizes)?;
     let (rows, columns, entries) = match (*layout, sizes.as_slice()) {
         ("coordinate", [r, c, n]) => (*r, *c, Some(*n)),
@@ -70,7 +71,9 @@ pub fn read(text: &str) -> Result<Rows, (usize, String)> {
                 let [i, j, value] = words.as_slice() else {
                     return Err((line, "expected row, column and value".into()));
                 };
-                let index = |word: &str, size: usize| word.parse::<usize>().ok().filter(|k| (1..=size).contains(k)).map(|k| k - 1);
+                let index = |word: &str, size: usize| {
+                    word.parse::<usize>().ok().filter(|k| (1..=size).contains(k)).map(|k| k - 1)
+                };
                 let (Some(i), Some(j)) = (index(i, rows), index(j, columns)) else {
                     return Err((line, format!("expected a row in 1..{rows} and a column in 1..{columns}")));
                 };

@@ -60,13 +60,16 @@ pub fn run(arguments: &Arguments) -> u8 {
         })
         .collect();
     drop(progress);
-    if let Some(folder) = &arguments.out {
-        if let Err(message) = settled.iter().try_for_each(|s| s.write(folder)) {
+    if let Some(folder) = &arguments.out
+        && let Err(message) = settled.iter().try_for_each(|s| s.write(folder)) {
             complain(&format!("{message}\n"));
             return WRONG;
         }
-    }
-    print(&if arguments.json { report_json(&model, &settled) } else { report_text(&model, &settled, arguments.out.as_deref()) });
+    print(&if arguments.json {
+        report_json(&model, &settled)
+    } else {
+        report_text(&model, &settled, arguments.out.as_deref())
+    });
     let is = |word: &str| settled.iter().any(|s| s.verdict() == word);
     match (is("enters"), is("unsettled")) {
         (true, _) => ENTERED,
@@ -84,7 +87,8 @@ fn chosen(model: &Model, names: &[String]) -> Result<Vec<usize>, String> {
     for name in names {
         let Some(position) = model.zones.iter().position(|z| z.name == *name) else {
             let known: Vec<&str> = model.zones.iter().map(|z| z.name.as_str()).collect();
-            let hint = nearest(name, known.iter().copied()).map_or(String::new(), |close| format!("; did you mean `{close}`?"));
+            let hint = nearest(name, known.iter().copied())
+                .map_or(String::new(), |close| format!("; did you mean `{close}`?"));
             return Err(format!("the model has no zone `{name}`{hint}\nits zones: {}", known.join(", ")));
         };
         if !list.contains(&position) {
@@ -154,7 +158,11 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
 /// A path for a command line.
 fn quoted(path: &Path) -> String {
     let text = path.display().to_string();
-    if text.contains(|c: char| c.is_whitespace() || "'\"\\$&;()".contains(c)) { format!("'{}'", text.replace('\'', "'\\''")) } else { text }
+    if text.contains(|c: char| c.is_whitespace() || "'\"\\$&;()".contains(c)) {
+        format!("'{}'", text.replace('\'', "'\\''"))
+    } else {
+        text
+    }
 }
 
 impl Settled {
@@ -169,7 +177,9 @@ impl Settled {
                 format!("{window}{}", margin.as_ref().map_or(String::new(), |m| format!("; {}", self.margin_words(m))))
             }
             Ok(Outcome::Enters { proof }) => match &proof.statement().claim {
-                Claim::Enters { from, to, first } => format!("{}{}", if *first { "first " } else { "" }, bracket(from, to)),
+                Claim::Enters { from, to, first } => {
+                    format!("{}{}", if *first { "first " } else { "" }, bracket(from, to))
+                }
                 Claim::Never { .. } => String::new(),
             },
             Ok(Outcome::Unsettled { reason, .. }) => format!("{}; {}", reason_words(reason), help_words(reason)),
@@ -187,7 +197,9 @@ impl Settled {
             return format!("margin {}{unit}, {place}", to_decimal(&margin.certified, 9));
         }
         match &margin.at_most {
-            Some(at_most) if at_most.is_positive() => format!("no margin certified (at most {}{unit}, {place})", to_decimal(at_most, 6)),
+            Some(at_most) if at_most.is_positive() => {
+                format!("no margin certified (at most {}{unit}, {place})", to_decimal(at_most, 6))
+            }
             Some(_) | None => format!("margin 0, {place}"),
         }
     }
@@ -252,7 +264,8 @@ fn help_words(reason: &Reason) -> &'static str {
 
 fn report_json(model: &Model, settled: &[Settled]) -> String {
     let zones: Vec<Value> = settled.iter().map(Settled::json).collect();
-    let report = json!({ "program": "keepout", "version": env!("CARGO_PKG_VERSION"), "title": model.title, "zones": zones });
+    let report =
+        json!({ "program": "keepout", "version": env!("CARGO_PKG_VERSION"), "title": model.title, "zones": zones });
     format!("{report:#}\n")
 }
 

@@ -1,9 +1,9 @@
 //! Progress on a terminal, for work that takes longer than a second.
 
 use std::io::{IsTerminal, Write, stderr};
+use std::sync::Arc;
 use std::sync::atomic::{AtomicUsize, Ordering};
 use std::sync::mpsc::{RecvTimeoutError, Sender, channel};
-use std::sync::Arc;
 use std::thread::JoinHandle;
 use std::time::{Duration, Instant};
 

@@ -58,7 +58,8 @@ fn report(model: &Model, s: &SpectralStructure) -> String {
     blocks(&mut text, model, s);
     let _ = writeln!(text, "\nfactors of the characteristic polynomial");
     for (i, factor) in s.factors.iter().enumerate() {
-        let state = if factor.irreducibility == Irreducibility::Proved { "irreducible" } else { "not factored further" };
+        let state =
+            if factor.irreducibility == Irreducibility::Proved { "irreducible" } else { "not factored further" };
         let index = factor.index.map_or("not computed".to_string(), |k| k.to_string());
         let _ = writeln!(
             text,
@@ -89,7 +90,11 @@ fn blocks(text: &mut String, model: &Model, s: &SpectralStructure) {
 
 fn eigenvalues(text: &mut String, s: &SpectralStructure) {
     let _ = writeln!(text, "\neigenvalues, largest real part first");
-    let _ = writeln!(text, "  {:>24}  {:>24}  {:>6} {:>12} {:>13}  factor", "real part", "frequency", "mult.", "Jordan block", "damping ratio");
+    let _ = writeln!(
+        text,
+        "  {:>24}  {:>24}  {:>6} {:>12} {:>13}  factor",
+        "real part", "frequency", "mult.", "Jordan block", "damping ratio"
+    );
     for class in &s.rates {
         for index in &class.eigenvalues {
             let eigenvalue = &s.eigenvalues[*index];
@@ -97,11 +102,24 @@ fn eigenvalues(text: &mut String, s: &SpectralStructure) {
                 Some(value) => exact_or_decimal(value),
                 None => interval_text(&eigenvalue.disc.enclose_re()),
             };
-            let im = if eigenvalue.disc.is_real() { "0".to_string() } else { format!("+-{}", interval_text(&eigenvalue.disc.enclose_im())) };
+            let im = if eigenvalue.disc.is_real() {
+                "0".to_string()
+            } else {
+                format!("+-{}", interval_text(&eigenvalue.disc.enclose_im()))
+            };
             let jordan = s.index(*index).map_or("?".to_string(), |k| k.to_string());
-            let damping = damping(class.rational.as_ref(), &eigenvalue.disc.enclose_re(), &eigenvalue.disc.enclose_im(), eigenvalue.disc.is_real());
+            let damping = damping(
+                class.rational.as_ref(),
+                &eigenvalue.disc.enclose_re(),
+                &eigenvalue.disc.enclose_im(),
+                eigenvalue.disc.is_real(),
+            );
             let mult = s.algebraic_multiplicity(*index);
-            let _ = writeln!(text, "  {re:>24}  {im:>24}  {mult:>6} {jordan:>12} {damping:>13}  [{}]", eigenvalue.factor + 1);
+            let _ = writeln!(
+                text,
+                "  {re:>24}  {im:>24}  {mult:>6} {jordan:>12} {damping:>13}  [{}]",
+                eigenvalue.factor + 1
+            );
         }
         if class.eigenvalues.len() > 1 {
             let count = class.eigenvalues.len();

@@ -25,8 +25,15 @@ fn signed(node: &Node, scope: &dyn Scope, positive: bool) -> Result<Formula, Dia
             }
             Ok(if parts.len() == 1 { parts.remove(0) } else { group(positive, parts) })
         }
-        NodeKind::Number(_) | NodeKind::Name(_) | NodeKind::Negative(_) | NodeKind::Sum(..) | NodeKind::Difference(..)
-        | NodeKind::Product(..) | NodeKind::Quotient(..) | NodeKind::Power(..) | NodeKind::Call(..) => {
+        NodeKind::Number(_)
+        | NodeKind::Name(_)
+        | NodeKind::Negative(_)
+        | NodeKind::Sum(..)
+        | NodeKind::Difference(..)
+        | NodeKind::Product(..)
+        | NodeKind::Quotient(..)
+        | NodeKind::Power(..)
+        | NodeKind::Call(..) => {
             Err(Diagnostic::new(node.span.clone(), "expected a condition, found a number-valued expression")
                 .help("compare it with something, as in x > 2"))
         }
@@ -49,10 +56,8 @@ fn group(conjunction: bool, parts: Vec<Formula>) -> Formula {
 }
 
 fn comparison(a: &Node, operator: &str, b: &Node, scope: &dyn Scope, positive: bool) -> Result<Formula, Diagnostic> {
-    let difference = Node {
-        span: a.span.start..b.span.end,
-        kind: NodeKind::Difference(Box::new(a.clone()), Box::new(b.clone())),
-    };
+    let difference =
+        Node { span: a.span.start..b.span.end, kind: NodeKind::Difference(Box::new(a.clone()), Box::new(b.clone())) };
     let relation = match (operator, positive) {
         ("<", true) | (">=", false) => Relation::Negative,
         ("<=", true) | (">", false) => Relation::NonPositive,

@@ -15,9 +15,8 @@ pub(super) enum Token {
 }
 
 /// The symbols, longer ones first; the last five are refused by name.
-const SYMBOLS: [&str; 21] = [
-    "<=", ">=", "==", "!=", "<>", "&&", "||", "**", "<", ">", "=", "+", "-", "*", "/", "^", "(", ")", "!", "|", ",",
-];
+const SYMBOLS: [&str; 21] =
+    ["<=", ">=", "==", "!=", "<>", "&&", "||", "**", "<", ">", "=", "+", "-", "*", "/", "^", "(", ")", "!", "|", ","];
 
 /// Splits a text into tokens with their places in it; the last one is the end.
 pub(super) fn tokens(text: &str) -> Result<Vec<(Token, Range<usize>)>, Diagnostic> {
@@ -52,7 +51,8 @@ pub(super) fn tokens(text: &str) -> Result<Vec<(Token, Range<usize>)>, Diagnosti
 
 /// The length of a number at the start of a text: digits, a point with digits, an exponent.
 fn number_length(text: &str) -> usize {
-    let digits = |from: usize| text[from..].find(|c: char| !c.is_ascii_digit() && c != '_').map_or(text.len(), |n| from + n);
+    let digits =
+        |from: usize| text[from..].find(|c: char| !c.is_ascii_digit() && c != '_').map_or(text.len(), |n| from + n);
     let mut end = digits(0);
     if text[end..].starts_with('.') {
         end = digits(end + 1);

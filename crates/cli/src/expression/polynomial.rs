@@ -163,7 +163,11 @@ pub fn evaluate(node: &Node, scope: &dyn Scope) -> Result<Vec<Case>, Diagnostic>
         NodeKind::Quotient(a, b) => {
             let divisor = constant(b, scope).map_err(|d| Diagnostic {
                 help: d.help.or_else(|| Some("multiply through: x/y > 2 with y > 0 is x > 2*y".into())),
-                message: if d.message.starts_with("expected a constant") { "a divisor is a constant".into() } else { d.message },
+                message: if d.message.starts_with("expected a constant") {
+                    "a divisor is a constant".into()
+                } else {
+                    d.message
+                },
                 ..d
             })?;
             if divisor.is_zero() {
@@ -192,15 +196,26 @@ pub fn evaluate(node: &Node, scope: &dyn Scope) -> Result<Vec<Case>, Diagnostic>
     }
 }
 
-fn both(node: &Node, a: &Node, b: &Node, scope: &dyn Scope, combine: impl Fn(&Polynomial, &Polynomial) -> Polynomial) -> Result<Vec<Case>, Diagnostic> {
+fn both(
+    node: &Node,
+    a: &Node,
+    b: &Node,
+    scope: &dyn Scope,
+    combine: impl Fn(&Polynomial, &Polynomial) -> Polynomial,
+) -> Result<Vec<Case>, Diagnostic> {
     let (left, right) = (evaluate(a, scope)?, evaluate(b, scope)?);
     if left.len() * right.len() > MAX_CASES {
-        return Err(Diagnostic::new(node.span.clone(), format!("the abs in one comparison split it into more than {MAX_CASES} cases")));
+        return Err(Diagnostic::new(
+            node.span.clone(),
+            format!("the abs in one comparison split it into more than {MAX_CASES} cases"),
+        ));
     }
     let mut cases = Vec::new();
     for x in &left {
         for y in &right {
-            if x.value.0.len() * y.value.0.len() > MAX_TERMS * 50 || x.value.degree() + y.value.degree() > 2 * MAX_DEGREE {
+            if x.value.0.len() * y.value.0.len() > MAX_TERMS * 50
+                || x.value.degree() + y.value.degree() > 2 * MAX_DEGREE
+            {
                 return Err(too_large(node));
             }
             let value = combine(&x.value, &y.value);
@@ -213,7 +228,10 @@ fn both(node: &Node, a: &Node, b: &Node, scope: &dyn Scope, combine: impl Fn(&Po
 }
 
 fn too_large(node: &Node) -> Diagnostic {
-    Diagnostic::new(node.span.clone(), format!("an expression has at most degree {MAX_DEGREE} and {MAX_TERMS} terms when expanded"))
+    Diagnostic::new(
+        node.span.clone(),
+        format!("an expression has at most degree {MAX_DEGREE} and {MAX_TERMS} terms when expanded"),
+    )
 }
 
 fn check_size(node: &Node, value: &Polynomial) -> Result<(), Diagnostic> {
@@ -237,7 +255,8 @@ fn raised(node: &Node, base: &Polynomial, exponent: u32) -> Result<Polynomial, D
 }
 
 fn exponent(node: &Node, scope: &dyn Scope) -> Result<u32, Diagnostic> {
-    let refused = || Diagnostic::new(node.span.clone(), "an exponent is a non-negative integer constant, at most 10000");
+    let refused =
+        || Diagnostic::new(node.span.clone(), "an exponent is a non-negative integer constant, at most 10000");
     let value = constant(node, scope).map_err(|_| refused())?;
     let small = value.is_integer().then(|| value.to_integer().to_u32()).flatten();
     small.filter(|k| *k <= 10_000).ok_or_else(refused)
@@ -255,7 +274,8 @@ fn absolute(node: &Node, a: &Node, scope: &dyn Scope) -> Result<Vec<Case>, Diagn
             return Err(Diagnostic::new(node.span.clone(), "abs is for zones").help("use it in a zone's `inside`"));
         }
         if case.value.degree() > 1 {
-            return Err(Diagnostic::new(a.span.clone(), "the argument of abs is affine").help("compare squares: abs(p) > b with b >= 0 is p^2 > b^2"));
+            return Err(Diagnostic::new(a.span.clone(), "the argument of abs is affine")
+                .help("compare squares: abs(p) > b with b >= 0 is p^2 > b^2"));
         }
         let negative = Polynomial::default().add(&case.value, &minus);
         for value in [case.value.clone(), negative] {
@@ -264,7 +284,10 @@ fn absolute(node: &Node, a: &Node, scope: &dyn Scope) -> Result<Vec<Case>, Diagn
         }
     }
     if result.len() > MAX_CASES {
-        return Err(Diagnostic::new(node.span.clone(), format!("the abs in one comparison split it into more than {MAX_CASES} cases")));
+        return Err(Diagnostic::new(
+            node.span.clone(),
+            format!("the abs in one comparison split it into more than {MAX_CASES} cases"),
+        ));
     }
     Ok(result)
 }

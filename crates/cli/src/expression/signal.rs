@@ -32,7 +32,14 @@ impl Signal {
     }
 
     /// sin(-w t) = -sin(w t), cos(-w t) = cos(w t), sin(0) = 0, cos(0) = 1.
-    fn accumulate(&mut self, power: u32, rate: BigRational, frequency: BigRational, is_sine: bool, mut coefficient: BigRational) {
+    fn accumulate(
+        &mut self,
+        power: u32,
+        rate: BigRational,
+        frequency: BigRational,
+        is_sine: bool,
+        mut coefficient: BigRational,
+    ) {
         if is_sine && frequency.is_negative() {
             coefficient = -coefficient;
         }
@@ -116,7 +123,10 @@ fn expand(node: &Node, scope: &dyn Scope) -> Result<Signal, Diagnostic> {
             let exponent = constant(b, scope)?;
             let small = exponent.is_integer().then(|| exponent.to_integer().to_u32()).flatten();
             let Some(exponent) = small.filter(|k| *k <= MAX_POWER || base.0.len() <= 1) else {
-                return Err(Diagnostic::new(b.span.clone(), format!("an exponent is a non-negative integer constant, at most {MAX_POWER}")));
+                return Err(Diagnostic::new(
+                    b.span.clone(),
+                    format!("an exponent is a non-negative integer constant, at most {MAX_POWER}"),
+                ));
             };
             if exponent > 1_000 {
                 return Err(Diagnostic::new(b.span.clone(), "an exponent is at most 1000"));
@@ -150,7 +160,10 @@ fn product(node: &Node, a: &Signal, b: &Signal) -> Result<Signal, Diagnostic> {
     let product = a.mul(b);
     let power = product.0.keys().map(|(power, ..)| *power).max().unwrap_or(0);
     if power > MAX_POWER || product.0.len() > MAX_TERMS {
-        return Err(Diagnostic::new(node.span.clone(), format!("a signal has at most {MAX_TERMS} terms and the power t^{MAX_POWER}")));
+        return Err(Diagnostic::new(
+            node.span.clone(),
+            format!("a signal has at most {MAX_TERMS} terms and the power t^{MAX_POWER}"),
+        ));
     }
     Ok(product)
 }
@@ -174,9 +187,18 @@ fn linear(function: Function, node: &Node, scope: &dyn Scope) -> Result<BigRatio
                         "expand the phase: sin(w*t + a) is sin(w*t)*cos(a) + cos(w*t)*sin(a); give cos(a) and sin(a) as exact numbers"
                     }
                 };
-                return Err(Diagnostic::new(node.span.clone(), format!("the argument of {name} is {letter}*t without a constant part")).help(help));
+                return Err(Diagnostic::new(
+                    node.span.clone(),
+                    format!("the argument of {name} is {letter}*t without a constant part"),
+                )
+                .help(help));
             }
-            _ => return Err(Diagnostic::new(node.span.clone(), format!("the argument of {name} is {letter}*t with a rational constant {letter}"))),
+            _ => {
+                return Err(Diagnostic::new(
+                    node.span.clone(),
+                    format!("the argument of {name} is {letter}*t with a rational constant {letter}"),
+                ));
+            }
         }
     }
     Ok(rate)

@@ -1,10 +1,10 @@
 //! From a file to a model.
 
+use super::Model;
 use super::matrix;
 use super::scope::{Kind, NameScope, Place};
 use super::table::{ConstantScope, Item, Refusals};
 use super::zone::zones;
-use super::Model;
 use crate::diagnostic::{Diagnostic, Diagnostics};
 use crate::expression::{Node, NodeKind, Polynomial, RESERVED, evaluate, parse, signal};
 use keepout_checker::statement::{Affine, Drive, Output, Phase, State, Variable};
@@ -40,7 +40,11 @@ pub enum Need {
 /// All that is wrong with it, with places.
 pub fn load(path: &Path, need: Need) -> Result<Model, Diagnostics> {
     let file = path.display().to_string();
-    let failed = |message: String| Diagnostics { file: file.clone(), text: String::new(), list: vec![Diagnostic::new(0..0, message)] };
+    let failed = |message: String| Diagnostics {
+        file: file.clone(),
+        text: String::new(),
+        list: vec![Diagnostic::new(0..0, message)],
+    };
     let size = std::fs::metadata(path).map_err(|e| failed(format!("cannot read the model: {e}")))?.len();
     if size > MAX_BYTES {
         return Err(failed(format!("a model has at most {MAX_BYTES} bytes, this file has {size}")));
@@ -57,7 +61,11 @@ pub fn load(path: &Path, need: Need) -> Result<Model, Diagnostics> {
 /// # Errors
 /// All that is wrong with it, with places.
 pub fn load_text(text: &str, file: &str, title: &str, folder: &Path, need: Need) -> Result<Model, Diagnostics> {
-    let refuse = |list| Diagnostics { file: file.to_string(), text: if text.is_empty() { " ".into() } else { text.to_string() }, list };
+    let refuse = |list| Diagnostics {
+        file: file.to_string(),
+        text: if text.is_empty() { " ".into() } else { text.to_string() },
+        list,
+    };
     let table = DeTable::parse(text).map_err(|e| {
         let span = e.span().unwrap_or(0..0);
         refuse(vec![Diagnostic::new(span, format!("not TOML: {}", e.message().trim().replace('\n', "; ")))])
@@ -102,7 +110,8 @@ impl<'a> Loader<'a> {
         for (i, (name, key, _)) in states.iter().enumerate() {
             self.declare(name, key.clone(), Kind::State(i));
         }
-        let matrix = self.root.get("matrix").and_then(|item| Some((item, self.refusals.table(item, "the section [matrix]")?)));
+        let matrix =
+            self.root.get("matrix").and_then(|item| Some((item, self.refusals.table(item, "the section [matrix]")?)));
         let matrix_states = matrix.and_then(|(item, table)| self.matrix_names(item, table));
         for (i, (name, key, _)) in drives.iter().enumerate() {
             self.declare(name, key.clone(), Kind::Drive(i));
@@ -114,11 +123,18 @@ impl<'a> Loader<'a> {
         let (states, phase) = match (matrix, states.is_empty()) {
             (Some((item, table)), true) => self.matrix(item, table, &matrix_states?, drives.len(), &constant_scope)?,
             (Some((item, _)), false) => {
-                self.refuse(header(item, self.refusals.text), "a model has [state] sections or a [matrix] section, not both");
+                self.refuse(
+                    header(item, self.refusals.text),
+                    "a model has [state] sections or a [matrix] section, not both",
+                );
                 return None;
             }
             (None, true) => {
-                self.refuse_with(0..1, "the model has no state", "add a section such as [state.speed] with `start` and `rate`");
+                self.refuse_with(
+                    0..1,
+                    "the model has no state",
+                    "add a section such as [state.speed] with `start` and `rate`",
+                );
                 return None;
             }
             (None, false) => self.states(&states, &constant_scope)?,
@@ -130,7 +146,12 @@ impl<'a> Loader<'a> {
 
     /// Sections of the format that this version does not work on.
     fn refuse_later_sections(&self) {
-        for (section, what) in [("disturbance", "disturbances"), ("uncertain", "uncertain constants"), ("start", "sets of starts"), ("phase", "phases")] {
+        for (section, what) in [
+            ("disturbance", "disturbances"),
+            ("uncertain", "uncertain constants"),
+            ("start", "sets of starts"),
+            ("phase", "phases"),
+        ] {
             if let Some((key, _)) = self.root.get_key_value(section) {
                 self.refuse_with(key.span(), format!("{what} are not supported yet"), ONE_TRAJECTORY);
             }
@@ -139,13 +160,18 @@ impl<'a> Loader<'a> {
 
     fn declare(&mut self, name: &str, span: Range<usize>, kind: Kind) {
         let mut bytes = name.bytes();
-        let is_name = bytes.next().is_some_and(|b| b.is_ascii_alphabetic() || b == b'_') && bytes.all(|b| b.is_ascii_alphanumeric() || b == b'_');
+        let is_name = bytes.next().is_some_and(|b| b.is_ascii_alphabetic() || b == b'_')
+            && bytes.all(|b| b.is_ascii_alphanumeric() || b == b'_');
         if !is_name {
             self.refuse(span, format!("`{name}` is not a name: letters, digits and _, not beginning with a digit"));
         } else if RESERVED.contains(&name) {
             self.refuse(span, format!("`{name}` is a reserved word"));
         } else if self.names.iter().any(|(known, _)| known == name) {
-            self.refuse_with(span, format!("`{name}` is declared twice"), "constants, states, drives and outputs share one namespace");
+            self.refuse_with(
+                span,
+                format!("`{name}` is declared twice"),
+                "constants, states, drives and outputs share one namespace",
+            );
         } else {
             self.names.push((name.to_string(), kind));
         }
@@ -154,14 +180,18 @@ impl<'a> Loader<'a> {
     /// The named tables of a section, in the order of the file.
     fn section(&self, section: &str, keys: &[&str]) -> Vec<(String, Range<usize>, Item<'a>)> {
         let Some(item) = self.root.get(section) else { return Vec::new() };
-        let Some(table) = self.refusals.table(item, &format!("sections such as [{section}.name]")) else { return Vec::new() };
+        let Some(table) = self.refusals.table(item, &format!("sections such as [{section}.name]")) else {
+            return Vec::new();
+        };
         if table.len() > MAX_ENTRIES {
             self.refuse(item.span(), format!("at most {MAX_ENTRIES} {section} sections"));
             return Vec::new();
         }
         let mut list = Vec::new();
         for (key, value) in table {
-            let Some(inner) = self.refusals.table(value, &format!("a section [{section}.{}]", key.get_ref())) else { continue };
+            let Some(inner) = self.refusals.table(value, &format!("a section [{section}.{}]", key.get_ref())) else {
+                continue;
+            };
             self.refusals.only(inner, keys, &format!("[{section}.{}]", key.get_ref()));
             list.push((key.get_ref().to_string(), key.span(), value));
         }
@@ -208,7 +238,10 @@ impl<'a> Loader<'a> {
         let cyclic: Vec<_> = open.iter().filter(|(_, item)| !uses(item).iter().any(broken)).collect();
         for (key, item) in cyclic {
             let through = uses(item).join(", ");
-            self.refuse(key.span(), format!("the constant `{}` is defined through itself (it uses {through})", key.get_ref()));
+            self.refuse(
+                key.span(),
+                format!("the constant `{}` is defined through itself (it uses {through})", key.get_ref()),
+            );
         }
         for (key, _) in open {
             self.names.push((key.get_ref().to_string(), Kind::Broken));
@@ -235,7 +268,11 @@ impl<'a> Loader<'a> {
         drives
     }
 
-    fn states(&self, sections: &[(String, Range<usize>, Item<'a>)], constants: &ConstantScope) -> Option<(Vec<State>, Phase)> {
+    fn states(
+        &self,
+        sections: &[(String, Range<usize>, Item<'a>)],
+        constants: &ConstantScope,
+    ) -> Option<(Vec<State>, Phase)> {
         let scope = NameScope { names: &self.names, place: Place::Rate };
         let mut states = Vec::new();
         let mut rates = Vec::new();
@@ -285,7 +322,8 @@ impl<'a> Loader<'a> {
         }
         // Outputs may use each other: replace until none is left, as often as there are outputs at most.
         for _ in 0..values.len() {
-            let known: Vec<Option<Polynomial>> = values.iter().map(|v| v.as_ref().map(|(p, _)| p.clone()).filter(|p| !uses_outputs(p))).collect();
+            let known: Vec<Option<Polynomial>> =
+                values.iter().map(|v| v.as_ref().map(|(p, _)| p.clone()).filter(|p| !uses_outputs(p))).collect();
             for (value, _) in values.iter_mut().flatten() {
                 if uses_outputs(value) {
                     *value = value.substitute(&|v| if let Variable::Output(i) = v { known[i].clone() } else { None });
@@ -298,7 +336,10 @@ impl<'a> Loader<'a> {
             if uses_outputs(&value) {
                 self.refuse(place.span(), format!("the output `{name}` is defined through itself"));
             } else if value.degree() > crate::expression::MAX_DEGREE {
-                self.refuse(place.span(), format!("the output `{name}` has a degree above {}", crate::expression::MAX_DEGREE));
+                self.refuse(
+                    place.span(),
+                    format!("the output `{name}` has a degree above {}", crate::expression::MAX_DEGREE),
+                );
             }
             outputs.push(Output { name: name.clone(), unit: self.unit(item), value: value.expression() });
         }
@@ -315,7 +356,11 @@ impl<'a> Loader<'a> {
             }
             (None, _) => Vec::new(),
             (Some(i), None) => {
-                self.refuse_with(header(i, self.refusals.text), "zones are a list", "write [[zone]] with two brackets on each side");
+                self.refuse_with(
+                    header(i, self.refusals.text),
+                    "zones are a list",
+                    "write [[zone]] with two brackets on each side",
+                );
                 Vec::new()
             }
             (Some(i), Some(list)) => {
@@ -333,7 +378,10 @@ impl<'a> Loader<'a> {
         let size = match table.get("names").or_else(|| table.get("start")).and_then(|i| i.get_ref().as_array()) {
             Some(list) => list.len(),
             None => {
-                self.refuse(header(item, self.refusals.text), "[matrix] has no `start`, a list with one number for each state");
+                self.refuse(
+                    header(item, self.refusals.text),
+                    "[matrix] has no `start`, a list with one number for each state",
+                );
                 return None;
             }
         };
@@ -350,7 +398,14 @@ impl<'a> Loader<'a> {
         Some(names)
     }
 
-    fn matrix(&self, item: Item<'a>, table: &'a DeTable<'a>, names: &[String], drives: usize, constants: &ConstantScope) -> Option<(Vec<State>, Phase)> {
+    fn matrix(
+        &self,
+        item: Item<'a>,
+        table: &'a DeTable<'a>,
+        names: &[String],
+        drives: usize,
+        constants: &ConstantScope,
+    ) -> Option<(Vec<State>, Phase)> {
         let place = || header(item, self.refusals.text);
         if let Some((key, _)) = table.get_key_value("E") {
             self.refuse_with(key.span(), "disturbances are not supported yet", ONE_TRAJECTORY);
@@ -389,7 +444,11 @@ impl<'a> Loader<'a> {
         let starts: Vec<Option<BigRational>> = starts.iter().map(|i| self.start(i, constants)).collect();
         let starts: Vec<BigRational> = starts.into_iter().collect::<Option<_>>()?;
         let unit = |i: usize| table.get("units")?.get_ref().as_array()?.get(i)?.get_ref().as_str().map(str::to_string);
-        let states = names.iter().zip(starts).enumerate().map(|(i, (name, start))| State { name: name.clone(), unit: unit(i), start });
+        let states = names.iter().zip(starts).enumerate().map(|(i, (name, start))| State {
+            name: name.clone(),
+            unit: unit(i),
+            start,
+        });
         let rates = a.into_iter().zip(b).zip(c).map(|((row, inputs), offset)| {
             let states = row.into_iter().enumerate().map(|(j, v)| (v, Variable::State(j)));
             let drives = inputs.into_iter().enumerate().map(|(j, v)| (v, Variable::Drive(j)));
@@ -424,8 +483,13 @@ fn collect_names(node: &Node, names: &mut Vec<String>) {
         NodeKind::Number(_) => {}
         NodeKind::Name(name) => names.push(name.clone()),
         NodeKind::Negative(a) | NodeKind::Not(a) | NodeKind::Call(_, a) => collect_names(a, names),
-        NodeKind::Sum(a, b) | NodeKind::Difference(a, b) | NodeKind::Product(a, b) | NodeKind::Quotient(a, b)
-        | NodeKind::Power(a, b) | NodeKind::And(a, b) | NodeKind::Or(a, b) => {
+        NodeKind::Sum(a, b)
+        | NodeKind::Difference(a, b)
+        | NodeKind::Product(a, b)
+        | NodeKind::Quotient(a, b)
+        | NodeKind::Power(a, b)
+        | NodeKind::And(a, b)
+        | NodeKind::Or(a, b) => {
             collect_names(a, names);
             collect_names(b, names);
         }
@@ -444,8 +508,11 @@ fn affine(node: &Node, scope: &NameScope) -> Result<Affine, Diagnostic> {
     let value = polynomial(node, scope)?;
     if value.degree() > 1 {
         let culprit = nonlinear(node, scope).unwrap_or(node);
-        return Err(Diagnostic::new(culprit.span.clone(), "a rate is affine in states and drives: this product is not")
-            .help("linearise about the operating point, or make one of the factors a constant"));
+        return Err(Diagnostic::new(
+            culprit.span.clone(),
+            "a rate is affine in states and drives: this product is not",
+        )
+        .help("linearise about the operating point, or make one of the factors a constant"));
     }
     let mut affine = Affine { terms: Vec::new(), offset: BigRational::zero() };
     for (powers, coefficient) in value.terms() {

@@ -35,7 +35,9 @@ impl Scope for NameScope<'_> {
         let refused = |message: &str, help: &str| Some(Value::Refused(message.into(), Some(help.into())));
         if name == "t" {
             return match self.place {
-                Place::Rate => refused("a rate does not use t", "declare a [drive] with the time-dependent part and use its name"),
+                Place::Rate => {
+                    refused("a rate does not use t", "declare a [drive] with the time-dependent part and use its name")
+                }
                 Place::Signal | Place::Output | Place::Zone => Some(Value::Variable(Variable::Time)),
             };
         }
@@ -44,7 +46,10 @@ impl Scope for NameScope<'_> {
             (Kind::Constant(value), _) => Value::Constant(value.clone()),
             (Kind::Broken, _) => Value::Refused(format!("`{name}` has no value: see above"), None),
             (Kind::State(_) | Kind::Drive(_) | Kind::Output(_), Place::Signal) => {
-                return refused("a signal uses only constants and t", "feedback belongs into a rate; a signal is known beforehand");
+                return refused(
+                    "a signal uses only constants and t",
+                    "feedback belongs into a rate; a signal is known beforehand",
+                );
             }
             (Kind::Output(_), Place::Rate) => {
                 return refused("a rate does not use an output", "write the expression of the output in its place");

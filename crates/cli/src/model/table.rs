@@ -143,6 +143,9 @@ impl Scope for ConstantScope<'_> {
     }
 
     fn function_hint(&self) -> (&'static str, &'static str) {
-        ("this function is not exact in a constant", "give the value as an exact number, or as a range under [uncertain]")
+        (
+            "this function is not exact in a constant",
+            "give the value as an exact number, or as a range under [uncertain]",
+        )
     }
 }

@@ -11,7 +11,12 @@ use num_traits::{Signed, Zero};
 const KEYS: [&str; 5] = ["name", "ref", "inside", "from", "until"];
 
 /// Reads the zones; two of one name, ignoring case, are refused because they become file names.
-pub(super) fn zones(items: &[toml::Spanned<toml::de::DeValue<'_>>], names: &[(String, Kind)], constants: &ConstantScope, refusals: &Refusals) -> Vec<Zone> {
+pub(super) fn zones(
+    items: &[toml::Spanned<toml::de::DeValue<'_>>],
+    names: &[(String, Kind)],
+    constants: &ConstantScope,
+    refusals: &Refusals,
+) -> Vec<Zone> {
     let mut zones: Vec<Zone> = Vec::new();
     for item in items {
         let Some(table) = refusals.table(item, "a zone") else { continue };
