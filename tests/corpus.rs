@@ -8,7 +8,10 @@ fn wrong_answers(folder: &str) -> Vec<String> {
         let (expected, text) = read(&path);
         let found = answer_to_text(&text);
         if found != expected {
-            wrong.push(format!("{}: expected {expected}, found {found}", path.strip_prefix(corpus()).unwrap().display()));
+            wrong.push(format!(
+                "{}: expected {expected}, found {found}",
+                path.strip_prefix(corpus()).unwrap().display()
+            ));
         }
     }
     wrong

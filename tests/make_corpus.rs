@@ -19,7 +19,13 @@ fn main() {
     for (rule, name, certificate) in &bases {
         write("accept", rule, name, "verified", certificate);
     }
-    let base = |name: &str| bases.iter().find(|(rule, n, _)| *n == name || format!("{n}@{rule}") == name).map(|(_, _, c)| c.clone()).expect("a base case");
+    let base = |name: &str| {
+        bases
+            .iter()
+            .find(|(rule, n, _)| *n == name || format!("{n}@{rule}") == name)
+            .map(|(_, _, c)| c.clone())
+            .expect("a base case")
+    };
     reject_traces(&base);
     reject_equalities(&base);
     reject_covers(&base);
@@ -35,7 +41,8 @@ fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Cer
     }
     let path = corpus().join(folder).join(rule);
     fs::create_dir_all(&path).expect("a folder");
-    fs::write(path.join(format!("{name}.case")), format!("{expected}\n{}", certificate.to_json().print())).expect("a file");
+    fs::write(path.join(format!("{name}.case")), format!("{expected}\n{}", certificate.to_json().print()))
+        .expect("a file");
 }
 
 fn reject(rule: &str, name: &str, expected: &str, mut certificate: Certificate, spoil: impl FnOnce(&mut Certificate)) {
@@ -80,38 +87,80 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
         ("cover", "one_instant", proved(&until(servo.statement(above("-11/10")), "1", "1"))),
         ("cover", "start_touched", proved(&decay.statement(atom(&[("1", x), ("-1", &[])], Relation::Positive)))),
         ("cover", "rational_time_touched", proved(&cubic.statement(atom(&[("1", x)], Relation::Negative)))),
-        ("cover", "irrational_time_touched", proved(&irrational.statement(all(vec![
-            atom(&[("1", x)], Relation::Zero),
-            atom(&[("1", y)], Relation::NonPositive),
-        ])))),
-        ("cover", "identity", proved(&rotation.statement(atom(&[("1", &[2]), ("1", &[0, 2]), ("-1", &[])], Relation::Positive)))),
+        (
+            "cover",
+            "irrational_time_touched",
+            proved(
+                &irrational
+                    .statement(all(vec![atom(&[("1", x)], Relation::Zero), atom(&[("1", y)], Relation::NonPositive)])),
+            ),
+        ),
+        (
+            "cover",
+            "identity",
+            proved(&rotation.statement(atom(&[("1", &[2]), ("1", &[0, 2]), ("-1", &[])], Relation::Positive))),
+        ),
         ("trace", "step_response", proved(&servo.statement(above("-1095/1000")))),
         ("trace", "defective", proved(&lag.statement(above("-37/100")))),
         ("trace", "growing", proved(&ramp.statement(atom(&[("1", x), ("1", &[])], Relation::Negative)))),
         ("cone", "limit", proved(&decay.statement(above("-2")))),
         ("cone", "circle", proved(&rotation.statement(above("-3/2")))),
-        ("cone", "torus", proved(&two.statement(atom(&[("1", x), ("1", z), ("-201/100", &[])], Relation::NonNegative)))),
-        ("cone", "several_atoms", proved(&two.statement(all(vec![
-            atom(&[("1", x), ("-9/10", &[])], Relation::NonNegative),
-            atom(&[("1", y), ("-9/10", &[])], Relation::NonNegative),
-        ])))),
+        (
+            "cone",
+            "torus",
+            proved(&two.statement(atom(&[("1", x), ("1", z), ("-201/100", &[])], Relation::NonNegative))),
+        ),
+        (
+            "cone",
+            "several_atoms",
+            proved(&two.statement(all(vec![
+                atom(&[("1", x), ("-9/10", &[])], Relation::NonNegative),
+                atom(&[("1", y), ("-9/10", &[])], Relation::NonNegative),
+            ]))),
+        ),
         ("cone", "decaying_lead", proved(&lag.statement(atom(&[("1", x), ("1", y)], Relation::NonPositive)))),
-        ("cone", "common_damping", proved(&nearby.statement(all(vec![
-            atom(&[("1", &[2]), ("1", &[0, 2]), ("-40", &[0, 0, 2])], Relation::Positive),
-            atom(&[("1", &[0, 0, 2]), ("1", &[0, 0, 0, 2]), ("-40", &[2])], Relation::Positive),
-        ])))),
-        ("equality", "product_of_rotations", proved(&two.statement(atom(&[("1", &[1, 0, 1]), ("1", &[0, 0, 2]), ("-201/100", &[])], Relation::NonNegative)))),
-        ("equality", "commensurate", proved(&ratio.statement(atom(&[("1", x), ("1", z), ("16/10", &[])], Relation::NonPositive)))),
-        ("equality", "double_frequency", proved(&rotation.statement(atom(&[("1", &[2]), ("1", y), ("-3/2", &[])], Relation::NonNegative)))),
+        (
+            "cone",
+            "common_damping",
+            proved(&nearby.statement(all(vec![
+                atom(&[("1", &[2]), ("1", &[0, 2]), ("-40", &[0, 0, 2])], Relation::Positive),
+                atom(&[("1", &[0, 0, 2]), ("1", &[0, 0, 0, 2]), ("-40", &[2])], Relation::Positive),
+            ]))),
+        ),
+        (
+            "equality",
+            "product_of_rotations",
+            proved(
+                &two.statement(atom(&[("1", &[1, 0, 1]), ("1", &[0, 0, 2]), ("-201/100", &[])], Relation::NonNegative)),
+            ),
+        ),
+        (
+            "equality",
+            "commensurate",
+            proved(&ratio.statement(atom(&[("1", x), ("1", z), ("16/10", &[])], Relation::NonPositive))),
+        ),
+        (
+            "equality",
+            "double_frequency",
+            proved(&rotation.statement(atom(&[("1", &[2]), ("1", y), ("-3/2", &[])], Relation::NonNegative))),
+        ),
         ("entry", "start", proved(&decay.statement(above("-1")))),
-        ("entry", "after_start", proved(&System::new("1", "0", "1").statement(atom(&[("1", x), ("-1", &[])], Relation::Positive)))),
+        (
+            "entry",
+            "after_start",
+            proved(&System::new("1", "0", "1").statement(atom(&[("1", x), ("-1", &[])], Relation::Positive))),
+        ),
         ("entry", "instant", proved(&servo.statement(above("-109/100")))),
         ("entry", "crossing", proved(&servo.statement(atom(&[("1", x), ("-1/2", &[])], Relation::Zero)))),
         ("entry", "rational_time", proved(&cubic.statement(atom(&[("1", x)], Relation::NonPositive)))),
-        ("entry", "irrational_time", proved(&irrational.statement(all(vec![
-            atom(&[("1", x)], Relation::Zero),
-            atom(&[("1", y)], Relation::NonNegative),
-        ])))),
+        (
+            "entry",
+            "irrational_time",
+            proved(
+                &irrational
+                    .statement(all(vec![atom(&[("1", x)], Relation::Zero), atom(&[("1", y)], Relation::NonNegative)])),
+            ),
+        ),
     ]
 }
 
@@ -158,7 +207,9 @@ fn reject_traces(base: &impl Fn(&str) -> Certificate) {
         family.centres.push(centre);
     });
     let annihilates = "refuted trace FactorsAnnihilateTrace";
-    reject(rule, "factor_missing", annihilates, base("step_response"), |c| drop(c.traces[0].pop()));
+    reject(rule, "factor_missing", annihilates, base("step_response"), |c| {
+        c.traces[0].pop();
+    });
     reject(rule, "multiplicity_too_small", annihilates, base("defective"), |c| {
         c.traces[0].iter_mut().for_each(|f| f.multiplicity = 1);
     });
@@ -191,8 +242,12 @@ fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
     let rule = "equality";
     let roots = "refuted equality SumsAreRoots";
     reject(rule, "multiplier_changed", roots, base("double_frequency"), |c| c.sums[0].parts[0].0 += 1);
-    reject(rule, "factor_multiplicity_changed", roots, base("product_of_rotations"), |c| c.sums[0].factors[0].multiplicity += 1);
-    reject(rule, "factor_missing", roots, base("product_of_rotations"), |c| drop(c.sums[0].factors.pop()));
+    reject(rule, "factor_multiplicity_changed", roots, base("product_of_rotations"), |c| {
+        c.sums[0].factors[0].multiplicity += 1
+    });
+    reject(rule, "factor_missing", roots, base("product_of_rotations"), |c| {
+        c.sums[0].factors.pop();
+    });
     reject(rule, "another_root_named", "refuted equality SumIsIdentified", base("double_frequency"), |c| {
         c.sums[0].root.conjugate = !c.sums[0].root.conjugate;
     });
@@ -215,7 +270,9 @@ fn reject_covers(base: &impl Fn(&str) -> Certificate) {
         let sign = &mut cells(c)[0].signs[0].1;
         *sign = sign.reverse();
     });
-    reject(rule, "strict_sign_said_to_be_zero", "refuted cover SignOnCell", base("window"), |c| cells(c)[0].signs[0].1 = std::cmp::Ordering::Equal);
+    reject(rule, "strict_sign_said_to_be_zero", "refuted cover SignOnCell", base("window"), |c| {
+        cells(c)[0].signs[0].1 = std::cmp::Ordering::Equal
+    });
     reject(rule, "too_few_terms", "inconclusive cover SignOnCell", base("window"), |c| cells(c)[0].order = 1);
     reject(rule, "too_few_bits", "inconclusive trace ClosedFormIsEnclosed", base("window"), |c| c.bits = 2);
     reject(rule, "one_cell_too_long", "inconclusive cover SignOnCell", base("window"), |c| {
@@ -227,7 +284,9 @@ fn reject_covers(base: &impl Fn(&str) -> Certificate) {
             listed[0].1 += 1;
         }
     });
-    reject(rule, "start_pivot_elsewhere", "refuted cover VanishesAtStart", base("start_touched"), |c| c.statement.zone.from = rational("1/1000"));
+    reject(rule, "start_pivot_elsewhere", "refuted cover VanishesAtStart", base("start_touched"), |c| {
+        c.statement.zone.from = rational("1/1000")
+    });
     reject(rule, "sign_after_start_flipped", "refuted cover SignOnCell", base("start_touched"), |c| {
         if let Pivot::Start(listed) = &mut cells(c)[0].pivot {
             listed[0].2 = listed[0].2.reverse();
@@ -238,12 +297,20 @@ fn reject_covers(base: &impl Fn(&str) -> Certificate) {
             atom.relation = Relation::NonNegative;
         }
     });
-    reject(rule, "closed_zone_touched_later", "refuted cover ZoneIsRefutedOnCell", base("rational_time_touched"), |c| {
-        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
-            atom.relation = Relation::NonPositive;
-        }
+    reject(
+        rule,
+        "closed_zone_touched_later",
+        "refuted cover ZoneIsRefutedOnCell",
+        base("rational_time_touched"),
+        |c| {
+            if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+                atom.relation = Relation::NonPositive;
+            }
+        },
+    );
+    reject(rule, "signs_do_not_refute", "refuted cover ZoneIsRefutedOnCell", base("window"), |c| {
+        cells(c)[0].signs.clear()
     });
-    reject(rule, "signs_do_not_refute", "refuted cover ZoneIsRefutedOnCell", base("window"), |c| cells(c)[0].signs.clear());
     reject(rule, "no_cone_and_no_end", "refuted cover EvidenceFitsClaim", base("step_response"), |c| {
         if let Evidence::Never { cone, .. } = &mut c.evidence {
             *cone = None;
@@ -271,7 +338,9 @@ fn reject_cones(base: &impl Fn(&str) -> Certificate) {
         *cells(c) = vec![keep];
     });
     reject(rule, "leading_root_left_out", "inconclusive cone LowerRealPartIsLess", base("torus"), |c| {
-        cone(c).leads.iter_mut().flatten().for_each(|lead| drop(lead.roots.pop()));
+        cone(c).leads.iter_mut().flatten().for_each(|lead| {
+            lead.roots.pop();
+        });
     });
     reject(rule, "no_reason_for_equal_rates", "refuted cone RealPartsAreEqual", base("torus"), |c| {
         cone(c).leads.iter_mut().flatten().for_each(|lead| lead.real_part = RealPart::Single);
@@ -296,7 +365,9 @@ fn reject_cones(base: &impl Fn(&str) -> Certificate) {
         let leaf = Node::Leaf(first_leaf(cone(c)).clone());
         cone(c).nodes = vec![leaf];
     });
-    reject(rule, "signs_do_not_refute", "refuted cone ZoneIsRefutedOnLeaf", base("torus"), |c| first_leaf(cone(c)).clear());
+    reject(rule, "signs_do_not_refute", "refuted cone ZoneIsRefutedOnLeaf", base("torus"), |c| {
+        first_leaf(cone(c)).clear()
+    });
     reject(rule, "last_leaf_missing", "refuted cone LeavesCoverTorus", base("torus"), |c| drop(cone(c).nodes.pop()));
     reject(rule, "a_leaf_too_many", "refuted cone LeavesCoverTorus", base("torus"), |c| {
         let leaf = Node::Leaf(first_leaf(cone(c)).clone());
@@ -317,7 +388,9 @@ fn reject_entries(base: &impl Fn(&str) -> Certificate) {
         c.statement.claim = Claim::Enters { from: rational("0"), to: rational("1/10"), first: false };
         cells(c).clear();
     });
-    reject(rule, "after_the_window", in_window, base("instant@entry"), |c| c.statement.zone.until = Some(rational("1/2")));
+    reject(rule, "after_the_window", in_window, base("instant@entry"), |c| {
+        c.statement.zone.until = Some(rational("1/2"))
+    });
     reject(rule, "before_the_window", in_window, base("instant@entry"), |c| c.statement.zone.from = rational("1"));
     reject(rule, "cell_goes_back", in_window, base("crossing"), |c| {
         let (from, cell) = entry(c);
@@ -330,12 +403,16 @@ fn reject_entries(base: &impl Fn(&str) -> Certificate) {
         let sign = &mut entry(c).1.signs[0].1;
         *sign = sign.reverse();
     });
-    reject(rule, "sign_at_zero_flipped", "refuted entry SignOnCell", base("start"), |c| entry(c).1.signs[0].1 = std::cmp::Ordering::Less);
+    reject(rule, "sign_at_zero_flipped", "refuted entry SignOnCell", base("start"), |c| {
+        entry(c).1.signs[0].1 = std::cmp::Ordering::Less
+    });
     reject(rule, "pivot_keeps_its_sign", "refuted entry PivotChangesSign", base("crossing"), |c| {
         let (from, cell) = entry(c);
         cell.to = from.clone();
     });
-    reject(rule, "signs_do_not_prove", "refuted entry ZoneIsProvedAtInstant", base("instant@entry"), |c| entry(c).1.signs.clear());
+    reject(rule, "signs_do_not_prove", "refuted entry ZoneIsProvedAtInstant", base("instant@entry"), |c| {
+        entry(c).1.signs.clear()
+    });
     reject(rule, "crossing_without_its_product", "refuted entry ZoneIsProvedAtInstant", base("crossing"), |c| {
         if let Pivot::Auxiliary(_, listed) = &mut entry(c).1.pivot {
             listed.clear();
@@ -350,7 +427,9 @@ fn reject_entries(base: &impl Fn(&str) -> Certificate) {
             *first = false;
         }
     });
-    reject(rule, "first_without_a_cover", "refuted cover CellsCoverWindow", base("instant@entry"), |c| cells(c).clear());
+    reject(rule, "first_without_a_cover", "refuted cover CellsCoverWindow", base("instant@entry"), |c| {
+        cells(c).clear()
+    });
     reject(rule, "cover_that_nobody_asked_for", "refuted cover EvidenceFitsClaim", base("instant@entry"), |c| {
         if let Claim::Enters { first, .. } = &mut c.statement.claim {
             *first = false;

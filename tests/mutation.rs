@@ -32,7 +32,14 @@ fn numbers(text: &str) -> Vec<(usize, usize)> {
 
 /// A few different values in place of a number.
 fn variants(value: &str) -> Vec<String> {
-    let mut list = vec!["0".to_string(), "1".into(), "-1".into(), "123456789/1000".into(), format!("-{value}"), format!("{value}0")];
+    let mut list = vec![
+        "0".to_string(),
+        "1".into(),
+        "-1".into(),
+        "123456789/1000".into(),
+        format!("-{value}"),
+        format!("{value}0"),
+    ];
     if let Some((position, sign)) = value.split_once(':') {
         list = ["-", "0", "+"].iter().filter(|s| **s != sign).map(|s| format!("{position}:{s}")).collect();
         list.push(format!("99:{sign}"));
@@ -69,10 +76,8 @@ fn damaged_certificates_never_panic_and_keep_their_statement() {
 
 #[test]
 fn certificates_are_refused_for_every_other_statement_of_the_corpus() {
-    let statements: Vec<_> = files("accept")
-        .iter()
-        .map(|path| Certificate::from_json(&read(path).1, &Limits::default()).unwrap())
-        .collect();
+    let statements: Vec<_> =
+        files("accept").iter().map(|path| Certificate::from_json(&read(path).1, &Limits::default()).unwrap()).collect();
     for a in &statements {
         for b in statements.iter().filter(|b| b.statement != a.statement) {
             assert_eq!(check(&b.statement, a, &Limits::default()), Err(Rejection::OtherStatement));

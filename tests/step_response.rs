@@ -26,13 +26,20 @@ fn limits_a_billionth_above_and_below_the_supremum_are_told_apart() {
         let system = System::step_response(&list(&case["denominator"]));
         let (low, high) = bounds(&case["supremum"]);
         let billionth = rational("1/1000000000");
-        let above = certify(&system.statement(at_least(&(&high * (rational("1") + &billionth)))), &Options::default()).unwrap();
+        let above =
+            certify(&system.statement(at_least(&(&high * (rational("1") + &billionth)))), &Options::default()).unwrap();
         let Outcome::Clear { margin: Some(margin), .. } = above else { panic!("{}: not clear", case["name"]) };
         // The margin is a billionth of the supremum: certified from below, to a millionth of it.
         let exact = &low * &billionth;
         assert!(margin.certified <= &high * &billionth + (&high - &low), "{}: margin too large", case["name"]);
-        assert!(margin.certified >= exact * rational("999999/1000000"), "{}: margin {} too small", case["name"], margin.certified);
-        let below = certify(&system.statement(at_least(&(&low * (rational("1") - &billionth)))), &Options::default()).unwrap();
+        assert!(
+            margin.certified >= exact * rational("999999/1000000"),
+            "{}: margin {} too small",
+            case["name"],
+            margin.certified
+        );
+        let below =
+            certify(&system.statement(at_least(&(&low * (rational("1") - &billionth)))), &Options::default()).unwrap();
         assert!(matches!(below, Outcome::Enters { .. }), "{}: not entered", case["name"]);
     }
 }
@@ -42,11 +49,16 @@ fn the_supremum_is_reached_at_the_time_of_the_first_peak() {
     for case in group("step_responses") {
         let system = System::step_response(&list(&case["denominator"]));
         let (low, _) = bounds(&case["supremum"]);
-        let outcome = certify(&system.statement(at_least(&(&low - rational("1/1000000000000")))), &Options::default()).unwrap();
+        let outcome =
+            certify(&system.statement(at_least(&(&low - rational("1/1000000000000")))), &Options::default()).unwrap();
         let Outcome::Enters { proof } = outcome else { panic!("{}: not entered", case["name"]) };
         let Claim::Enters { from, to, first } = &proof.statement().claim else { panic!() };
         let (earliest, latest) = bounds(&case["time"]);
-        assert!(first & (*to <= latest) & (*from >= earliest * rational("9999/10000")), "{}: {from} {to}", case["name"]);
+        assert!(
+            first & (*to <= latest) & (*from >= earliest * rational("9999/10000")),
+            "{}: {from} {to}",
+            case["name"]
+        );
         assert!((to - from) <= to * rational("1/1000000000"), "{}: the bracket is too wide", case["name"]);
     }
 }

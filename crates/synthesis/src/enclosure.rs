@@ -5,7 +5,7 @@ use keepout_checker::Limits;
 use keepout_checker::certificate::{Factor, RootFamily, Sign};
 use keepout_checker::error::Rejection;
 use keepout_checker::limits::Budget;
-use keepout_checker::number::{Dyadic, Interval, Rational};
+use keepout_checker::number::{Interval, Rational};
 use keepout_checker::root::RootTable;
 use keepout_checker::trace::{ClosedForm, Stretch};
 use std::cmp::Ordering;
@@ -43,12 +43,22 @@ impl Enclosure {
     }
 
     /// The closed form of a further function.
-    pub(crate) fn closed_form(&mut self, factors: &[Factor], derivatives: &[Rational]) -> Result<ClosedForm, Rejection> {
+    pub(crate) fn closed_form(
+        &mut self,
+        factors: &[Factor],
+        derivatives: &[Rational],
+    ) -> Result<ClosedForm, Rejection> {
         ClosedForm::new(factors, derivatives, &self.table, self.bits, 0, &mut self.budget)
     }
 
     /// Encloses a function on [from, to], with a number of Taylor terms that suits the stretch.
-    pub(crate) fn on_stretch(&mut self, form: &ClosedForm, from: &Rational, to: &Rational, order: u32) -> Option<Interval> {
+    pub(crate) fn on_stretch(
+        &mut self,
+        form: &ClosedForm,
+        from: &Rational,
+        to: &Rational,
+        order: u32,
+    ) -> Option<Interval> {
         let half = Rational::new(1.into(), 2.into());
         let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
         let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits: self.bits };
@@ -56,7 +66,13 @@ impl Enclosure {
     }
 
     /// Encloses g / t^power on [0, to] for a trace that vanishes at 0 to that order.
-    pub(crate) fn quotient_at_start(&mut self, index: usize, power: usize, to: &Rational, order: u32) -> Option<Interval> {
+    pub(crate) fn quotient_at_start(
+        &mut self,
+        index: usize,
+        power: usize,
+        to: &Rational,
+        order: u32,
+    ) -> Option<Interval> {
         let zero = Rational::from_integer(0.into());
         let stretch = Stretch { centre: &zero, half_width: to, order, bits: self.bits };
         self.forms.get(index)?.quotient(power, stretch, &mut self.budget).ok().flatten()
@@ -80,7 +96,14 @@ impl Enclosure {
     }
 
     /// The sign of one trace on [from, to]; exact at t = 0.
-    pub(crate) fn sign(&mut self, problem: &Problem, index: usize, from: &Rational, to: &Rational, order: u32) -> Option<Sign> {
+    pub(crate) fn sign(
+        &mut self,
+        problem: &Problem,
+        index: usize,
+        from: &Rational,
+        to: &Rational,
+        order: u32,
+    ) -> Option<Sign> {
         let zero = Rational::from_integer(0.into());
         if *to == zero {
             return Some(problem.sequences[index].sign_at_zero());
@@ -99,7 +122,8 @@ impl Enclosure {
         let rates = self.forms.iter().flat_map(|f| &f.terms);
         let top = rates.map(|t| largest(&t.exponent.re).max(largest(&t.exponent.im))).fold(-1000.0_f64, f64::max);
         let x = h * top.exp2();
-        let longest = self.forms.iter().flat_map(|f| f.terms.iter().map(|t| t.coefficients.len())).max().unwrap_or(1) as u32;
+        let longest =
+            self.forms.iter().flat_map(|f| f.terms.iter().map(|t| t.coefficients.len())).max().unwrap_or(1) as u32;
         let mut term = 1.0_f64;
         let mut order = 1;
         while order < 22 && term > 2.0_f64.powi(-40) {
@@ -112,11 +136,6 @@ impl Enclosure {
     /// The limits of the checker, without the bound on work.
     pub(crate) fn limits(&self) -> &Limits {
         &self.limits
-    }
-
-    /// The budget that is never used up.
-    pub(crate) fn budget(&mut self) -> &mut Budget {
-        &mut self.budget
     }
 }
 
@@ -135,9 +154,4 @@ pub(crate) fn approx_value(x: &Rational) -> f64 {
 /// The family of a polynomial, with approximations of its roots to a few bits more than asked for.
 fn family(polynomial: &keepout_core::IntegerPolynomial, bits: u32) -> RootFamily {
     RootFamily { polynomial: polynomial.to_monic(), centres: crate::strategy::root::centres(polynomial, bits) }
-}
-
-/// The middle of an interval.
-pub(crate) fn middle(x: &Interval, bits: u32) -> Dyadic {
-    x.lo().add(x.hi(), bits, keepout_checker::number::Direction::Down).scale(-1)
 }

@@ -32,7 +32,8 @@ const MAX_EXTENSIONS: u32 = 6;
 /// The proof of the widened zone and the margin, for a zone that is a single comparison.
 pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)> {
     let Formula::Atom(atom) = &proof.statement().zone.inside else { return None };
-    let mut problem = Problem::new(proof.statement(), Claim::Never { margin: Rational::zero() }, &options.limits).ok()?;
+    let mut problem =
+        Problem::new(proof.statement(), Claim::Never { margin: Rational::zero() }, &options.limits).ok()?;
     let mut enclosure = Enclosure::new(&problem, BITS, &options.limits).ok()?;
     let upward = match atom.relation {
         Relation::Positive | Relation::NonNegative => true,
@@ -60,7 +61,9 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
                 let Claim::Never { margin } = &proof.statement().claim else { return None };
                 return Some((*proof.clone(), Margin { certified: margin.clone(), at_most: Some(at_most), place }));
             }
-            Attempt::Failed => return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: Some(at_most), place })),
+            Attempt::Failed => {
+                return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: Some(at_most), place }));
+            }
             Attempt::EnteredLater(time) => {
                 let four = Rational::from_integer(4.into());
                 let longer = instants.last()? * four;
@@ -193,11 +196,11 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     }
     let mut t0 = Rational::from_integer(1.into());
     for _ in 0..60 {
-        if let Some(form) = plan.forms(&t0, enclosure)?.first()?.as_ref() {
-            if form.rest().top() < -100 {
-                let supremum = torus_supremum(form, plan.base.len(), upward)?;
-                return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
-            }
+        if let Some(form) = plan.forms(&t0, enclosure)?.first()?.as_ref()
+            && form.rest().top() < -100
+        {
+            let supremum = torus_supremum(form, plan.base.len(), upward)?;
+            return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
         }
         t0 *= Rational::from_integer(2.into());
     }

@@ -31,13 +31,15 @@ impl Problem {
         let mut annihilators = Vec::new();
         for polynomial in &formula.polynomials {
             let (order, sequence) = flow.trace(polynomial)?;
-            let exceeded = Rejection::LimitExceeded { limit: "derivatives", max: limits.derivatives, found: order as u64 };
+            let exceeded =
+                Rejection::LimitExceeded { limit: "derivatives", max: limits.derivatives, found: order as u64 };
             annihilators.push(unscaled(&sequence).ok_or(exceeded)?);
             sequences.push(sequence);
         }
         drop(flow);
         let mut problem = Self { statement, formula, sequences, factors: Vec::new(), families: Vec::new() };
-        let parts: Vec<IntegerPolynomial> = annihilators.iter().flat_map(|m| factorize(m).factors).map(|f| f.polynomial).collect();
+        let parts: Vec<IntegerPolynomial> =
+            annihilators.iter().flat_map(|m| factorize(m).factors).map(|f| f.polynomial).collect();
         problem.families = IntegerPolynomial::coprime_base(&parts);
         problem.families.retain(|f| f.degree() > 0);
         problem.factors = annihilators.iter().map(|m| multiplicities(m, &problem.families)).collect();

@@ -56,7 +56,13 @@ struct Attempt<'a> {
 }
 
 impl<'a> Attempt<'a> {
-    fn new(statement: &Statement, claim: Claim, bits: u32, options: &Options, effort: &'a mut u64) -> Result<Self, Rejection> {
+    fn new(
+        statement: &Statement,
+        claim: Claim,
+        bits: u32,
+        options: &Options,
+        effort: &'a mut u64,
+    ) -> Result<Self, Rejection> {
         let problem = Problem::new(statement, claim, &options.limits)?;
         let enclosure = Enclosure::new(&problem, bits, &options.limits)?;
         let cover = Cover::new(&statement.zone.from);
@@ -74,10 +80,10 @@ impl<'a> Attempt<'a> {
             if let Some(cone) = self.cone(&t0) {
                 return self.finish(&t0, Some(cone));
             }
-            if t0 > self.problem.statement.zone.from {
-                if let Some(end) = self.extend(&t0) {
-                    return end;
-                }
+            if t0 > self.problem.statement.zone.from
+                && let Some(end) = self.extend(&t0)
+            {
+                return end;
             }
             t0 *= Rational::from_integer(2.into());
         }

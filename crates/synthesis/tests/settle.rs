@@ -15,7 +15,12 @@ fn statement(a: &[&[&str]], c: &[&str], x0: &[&str], p: &[(&str, &[u32])], relat
         .iter()
         .zip(c)
         .map(|(row, c)| Affine {
-            terms: row.iter().enumerate().filter(|(_, v)| **v != "0").map(|(j, v)| (q(v), Variable::State(j))).collect(),
+            terms: row
+                .iter()
+                .enumerate()
+                .filter(|(_, v)| **v != "0")
+                .map(|(j, v)| (q(v), Variable::State(j)))
+                .collect(),
             offset: q(c),
         })
         .collect();
@@ -65,7 +70,12 @@ fn word(s: &Statement) -> String {
 fn step_response_overshoot_is_told_from_both_sides() {
     // s^2+6s+25, step: sup y = 1 + exp(-3 pi/4) = 1.0947802248421...
     let a: &[&[&str]] = &[&["0", "1"], &["-25", "-6"]];
-    for (limit, verdict) in [("-1095/1000", "clear"), ("-10947802259/10000000000", "clear"), ("-10947802237/10000000000", "enters"), ("-1", "enters")] {
+    for (limit, verdict) in [
+        ("-1095/1000", "clear"),
+        ("-10947802259/10000000000", "clear"),
+        ("-10947802237/10000000000", "enters"),
+        ("-1", "enters"),
+    ] {
         let s = statement(a, &["0", "25"], &["0", "0"], &[("1", &[1, 0]), (limit, &[])], Relation::NonNegative);
         assert!(word(&s).starts_with(verdict));
     }
@@ -140,7 +150,9 @@ fn touches_at_transcendental_times_are_unsettled() {
     assert!(word(&statement(a, &["0", "0"], &["0", "1"], p, Relation::NonNegative)).starts_with("unsettled Touches"));
     let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-1", "0", "0", "0"], &["0", "0", "0", "1"], &["0", "0", "-2", "0"]];
     let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-2", &[])];
-    assert!(word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("unsettled"));
+    assert!(
+        word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("unsettled")
+    );
     let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-199/100", &[])];
     assert!(word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("enters"));
 }

@@ -61,10 +61,11 @@ pub fn run(arguments: &Arguments) -> u8 {
         .collect();
     drop(progress);
     if let Some(folder) = &arguments.out
-        && let Err(message) = settled.iter().try_for_each(|s| s.write(folder)) {
-            complain(&format!("{message}\n"));
-            return WRONG;
-        }
+        && let Err(message) = settled.iter().try_for_each(|s| s.write(folder))
+    {
+        complain(&format!("{message}\n"));
+        return WRONG;
+    }
     print(&if arguments.json {
         report_json(&model, &settled)
     } else {

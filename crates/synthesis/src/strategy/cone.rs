@@ -30,7 +30,8 @@ const MAX_MULTIPLE: i64 = 6;
 impl Plan {
     /// Plans the cones of a problem; families may be added to it, and the enclosure is renewed with them.
     pub(crate) fn new(problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
-        let mut plan = Self { base: Vec::new(), angles: Vec::new(), leads: Vec::new(), sums: Vec::new(), unproved: false };
+        let mut plan =
+            Self { base: Vec::new(), angles: Vec::new(), leads: Vec::new(), sums: Vec::new(), unproved: false };
         for index in 0..problem.sequences.len() {
             let lead = plan.lead(index, problem, enclosure)?;
             plan.leads.push(lead);
@@ -67,7 +68,12 @@ impl Plan {
     }
 
     /// Adds a sum; `Some(None)`: it could not be shown. `None`: the enclosure could not be renewed.
-    fn sum(&mut self, parts: &[(i64, RootRef)], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Option<usize>> {
+    fn sum(
+        &mut self,
+        parts: &[(i64, RootRef)],
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Option<Option<usize>> {
         if let Some(known) = self.sums.iter().position(|s| s.parts == parts) {
             return Some(Some(known));
         }
@@ -127,7 +133,10 @@ impl Plan {
     /// A base root of which all commensurate frequencies are integer multiples, if the least of them is not one itself.
     fn common_base(&mut self, roots: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<()> {
         let Some(first) = roots.first() else { return Some(()) };
-        let divisor = roots.iter().filter_map(|r| ratio(*r, *first, enclosure)).fold(BigInt::from(1), |l, q| num_lcm(&l, q.denom()));
+        let divisor = roots
+            .iter()
+            .filter_map(|r| ratio(*r, *first, enclosure))
+            .fold(BigInt::from(1), |l, q| num_lcm(&l, q.denom()));
         let times = divisor.to_i64().filter(|n| *n > 1 && *n <= MAX_RATIO);
         let Some(times) = times else { return Some(()) };
         let family = enclosure.table.roots()[*first].family;
@@ -140,13 +149,23 @@ impl Plan {
         let part = Interval::integer(times);
         let wanted = frequency(*first, enclosure);
         let bits = enclosure.bits;
-        let base = enclosure.table.roots().iter().position(|r| r.family == position && !r.value.im.mul(&part, bits).is_disjoint(&wanted));
+        let base = enclosure
+            .table
+            .roots()
+            .iter()
+            .position(|r| r.family == position && !r.value.im.mul(&part, bits).is_disjoint(&wanted));
         self.base.extend(base);
         Some(())
     }
 
     /// The cone from t0, if the zone is false on all leaves of a bisection of at most `leaves` leaves.
-    pub(crate) fn cone(&self, t0: &Rational, problem: &Problem, enclosure: &Enclosure, effort: &mut u64) -> Option<Cone> {
+    pub(crate) fn cone(
+        &self,
+        t0: &Rational,
+        problem: &Problem,
+        enclosure: &Enclosure,
+        effort: &mut u64,
+    ) -> Option<Cone> {
         let forms = self.forms(t0, enclosure)?;
         let mut nodes = Vec::new();
         let mut open = vec![(whole_torus(self.base.len()), 0_u64)];
@@ -173,7 +192,8 @@ impl Plan {
                 }
             }
         }
-        let leads = self.leads.iter().zip(&forms).map(|(lead, form)| form.is_some().then(|| lead.clone()).flatten()).collect();
+        let leads =
+            self.leads.iter().zip(&forms).map(|(lead, form)| form.is_some().then(|| lead.clone()).flatten()).collect();
         Some(Cone { from: t0.clone(), base: self.base.clone(), angles: self.angles.clone(), leads, nodes })
     }
 
@@ -207,7 +227,12 @@ fn num_lcm(a: &BigInt, b: &BigInt) -> BigInt {
 }
 
 /// The signs of all traces on a box of the torus.
-pub(crate) fn signs_on(angles: &AngleBox, forms: &[Option<LeadForm>], problem: &Problem, enclosure: &Enclosure) -> Vec<Option<std::cmp::Ordering>> {
+pub(crate) fn signs_on(
+    angles: &AngleBox,
+    forms: &[Option<LeadForm>],
+    problem: &Problem,
+    enclosure: &Enclosure,
+) -> Vec<Option<std::cmp::Ordering>> {
     (0..problem.sequences.len())
         .map(|i| match &forms[i] {
             None => enclosure.forms[i].terms.is_empty().then_some(std::cmp::Ordering::Equal),
@@ -237,7 +262,9 @@ fn mean(problem: &Problem, family: usize) -> Rational {
 fn common_line(roots: &[usize], problem: &Problem, enclosure: &Enclosure) -> Option<Rational> {
     let family = |root: usize| enclosure.table.roots()[root].family;
     let line = mean(problem, family(*roots.first()?));
-    let on_line = |root: &usize| mean(problem, family(*root)) == line && enclosure.table.is_on_line(*root, &line, enclosure.bits) == Some(true);
+    let on_line = |root: &usize| {
+        mean(problem, family(*root)) == line && enclosure.table.is_on_line(*root, &line, enclosure.bits) == Some(true)
+    };
     roots.iter().all(on_line).then_some(line)
 }
 
@@ -268,7 +295,13 @@ fn relations(root: usize, known: &[usize], enclosure: &Enclosure) -> Vec<Vec<(i6
         for b in known.iter().skip(i + 1) {
             for n in -MAX_MULTIPLE..=MAX_MULTIPLE {
                 for m in -MAX_MULTIPLE..=MAX_MULTIPLE {
-                    if n != 0 && m != 0 && (approx_frequency(*a, enclosure) * n as f64 + approx_frequency(*b, enclosure) * m as f64 - approx_frequency(root, enclosure)).abs() < 1e-6 * approx_frequency(root, enclosure) {
+                    if n != 0
+                        && m != 0
+                        && (approx_frequency(*a, enclosure) * n as f64 + approx_frequency(*b, enclosure) * m as f64
+                            - approx_frequency(root, enclosure))
+                        .abs()
+                            < 1e-6 * approx_frequency(root, enclosure)
+                    {
                         found.extend(Some(vec![(n, plain(*a)), (m, plain(*b))]).filter(|p| fits(p)));
                     }
                 }
@@ -287,7 +320,11 @@ pub(crate) fn approx_dyadic(x: &Dyadic) -> f64 {
     x.to_rational().map_or(0.0, |q| approx_value(&q))
 }
 
-fn combined(parts: &[(i64, RootRef)], conjugate: bool, turns: &BTreeMap<usize, Vec<(usize, i64)>>) -> Vec<(usize, i64)> {
+fn combined(
+    parts: &[(i64, RootRef)],
+    conjugate: bool,
+    turns: &BTreeMap<usize, Vec<(usize, i64)>>,
+) -> Vec<(usize, i64)> {
     let mut total = Vec::new();
     for (times, part) in parts {
         let sign = if part.conjugate != conjugate { -1 } else { 1 };

@@ -2,8 +2,8 @@
 
 use crate::enclosure::{Enclosure, Judgement, approx_value};
 use crate::problem::Problem;
-use crate::strategy::pivot::{self, Pivots};
 use crate::strategy::entry::{instant, needed};
+use crate::strategy::pivot::{self, Pivots};
 use keepout_checker::certificate::{Cell, Pivot};
 use keepout_checker::number::Rational;
 use num_traits::Zero;
@@ -46,18 +46,30 @@ const BRACKET: i32 = -34;
 
 impl Cover {
     pub(crate) fn new(from: &Rational) -> Self {
-        Self { from: from.clone(), reached: from.clone(), cells: Vec::new(), pivots: Pivots::default(), hint: Vec::new() }
+        Self {
+            from: from.clone(),
+            reached: from.clone(),
+            cells: Vec::new(),
+            pivots: Pivots::default(),
+            hint: Vec::new(),
+        }
     }
 
     /// Extends the cover to an instant.
-    pub(crate) fn extend(&mut self, to: &Rational, problem: &mut Problem, enclosure: &mut Enclosure, effort: &mut u64) -> Step {
+    pub(crate) fn extend(
+        &mut self,
+        to: &Rational,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+        effort: &mut u64,
+    ) -> Step {
         if self.reached >= *to && !self.cells.is_empty() {
             return Step::Done;
         }
-        if self.cells.is_empty() {
-            if let Some(step) = self.first_instant(to, problem, enclosure) {
-                return step;
-            }
+        if self.cells.is_empty()
+            && let Some(step) = self.first_instant(to, problem, enclosure)
+        {
+            return step;
         }
         let mut open = vec![(self.reached.clone(), to.clone())];
         while let Some((a, b)) = open.pop() {
@@ -76,7 +88,7 @@ impl Cover {
                         open.push((a, middle));
                     }
                     Undecided::Covered => {}
-                    Undecided::Step(step) => return step,
+                    Undecided::Step(step) => return *step,
                 },
             }
         }
@@ -133,10 +145,10 @@ impl Cover {
             return Undecided::Split;
         }
         if let Some(cell) = instant(b, problem, enclosure) {
-            return Undecided::Step(self.entered(a, b, Some(cell)));
+            return Undecided::Step(Box::new(self.entered(a, b, Some(cell))));
         }
         if let Some(cell) = self.pivots.crossing(a, b, problem, enclosure) {
-            return Undecided::Step(self.entered(a, a, Some(cell)));
+            return Undecided::Step(Box::new(self.entered(a, a, Some(cell))));
         }
         match self.pivots.touch(a, b, problem, enclosure) {
             pivot::Touch::None => {}
@@ -145,19 +157,19 @@ impl Cover {
                 self.cells.push(cell);
                 return Undecided::Covered;
             }
-            pivot::Touch::Entered(cell) => return Undecided::Step(self.entered(a, a, Some(cell))),
+            pivot::Touch::Entered(cell) => return Undecided::Step(Box::new(self.entered(a, a, Some(cell)))),
         }
         if width > 2.0_f64.powf(-0.45 * f64::from(enclosure.bits)) {
             return Undecided::Split;
         }
-        Undecided::Step(Step::Stuck(a.clone(), b.clone()))
+        Undecided::Step(Box::new(Step::Stuck(a.clone(), b.clone())))
     }
 }
 
 enum Undecided {
     Split,
     Covered,
-    Step(Step),
+    Step(Box<Step>),
 }
 
 /// A rational with a short binary expansion near the middle of [a, b].

@@ -79,9 +79,16 @@ pub(crate) fn at_start(to: &Rational, problem: &Problem, enclosure: &mut Enclosu
 
 impl Pivots {
     /// A cell [a, b] with a trace that changes its sign there, and with the zone true where that trace is zero.
-    pub(crate) fn crossing(&mut self, a: &Rational, b: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Cell> {
+    pub(crate) fn crossing(
+        &mut self,
+        a: &Rational,
+        b: &Rational,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Option<Cell> {
         let order = enclosure.order(a, b);
-        let signs: Vec<Option<Sign>> = (0..problem.sequences.len()).map(|i| enclosure.sign(problem, i, a, b, order)).collect();
+        let signs: Vec<Option<Sign>> =
+            (0..problem.sequences.len()).map(|i| enclosure.sign(problem, i, a, b, order)).collect();
         for i in 0..signs.len() {
             let mut with_zero = signs.clone();
             with_zero[i] = Some(Ordering::Equal);
@@ -94,18 +101,32 @@ impl Pivots {
                 continue;
             }
             let degree = problem.degree(&problem.factors[i]);
-            let pivot = self.auxiliary(Auxiliary { factors: problem.factors[i].clone(), derivatives: problem.sequences[i].derivatives(degree) });
+            let pivot = self.auxiliary(Auxiliary {
+                factors: problem.factors[i].clone(),
+                derivatives: problem.sequences[i].derivatives(degree),
+            });
             let one = self.polynomial(&[Rational::one()], problem)?;
             let product = self.product(Product { trace: i, pivot, power: 1, cofactor: one });
             *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
             let plain = signs.iter().enumerate().filter_map(|(j, s)| s.map(|s| (j, s))).collect();
-            return Some(Cell { to: b.clone(), order, signs: plain, pivot: Pivot::Auxiliary(pivot, vec![(product, Ordering::Greater)]) });
+            return Some(Cell {
+                to: b.clone(),
+                order,
+                signs: plain,
+                pivot: Pivot::Auxiliary(pivot, vec![(product, Ordering::Greater)]),
+            });
         }
         None
     }
 
     /// Decides a cell [a, b] in which traces vanish at a time that is a root of a polynomial with rational coefficients.
-    pub(crate) fn touch(&mut self, a: &Rational, b: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Touch {
+    pub(crate) fn touch(
+        &mut self,
+        a: &Rational,
+        b: &Rational,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Touch {
         for candidate in candidates(a, b, problem).into_iter().filter(|w| !w[0].is_zero()) {
             match self.touch_with(&candidate, a, b, problem, enclosure) {
                 Some(Touch::None) | None => {}
@@ -115,7 +136,14 @@ impl Pivots {
         Touch::None
     }
 
-    fn touch_with(&mut self, w: &[Rational], a: &Rational, b: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Touch> {
+    fn touch_with(
+        &mut self,
+        w: &[Rational],
+        a: &Rational,
+        b: &Rational,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Option<Touch> {
         let splits: Vec<(usize, u32, Auxiliary)> = (0..problem.sequences.len())
             .filter_map(|i| divided(i, w, problem).map(|(power, cofactor)| (i, power, cofactor)))
             .collect();
@@ -125,7 +153,8 @@ impl Pivots {
         let pivot = self.polynomial(w, problem)?;
         *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
         let order = enclosure.order(a, b);
-        let mut plain: Vec<Option<Sign>> = (0..problem.sequences.len()).map(|i| enclosure.sign(problem, i, a, b, order)).collect();
+        let mut plain: Vec<Option<Sign>> =
+            (0..problem.sequences.len()).map(|i| enclosure.sign(problem, i, a, b, order)).collect();
         let mut cases = [plain.clone(), plain.clone(), plain.clone()];
         let mut listed = Vec::new();
         for (i, power, cofactor) in splits {
@@ -229,7 +258,8 @@ fn divided(index: usize, w: &[Rational], problem: &Problem) -> Option<(u32, Auxi
     let mut power = 0;
     let mut derivatives = problem.sequences[index].derivatives(problem.degree(&factors));
     while !factors.is_empty() && factors.iter().all(|f| f.multiplicity > degree) {
-        let lower: Vec<Factor> = factors.iter().map(|f| Factor { multiplicity: f.multiplicity - degree, ..*f }).collect();
+        let lower: Vec<Factor> =
+            factors.iter().map(|f| Factor { multiplicity: f.multiplicity - degree, ..*f }).collect();
         let quotient = series_quotient(&derivatives, w);
         let size = problem.degree(&lower);
         let m = lower.iter().fold(keepout_checker::polynomial::Polynomial::one(), |m, f| {
