@@ -15,7 +15,7 @@ pub struct Limits {
     pub statement_entries: u64,
     /// Total degree of a zone's polynomial, outputs expanded; powers of t in a drive.
     pub degree: u64,
-    /// Derivatives at 0 that prove an annihilator.
+    /// Derivatives at 0 that prove an annihilator, times the degree of the zone's polynomial: products of sequences cost as much.
     pub derivatives: u64,
     /// Degree of a polynomial in a certificate, multiplicities counted.
     pub roots: u64,

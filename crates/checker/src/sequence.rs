@@ -250,7 +250,7 @@ impl<'a> Flow<'a> {
         let mut bound = 1;
         for i in 1..=degree {
             bound = bound * (dimension - 1 + i) / i;
-            within("derivatives", bound, self.limits.derivatives)?;
+            within("derivatives", bound.saturating_mul(degree), self.limits.derivatives)?;
         }
         Ok(bound)
     }
