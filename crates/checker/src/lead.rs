@@ -67,8 +67,9 @@ impl LeadForm {
                 let excess = (j + 1).saturating_sub(top);
                 decreases.decide(*decay.lo() >= Dyadic::new(BigInt::from(excess), 0))?;
                 let power = power_of_start(&start, j + 1, top, bits).ok_or_else(|| decreases.inconclusive())?;
-                // SOUND(hi): exp(-x) is decreasing, so the least x = gap t0 gives the greatest value.
-                let factor = Complex::real(Interval::point(decay.lo().neg()))
+                // SOUND(hi): exp(-x) is decreasing, so the least x = gap t0 gives the greatest value; any smaller x, here
+                // 2^39 where it is above, gives a greater one (`exp` refuses arguments of 2^40).
+                let factor = Complex::real(Interval::point(decay.lo().clone().min(Dyadic::power_of_two(39)).neg()))
                     .exp(bits)
                     .ok_or_else(|| decreases.inconclusive())?;
                 let bound = weighted.abs_hi(bits).mul(power.hi(), bits, Up).mul(factor.re.hi(), bits, Up);

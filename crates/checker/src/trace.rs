@@ -133,11 +133,11 @@ impl Term {
         let doubled = i64::from(!self.is_real);
         // The tail lemma needs 2 x <= m + 1 for the least m = order - degree >= 1.
         let fits = order > degree && x.scale(1) <= Dyadic::new(BigInt::from(order - degree + 1), 0);
-        if !fits {
-            return if drop == 0 { Some(self.bound(stretch)?.scale(doubled)) } else { None };
-        }
         let centre = Interval::rational(stretch.centre, bits);
-        let flow = self.exponent.mul_real(&centre, bits).exp(bits)?;
+        let flow = if fits { self.exponent.mul_real(&centre, bits).exp(bits) } else { None };
+        let Some(flow) = flow else {
+            return if drop == 0 { Some(self.bound(stretch)?.scale(doubled)) } else { None };
+        };
         let shifted: Vec<Complex> =
             taylor_shift(&self.coefficients, &centre, bits).iter().map(|p| p.mul(&flow, bits)).collect();
         let mut tail = Dyadic::zero();
@@ -165,7 +165,8 @@ impl Term {
         let [low, high] = ends.each_ref().map(|t| Interval::rational(t, bits));
         let times = Interval::hull(low.lo().clone(), high.hi().clone());
         // SOUND(hi): exp is increasing, so the greatest Re mu t gives the greatest growth.
-        let greatest = self.exponent.re.mul(&times, bits).hi().clone();
+        // It may be replaced by any greater one, here by -2^39 where it is below: `exp` refuses arguments of 2^40.
+        let greatest = self.exponent.re.mul(&times, bits).hi().clone().max(Dyadic::power_of_two(39).neg());
         let mut power = Complex::real(Interval::point(greatest)).exp(bits)?.re.hi().clone();
         let mut sum = Dyadic::zero();
         for c in &self.coefficients {

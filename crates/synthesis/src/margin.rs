@@ -42,7 +42,8 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
         Relation::NonZero => return None,
     };
     let window = &proof.statement().zone;
-    if enclosure.forms[0].terms.is_empty() {
+    let touches_at_start = window.from.is_zero() && problem.sequences[0].sign_at_zero() == Ordering::Equal;
+    if touches_at_start || enclosure.forms[0].terms.is_empty() {
         let place = Place::Near(window.from.clone());
         return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: Some(Rational::zero()), place }));
     }
