@@ -3,10 +3,16 @@
 use std::fmt;
 use std::ops::Range;
 
+/// The most characters of a source line that a message shows.
+const MAX_LINE: usize = 120;
+
+/// The most messages that are shown.
+const MAX_SHOWN: usize = 40;
+
 /// One thing that is wrong.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Diagnostic {
-    /// Bytes of the model's text; for another file, see `file`.
+    /// Bytes of the model's text.
     pub span: Range<usize>,
     /// What is wrong, and what was expected.
     pub message: String,
@@ -42,13 +48,15 @@ impl fmt::Display for Diagnostics {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let mut list: Vec<&Diagnostic> = self.list.iter().collect();
         list.sort_by_key(|d| (d.span.start, d.span.end));
-        for (i, diagnostic) in list.into_iter().enumerate() {
+        list.dedup();
+        let more = list.len().saturating_sub(MAX_SHOWN);
+        for (i, diagnostic) in list.into_iter().take(MAX_SHOWN).enumerate() {
             if i > 0 {
                 writeln!(f)?;
             }
             self.write(f, diagnostic)?;
         }
-        Ok(())
+        if more > 0 { writeln!(f, "\nand {more} more") } else { Ok(()) }
     }
 }
 
@@ -66,17 +74,33 @@ impl Diagnostics {
             let number = before.matches('\n').count() + 1;
             let column = self.text[line_start..start].chars().count() + 1;
             writeln!(f, "{}:{number}:{column}: {}", self.file, diagnostic.message)?;
+            let length = self.text[start..end.min(line_end)].chars().count().max(1);
+            let (shown, indent) = excerpt(line, column - 1, length);
             let gutter = number.to_string();
             let blank = " ".repeat(gutter.len());
-            let length = self.text[start..end.min(line_end)].chars().count().max(1);
-            writeln!(f, "{gutter} | {}", line.replace('\t', " "))?;
-            writeln!(f, "{blank} | {}{}", " ".repeat(column - 1), "^".repeat(length))?;
+            writeln!(f, "{gutter} | {shown}")?;
+            let carets = length.min(shown.chars().count().saturating_sub(indent)).max(1);
+            writeln!(f, "{blank} | {}{}", " ".repeat(indent), "^".repeat(carets))?;
         }
         if let Some(help) = &diagnostic.help {
             writeln!(f, "  to mend it: {help}")?;
         }
         Ok(())
     }
+}
+
+/// The part of a long line around a place, without control characters, and the place's position in it.
+fn excerpt(line: &str, at: usize, length: usize) -> (String, usize) {
+    let plain = |c: char| if c.is_control() { ' ' } else { c };
+    let count = line.chars().count();
+    if count <= MAX_LINE {
+        return (line.chars().map(plain).collect(), at);
+    }
+    let first = (at + length.min(MAX_LINE / 2)).saturating_sub(3 * MAX_LINE / 4).min(at);
+    let before = if first > 0 { "..." } else { "" };
+    let after = if first + MAX_LINE < count { "..." } else { "" };
+    let shown: String = line.chars().skip(first).take(MAX_LINE).map(plain).collect();
+    (format!("{before}{shown}{after}"), at - first + before.len())
 }
 
 fn floor_boundary(text: &str, at: usize) -> usize {

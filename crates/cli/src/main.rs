@@ -32,8 +32,10 @@ fn main() -> ExitCode {
             return ExitCode::from(if asked { CLEAR } else { WRONG });
         }
     };
-    ExitCode::from(match cli.command {
-        Command::Certify(arguments) => certify::run(&arguments),
-        Command::Spectrum(arguments) => spectrum::run(&arguments),
-    })
+    // Whatever happens, the exit status is one of those that the program promises.
+    let status = std::panic::catch_unwind(|| match &cli.command {
+        Command::Certify(arguments) => certify::run(arguments),
+        Command::Spectrum(arguments) => spectrum::run(arguments),
+    });
+    ExitCode::from(status.unwrap_or(WRONG))
 }

@@ -5,16 +5,18 @@ use num_rational::BigRational;
 use num_traits::Zero;
 
 /// The most characters of a number.
-pub const MAX_LENGTH: usize = 1_000;
+pub const MAX_LENGTH: usize = 10_000;
 
 /// The greatest decimal exponent, either sign.
-pub const MAX_EXPONENT: i64 = 4_000;
+pub const MAX_EXPONENT: i64 = 10_000;
 
 /// Why a text is not an exact number.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum NumberError {
     /// Not digits with an optional point and exponent.
     Form,
+    /// A digit separator that is not between digits.
+    Separator,
     /// More than [`MAX_LENGTH`] characters.
     TooLong,
     /// An exponent beyond [`MAX_EXPONENT`].
@@ -26,6 +28,7 @@ impl NumberError {
     pub fn message(self) -> String {
         match self {
             Self::Form => "expected a finite number such as 12, 0.05 or 1.2e-3".into(),
+            Self::Separator => "a digit separator `_` stands between two digits".into(),
             Self::TooLong => format!("a number has at most {MAX_LENGTH} characters"),
             Self::Exponent => format!("the exponent of a number is at most {MAX_EXPONENT}, either sign"),
         }
@@ -39,6 +42,11 @@ impl NumberError {
 pub fn decimal(text: &str) -> Result<BigRational, NumberError> {
     if text.len() > MAX_LENGTH {
         return Err(NumberError::TooLong);
+    }
+    let bytes = text.as_bytes();
+    let is_digit = |i: Option<usize>| i.and_then(|i| bytes.get(i)).is_some_and(u8::is_ascii_digit);
+    if (0..bytes.len()).any(|i| bytes[i] == b'_' && !(is_digit(i.checked_sub(1)) && is_digit(Some(i + 1)))) {
+        return Err(NumberError::Separator);
     }
     let plain = text.replace('_', "");
     let (mantissa, exponent) = match plain.find(['e', 'E']) {

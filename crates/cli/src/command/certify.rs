@@ -11,6 +11,7 @@ use num_traits::{One, Signed, Zero};
 use rayon::prelude::*;
 use serde_json::{Map, Value, json};
 use std::fmt::Write as _;
+use std::panic::AssertUnwindSafe;
 use std::path::{Path, PathBuf};
 
 /// The arguments of the command.
@@ -54,7 +55,7 @@ pub fn run(arguments: &Arguments) -> u8 {
         .into_par_iter()
         .map(|zone| {
             let statement = model.statement(zone);
-            let outcome = certify(&statement, &options).map_err(|e| e.to_string());
+            let outcome = settle(&statement, &options);
             progress.one_done();
             Settled { statement, outcome }
         })
@@ -76,6 +77,15 @@ pub fn run(arguments: &Arguments) -> u8 {
         (true, _) => ENTERED,
         (false, true) => UNSETTLED,
         (false, false) => CLEAR,
+    }
+}
+
+/// The outcome; a defect of the program leaves the zone unsettled and the others alone.
+fn settle(statement: &Statement, options: &Options) -> Result<Outcome, String> {
+    let attempt = std::panic::catch_unwind(AssertUnwindSafe(|| certify(statement, options)));
+    match attempt {
+        Ok(outcome) => outcome.map_err(|e| e.to_string()),
+        Err(_) => Err("a defect of this program stopped the search; please report the model".into()),
     }
 }
 

@@ -14,9 +14,25 @@ pub(super) enum Token {
     End,
 }
 
-/// The symbols, longer ones first; the last five are refused by name.
-const SYMBOLS: [&str; 21] =
-    ["<=", ">=", "==", "!=", "<>", "&&", "||", "**", "<", ">", "=", "+", "-", "*", "/", "^", "(", ")", "!", "|", ","];
+/// The symbols, longer ones before their beginnings; those without a meaning are refused by name.
+const SYMBOLS: [&str; 23] = [
+    "<=", ">=", "==", "=>", "=<", "!=", "<>", "&&", "||", "**", "<", ">", "=", "+", "-", "*", "/", "^", "(", ")", "!",
+    "|", ",",
+];
+
+/// Characters that look like an operator, and what to write for them.
+const LOOKALIKES: [(char, &str); 10] = [
+    ('≤', "<="),
+    ('≥', ">="),
+    ('≠', "not a = b"),
+    ('−', "-"),
+    ('–', "-"),
+    ('·', "*"),
+    ('×', "*"),
+    ('÷', "/"),
+    ('²', "^2"),
+    ('π', "an exact number, say 3.14159265"),
+];
 
 /// Splits a text into tokens with their places in it; the last one is the end.
 pub(super) fn tokens(text: &str) -> Result<Vec<(Token, Range<usize>)>, Diagnostic> {
@@ -40,13 +56,20 @@ pub(super) fn tokens(text: &str) -> Result<Vec<(Token, Range<usize>)>, Diagnosti
             list.push((Token::Symbol(symbol), at..at + symbol.len()));
             at += symbol.len();
         } else {
-            let message = format!("the character {c:?} has no meaning in an expression");
-            return Err(Diagnostic::new(at..at + c.len_utf8(), message)
-                .help("use letters, digits, _ and + - * / ^ ( ) < <= = >= > and the words not, and, or"));
+            return Err(unknown(c, at));
         }
     }
     list.push((Token::End, text.len()..text.len()));
     Ok(list)
+}
+
+fn unknown(c: char, at: usize) -> Diagnostic {
+    let diagnostic =
+        Diagnostic::new(at..at + c.len_utf8(), format!("the character {c:?} has no meaning in an expression"));
+    match LOOKALIKES.iter().find(|(known, _)| *known == c) {
+        Some((_, instead)) => diagnostic.help(format!("write {instead}")),
+        None => diagnostic.help("use letters, digits, _ and + - * / ^ ( ) < <= = >= > and the words not, and, or"),
+    }
 }
 
 /// The length of a number at the start of a text: digits, a point with digits, an exponent.

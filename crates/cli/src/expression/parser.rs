@@ -3,76 +3,23 @@
 //! Precedence, tightest first: `^`, unary `-`, `* /`, `+ -`, comparison, `not`, `and`, `or`.
 
 use super::lexer::{Token, tokens};
+use super::syntax::{Comparator, Function, Node, NodeKind, Sign, Step};
 use crate::diagnostic::Diagnostic;
-use num_rational::BigRational;
 use std::ops::Range;
 
-/// The functions that expressions know.
-#[derive(Clone, Copy, Debug, PartialEq, Eq)]
-pub enum Function {
-    /// exp
-    Exp,
-    /// sin
-    Sin,
-    /// cos
-    Cos,
-    /// abs
-    Abs,
-}
-
-/// A node of the syntax tree, with its place in the text.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Node {
-    /// The bytes of the text.
-    pub span: Range<usize>,
-    /// What it is.
-    pub kind: NodeKind,
-}
-
-/// What a node is.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub enum NodeKind {
-    /// A number.
-    Number(BigRational),
-    /// A name.
-    Name(String),
-    /// -a
-    Negative(Box<Node>),
-    /// a + b
-    Sum(Box<Node>, Box<Node>),
-    /// a - b
-    Difference(Box<Node>, Box<Node>),
-    /// a * b
-    Product(Box<Node>, Box<Node>),
-    /// a / b
-    Quotient(Box<Node>, Box<Node>),
-    /// a ^ b
-    Power(Box<Node>, Box<Node>),
-    /// f(a)
-    Call(Function, Box<Node>),
-    /// a chain of comparisons: operands, and the operators between them
-    Comparison(Vec<Node>, Vec<&'static str>),
-    /// not a
-    Not(Box<Node>),
-    /// a and b
-    And(Box<Node>, Box<Node>),
-    /// a or b
-    Or(Box<Node>, Box<Node>),
-}
-
 /// The most nested parentheses, signs and functions.
-const MAX_DEPTH: usize = 100;
+pub const MAX_DEPTH: usize = 100;
 
 /// The most bytes of an expression.
-const MAX_LENGTH: usize = 100_000;
+pub const MAX_EXPRESSION_LENGTH: usize = 100_000;
 
 /// Reads an expression or a formula.
 ///
 /// # Errors
 /// One diagnostic, with a place in `text`.
 pub fn parse(text: &str) -> Result<Node, Diagnostic> {
-    if text.len() > MAX_LENGTH {
-        return Err(Diagnostic::new(0..1, format!("an expression has at most {MAX_LENGTH} characters")));
+    if text.len() > MAX_EXPRESSION_LENGTH {
+        return Err(Diagnostic::new(0..1, format!("an expression has at most {MAX_EXPRESSION_LENGTH} characters")));
     }
     let mut parser = Parser { tokens: tokens(text)?, at: 0, depth: 0 };
     let node = parser.disjunction()?;
@@ -124,7 +71,16 @@ impl Parser {
     /// What stands where an operator or the end was expected.
     fn trailing(&self) -> Diagnostic {
         let span = self.span();
+        let before = self.at.checked_sub(1).map(|i| &self.tokens[i].0);
         match self.peek() {
+            Token::Symbol("(") if matches!(before, Some(Token::Name(_))) => {
+                Diagnostic::new(span, "expected an operator between a name and `(`")
+                    .help("write a product with *; the only functions are exp, sin, cos in signals and abs in zones")
+            }
+            Token::Name(name) if matches!(name.to_lowercase().as_str(), "and" | "or" | "not") => {
+                Diagnostic::new(span, format!("expected an operator before `{name}`"))
+                    .help("the words are and, or, not, in lower case, between comparisons: not a = b, a > 1 and b > 2")
+            }
             Token::Name(_) | Token::Number(_) | Token::Symbol("(") => {
                 Diagnostic::new(span, "expected an operator before this").help("write a product with *, as in 2*x")
             }
@@ -135,21 +91,19 @@ impl Parser {
     }
 
     fn disjunction(&mut self) -> Parsed {
-        let mut left = self.conjunction()?;
+        let mut parts = vec![self.conjunction()?];
         while self.accept_word("or") {
-            let right = self.conjunction()?;
-            left = join(left, right, NodeKind::Or);
+            parts.push(self.conjunction()?);
         }
-        Ok(left)
+        Ok(gathered(parts, |node| node, NodeKind::Or))
     }
 
     fn conjunction(&mut self) -> Parsed {
-        let mut left = self.negation()?;
+        let mut parts = vec![self.negation()?];
         while self.accept_word("and") {
-            let right = self.negation()?;
-            left = join(left, right, NodeKind::And);
+            parts.push(self.negation()?);
         }
-        Ok(left)
+        Ok(gathered(parts, |node| node, NodeKind::And))
     }
 
     fn negation(&mut self) -> Parsed {
@@ -164,54 +118,49 @@ impl Parser {
     }
 
     fn comparison(&mut self) -> Parsed {
-        let first = self.sum()?;
-        let mut operands = vec![first];
-        let mut operators: Vec<&'static str> = Vec::new();
-        while let Token::Symbol(symbol @ ("<" | "<=" | "=" | ">=" | ">")) = *self.peek() {
+        let mut operands = vec![self.sum()?];
+        let mut comparators: Vec<Comparator> = Vec::new();
+        while let Token::Symbol(symbol) = *self.peek() {
+            let Some(comparator) = Comparator::from_symbol(symbol) else { break };
             let span = self.span();
             self.next();
-            let direction = |s: &str| s.chars().next();
-            if operators.iter().any(|o| direction(o) != direction(symbol)) || (symbol == "=" && !operators.is_empty()) {
+            if comparators.first().is_some_and(|first| !first.runs_with(comparator)) {
                 return Err(Diagnostic::new(span, "a chain of comparisons goes in one direction")
                     .help("write two comparisons joined by `and`, as in a < b and b > c"));
             }
-            operators.push(symbol);
+            comparators.push(comparator);
             operands.push(self.sum()?);
         }
-        if operators.is_empty() {
+        if comparators.is_empty() {
             return Ok(operands.remove(0));
         }
         let span = operands[0].span.start..operands[operands.len() - 1].span.end;
-        Ok(Node { span, kind: NodeKind::Comparison(operands, operators) })
+        Ok(Node { span, kind: NodeKind::Comparison(operands, comparators) })
     }
 
     fn sum(&mut self) -> Parsed {
-        let mut left = self.product()?;
+        let mut parts = vec![(Sign::Plus, self.product()?)];
         loop {
-            if self.accept("+") {
-                let right = self.product()?;
-                left = join(left, right, NodeKind::Sum);
-            } else if self.accept("-") {
-                let right = self.product()?;
-                left = join(left, right, NodeKind::Difference);
-            } else {
-                return Ok(left);
-            }
+            let sign = match self.peek() {
+                Token::Symbol("+") => Sign::Plus,
+                Token::Symbol("-") => Sign::Minus,
+                _ => return Ok(gathered(parts, |(_, node)| node, NodeKind::Sum)),
+            };
+            self.next();
+            parts.push((sign, self.product()?));
         }
     }
 
     fn product(&mut self) -> Parsed {
-        let mut left = self.signed()?;
+        let mut parts = vec![(Step::Times, self.signed()?)];
         loop {
-            if self.accept("*") {
-                let right = self.signed()?;
-                left = join(left, right, NodeKind::Product);
-            } else if self.accept("/") {
-                let right = self.signed()?;
-                left = join(left, right, NodeKind::Quotient);
-            } else {
-                return Ok(left);
-            }
+            let step = match self.peek() {
+                Token::Symbol("*") => Step::Times,
+                Token::Symbol("/") => Step::Over,
+                _ => return Ok(gathered(parts, |(_, node)| node, NodeKind::Product)),
+            };
+            self.next();
+            parts.push((step, self.signed()?));
         }
     }
 
@@ -239,7 +188,8 @@ impl Parser {
         if matches!(self.peek(), Token::Symbol("^")) {
             return Err(Diagnostic::new(self.span(), "a^b^c is ambiguous").help("write (a^b)^c or a^(b^c)"));
         }
-        Ok(join(base, exponent, NodeKind::Power))
+        let span = base.span.start..exponent.span.end;
+        Ok(Node { span, kind: NodeKind::Power(Box::new(base), Box::new(exponent)) })
     }
 
     fn deeper(&mut self) -> Result<(), Diagnostic> {
@@ -247,7 +197,8 @@ impl Parser {
         if self.depth <= MAX_DEPTH {
             return Ok(());
         }
-        Err(Diagnostic::new(self.span(), format!("an expression is nested at most {MAX_DEPTH} deep")))
+        Err(Diagnostic::new(self.span(), format!("an expression is nested at most {MAX_DEPTH} deep"))
+            .help("name its parts with [output] sections"))
     }
 
     fn primary(&mut self) -> Parsed {
@@ -292,14 +243,23 @@ impl Parser {
                 return Err(Diagnostic::new(span, "pi is not a rational number")
                     .help("give an exact number, say 314.159265 for 100*pi, or a range around it under [uncertain]"));
             }
-            "and" | "or" | "not" | "true" | "false" => {
+            "true" | "false" => {
+                return Err(Diagnostic::new(span, format!("`{name}` is a reserved word without a meaning"))
+                    .help("write a comparison, as in x > 2"));
+            }
+            "not" => {
+                return Err(Diagnostic::new(span, "`not` stands before a comparison, not inside one")
+                    .help("put the negated comparison in parentheses, as in not (a > b)"));
+            }
+            "and" | "or" => {
                 return Err(Diagnostic::new(span, format!("expected a number, a name or `(` before `{name}`")));
             }
             _ => return Ok(Node { span, kind: NodeKind::Name(name) }),
         };
         let open = self.span();
         if !self.accept("(") {
-            return Err(Diagnostic::new(span, format!("{name} is a function: expected `(` after it")));
+            return Err(Diagnostic::new(span, format!("{name} is a function: expected `(` after it"))
+                .help(format!("write {name}(...); it cannot be the name of a quantity")));
         }
         self.deeper()?;
         let argument = self.sum()?;
@@ -309,14 +269,39 @@ impl Parser {
     }
 }
 
-fn join(left: Node, right: Node, kind: fn(Box<Node>, Box<Node>) -> NodeKind) -> Node {
-    Node { span: left.span.start..right.span.end, kind: kind(Box::new(left), Box::new(right)) }
+/// The only part, or the node of all parts.
+fn gathered<T: Part>(mut parts: Vec<T>, alone: fn(T) -> Node, kind: fn(Vec<T>) -> NodeKind) -> Node {
+    if parts.len() == 1 {
+        return alone(parts.remove(0));
+    }
+    let end = |part: Option<&T>, edge: fn(&Range<usize>) -> usize| part.map_or(0, |p| edge(&p.node().span));
+    let span = end(parts.first(), |s| s.start)..end(parts.last(), |s| s.end);
+    Node { span, kind: kind(parts) }
+}
+
+/// An operand, with or without what stands before it.
+trait Part {
+    fn node(&self) -> &Node;
+}
+
+impl Part for Node {
+    fn node(&self) -> &Node {
+        self
+    }
+}
+
+impl<T> Part for (T, Node) {
+    fn node(&self) -> &Node {
+        &self.1
+    }
 }
 
 fn misused(symbol: &str, span: Range<usize>) -> Diagnostic {
     let (message, help) = match symbol {
         "==" => ("`==` is not a comparison here", Some("write = for equality")),
         "!=" | "<>" => ("there is no operator for inequality", Some("write not a = b, or a < b or a > b")),
+        "=>" => ("`=>` is not a comparison", Some("write >=")),
+        "=<" => ("`=<` is not a comparison", Some("write <=")),
         "&&" => ("`&&` is not an operator here", Some("write `and`")),
         "||" | "|" => ("`|` is not an operator here", Some("write `or`, or abs(x) for an absolute value")),
         "!" => ("`!` is not an operator here", Some("write `not`")),

@@ -1,18 +1,22 @@
 //! Known inputs: sums of products of t^k, exp(r*t), sin(w*t), cos(w*t), as exact sums of single terms.
 
-use super::parser::{Function, Node, NodeKind};
-use super::polynomial::{Scope, Value, constant, evaluate};
+use super::evaluate::{MAX_BITS, Scope, Value, constant, divisor, evaluate, exponent, raised_constant};
+use super::polynomial::bits;
+use super::syntax::{Function, Node, NodeKind, Sign, Step};
 use crate::diagnostic::Diagnostic;
 use keepout_checker::statement::{SignalTerm, Variable, Wave};
 use num_rational::BigRational;
-use num_traits::{One, Signed, ToPrimitive, Zero};
+use num_traits::{One, Signed, Zero};
 use std::collections::BTreeMap;
 
-/// The greatest power of t.
-const MAX_POWER: u32 = 24;
+/// The greatest power of t in a signal.
+pub const MAX_SIGNAL_POWER: u32 = 24;
 
-/// The most terms.
-const MAX_TERMS: usize = 2_000;
+/// The most terms of an expanded signal.
+pub const MAX_SIGNAL_TERMS: usize = 2_000;
+
+/// The most products of terms in one multiplication.
+const MAX_PAIRS: usize = 200_000;
 
 /// The shape of a term: power of t, rate, frequency and whether it is a sine (frequency 0: neither).
 type Shape = (u32, BigRational, BigRational, bool);
@@ -54,12 +58,31 @@ impl Signal {
         }
     }
 
-    fn add(&self, other: &Self, factor: &BigRational) -> Self {
-        let mut sum = self.clone();
+    fn add_scaled(&mut self, other: &Self, factor: &BigRational) {
         for ((power, rate, frequency, is_sine), c) in &other.0 {
-            sum.accumulate(*power, rate.clone(), frequency.clone(), *is_sine, c * factor);
+            self.accumulate(*power, rate.clone(), frequency.clone(), *is_sine, c * factor);
         }
-        sum
+    }
+
+    fn scaled(&self, factor: &BigRational) -> Self {
+        let mut product = Self::default();
+        product.add_scaled(self, factor);
+        product
+    }
+
+    /// The value, if it is a constant.
+    fn as_constant(&self) -> Option<BigRational> {
+        let shape: Shape = (0, BigRational::zero(), BigRational::zero(), false);
+        match self.0.len() {
+            0 => Some(BigRational::zero()),
+            1 => self.0.get(&shape).cloned(),
+            _ => None,
+        }
+    }
+
+    fn bits(&self) -> u64 {
+        let of = |((_, rate, frequency, _), c): (&Shape, &BigRational)| bits(rate).max(bits(frequency)).max(bits(c));
+        self.0.iter().map(of).max().unwrap_or(0)
     }
 
     /// 2 cos a cos b = cos(a-b) + cos(a+b), 2 sin a sin b = cos(a-b) - cos(a+b), 2 sin a cos b = sin(a+b) + sin(a-b).
@@ -101,42 +124,36 @@ pub fn signal(node: &Node, scope: &dyn Scope) -> Result<Vec<SignalTerm>, Diagnos
 
 fn expand(node: &Node, scope: &dyn Scope) -> Result<Signal, Diagnostic> {
     let zero = BigRational::zero;
+    let minus = || -BigRational::one();
     let result = match &node.kind {
         NodeKind::Number(value) => Signal::constant(value.clone()),
         NodeKind::Name(name) => match scope.look_up(name) {
             Some(Value::Variable(Variable::Time)) => Signal::single(1, zero(), zero(), false, BigRational::one()),
             _ => Signal::constant(constant(node, scope)?),
         },
-        NodeKind::Negative(a) => Signal::default().add(&expand(a, scope)?, &-BigRational::one()),
-        NodeKind::Sum(a, b) => expand(a, scope)?.add(&expand(b, scope)?, &BigRational::one()),
-        NodeKind::Difference(a, b) => expand(a, scope)?.add(&expand(b, scope)?, &-BigRational::one()),
-        NodeKind::Product(a, b) => product(node, &expand(a, scope)?, &expand(b, scope)?)?,
-        NodeKind::Quotient(a, b) => {
-            let divisor = constant(b, scope)?;
-            if divisor.is_zero() {
-                return Err(Diagnostic::new(b.span.clone(), "division by zero"));
+        NodeKind::Negative(a) => expand(a, scope)?.scaled(&minus()),
+        NodeKind::Sum(parts) => {
+            let mut total = Signal::default();
+            for (sign, part) in parts {
+                let factor = if *sign == Sign::Plus { BigRational::one() } else { minus() };
+                total.add_scaled(&within(part, expand(part, scope)?)?, &factor);
+                if total.0.len() > MAX_SIGNAL_TERMS {
+                    return Err(too_large(node));
+                }
             }
-            Signal::default().add(&expand(a, scope)?, &divisor.recip())
+            total
         }
-        NodeKind::Power(a, b) => {
-            let base = expand(a, scope)?;
-            let exponent = constant(b, scope)?;
-            let small = exponent.is_integer().then(|| exponent.to_integer().to_u32()).flatten();
-            let Some(exponent) = small.filter(|k| *k <= MAX_POWER || base.0.len() <= 1) else {
-                return Err(Diagnostic::new(
-                    b.span.clone(),
-                    format!("an exponent is a non-negative integer constant, at most {MAX_POWER}"),
-                ));
-            };
-            if exponent > 1_000 {
-                return Err(Diagnostic::new(b.span.clone(), "an exponent is at most 1000"));
+        NodeKind::Product(parts) => {
+            let mut total = Signal::constant(BigRational::one());
+            for (step, part) in parts {
+                total = match step {
+                    Step::Times => product(node, &total, &expand(part, scope)?)?,
+                    Step::Over => within(node, total.scaled(&signal_divisor(part, scope)?.recip()))?,
+                };
             }
-            let mut power = Signal::constant(BigRational::one());
-            for _ in 0..exponent {
-                power = product(node, &power, &base)?;
-            }
-            power
+            total
         }
+        NodeKind::Power(a, b) => raised(node, &expand(a, scope)?, exponent(b, scope)?)?,
         NodeKind::Call(Function::Abs, _) => {
             return Err(Diagnostic::new(node.span.clone(), "abs is not allowed in a signal")
                 .help("a signal is a sum of products of t^k, exp(r*t), sin(w*t), cos(w*t)"));
@@ -150,22 +167,62 @@ fn expand(node: &Node, scope: &dyn Scope) -> Result<Signal, Diagnostic> {
             }
         }
         NodeKind::Comparison(..) | NodeKind::Not(_) | NodeKind::And(..) | NodeKind::Or(..) => {
-            return Err(Diagnostic::new(node.span.clone(), "expected a signal, found a condition"));
+            return Err(Diagnostic::new(node.span.clone(), "expected a signal, found a condition")
+                .help("a signal is a sum of products of t^k, exp(r*t), sin(w*t), cos(w*t)"));
         }
     };
-    Ok(result)
+    within(node, result)
+}
+
+fn signal_divisor(node: &Node, scope: &dyn Scope) -> Result<BigRational, Diagnostic> {
+    if let Some(value) = expand(node, scope)?.as_constant().filter(|v| !v.is_zero()) {
+        return Ok(value);
+    }
+    let varies = |n: &&Node| matches!(n.kind, NodeKind::Call(..));
+    let help = match Some(node).filter(varies) {
+        Some(_) => "write exp(-r*t) in place of 1/exp(r*t); other quotients of waves are not sums of waves",
+        None => "a signal is divided by a constant other than 0",
+    };
+    Err(divisor(node, scope)
+        .err()
+        .filter(|d| d.message == "division by zero")
+        .unwrap_or_else(|| Diagnostic::new(node.span.clone(), "a divisor is a constant").help(help)))
+}
+
+fn raised(node: &Node, base: &Signal, exponent: u32) -> Result<Signal, Diagnostic> {
+    if let Some(value) = base.as_constant() {
+        return Ok(Signal::constant(raised_constant(node, value, exponent)?));
+    }
+    if exponent > 100 {
+        return Err(Diagnostic::new(node.span.clone(), "the power of a signal is at most 100")
+            .help("write the power of an exponential as exp(n*r*t)"));
+    }
+    let mut power = Signal::constant(BigRational::one());
+    for _ in 0..exponent {
+        power = product(node, &power, base)?;
+    }
+    Ok(power)
 }
 
 fn product(node: &Node, a: &Signal, b: &Signal) -> Result<Signal, Diagnostic> {
-    let product = a.mul(b);
-    let power = product.0.keys().map(|(power, ..)| *power).max().unwrap_or(0);
-    if power > MAX_POWER || product.0.len() > MAX_TERMS {
-        return Err(Diagnostic::new(
-            node.span.clone(),
-            format!("a signal has at most {MAX_TERMS} terms and the power t^{MAX_POWER}"),
-        ));
+    if a.0.len() * b.0.len() > MAX_PAIRS { Err(too_large(node)) } else { within(node, a.mul(b)) }
+}
+
+fn too_large(node: &Node) -> Diagnostic {
+    let message = format!("a signal has at most {MAX_SIGNAL_TERMS} terms and the power t^{MAX_SIGNAL_POWER}, expanded");
+    Diagnostic::new(node.span.clone(), message).help("declare several drives and add them up in the rate")
+}
+
+fn within(node: &Node, signal: Signal) -> Result<Signal, Diagnostic> {
+    let power = signal.0.keys().map(|(power, ..)| *power).max().unwrap_or(0);
+    if power > MAX_SIGNAL_POWER || signal.0.len() > MAX_SIGNAL_TERMS {
+        return Err(too_large(node));
     }
-    Ok(product)
+    if signal.bits() > MAX_BITS {
+        return Err(Diagnostic::new(node.span.clone(), "this leads to a number of more than about 30000 digits")
+            .help("round the constants; a certificate holds every digit"));
+    }
+    Ok(signal)
 }
 
 /// The rational factor of t in the argument of exp, sin or cos.
@@ -197,7 +254,8 @@ fn linear(function: Function, node: &Node, scope: &dyn Scope) -> Result<BigRatio
                 return Err(Diagnostic::new(
                     node.span.clone(),
                     format!("the argument of {name} is {letter}*t with a rational constant {letter}"),
-                ));
+                )
+                .help(format!("write {name}({letter}*t); other functions of time are not covered")));
             }
         }
     }

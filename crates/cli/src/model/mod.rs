@@ -1,15 +1,20 @@
 //! The engineer's model: a TOML file, read exactly, into the parts of statements.
+//!
+//! Reading has two passes: all names are declared first, then all values are read, each with all names known. Every
+//! fault is collected with its place; a model without faults is the only result.
 
+mod dependency;
+mod later;
 mod load;
 mod matrix;
 mod scope;
+mod section;
 mod table;
 mod zone;
 
-pub use load::{Need, load, load_text};
+pub use load::{MAX_BYTES, MAX_ENTRIES, Need, load, load_text};
 
-use keepout_checker::number::Rational;
-use keepout_checker::statement::{Claim, Drive, Output, Phase, State, Statement, Zone};
+use keepout_checker::statement::{Claim, Drive, Output, Phase, Rational, State, Statement, Zone};
 use num_traits::Zero;
 
 /// A model without its zones' claims.
@@ -21,12 +26,14 @@ pub struct Model {
     pub states: Vec<State>,
     /// The known inputs in the order of the file.
     pub drives: Vec<Drive>,
-    /// The named expressions in the order of the file.
+    /// The named expressions in the order of the file; no value refers to an output.
     pub outputs: Vec<Output>,
     /// The dynamics.
     pub phase: Phase,
-    /// The keep-out zones in the order of the file.
+    /// The keep-out zones in the order of the file, names distinct ignoring case.
     pub zones: Vec<Zone>,
+    /// The text that the model was read from, byte for byte.
+    pub source: String,
 }
 
 impl Model {

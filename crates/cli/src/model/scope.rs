@@ -1,23 +1,73 @@
-//! What names mean in rates, signals, outputs and zones.
+//! The names of a model, and what they mean in numbers, rates, signals, outputs and zones.
 
-use crate::expression::{Scope, Value};
+use crate::expression::{Function, Polynomial, Scope, Value};
 use keepout_checker::statement::Variable;
 use num_rational::BigRational;
+use std::collections::HashMap;
+use std::ops::Range;
 
 /// What a declared name stands for.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub(super) enum Kind {
-    Constant(BigRational),
+    /// A constant; `None` until its value is known, or if it has none.
+    Constant(Option<BigRational>),
     State(usize),
     Drive(usize),
-    Output(usize),
-    /// A constant whose value could not be read: no further complaint.
-    Broken,
+    /// A named expression; `None` until its value is known, or if it has none.
+    Output(usize, Option<Polynomial>),
+    Disturbance,
+    Uncertain,
+}
+
+impl Kind {
+    pub(super) fn word(&self) -> &'static str {
+        match self {
+            Self::Constant(_) => "a constant",
+            Self::State(_) => "a state",
+            Self::Drive(_) => "a drive",
+            Self::Output(..) => "an output",
+            Self::Disturbance => "a disturbance",
+            Self::Uncertain => "an uncertain constant",
+        }
+    }
+}
+
+/// All declared names with their places, in the order of declaration.
+#[derive(Default)]
+pub(super) struct Names {
+    list: Vec<(String, Kind, Range<usize>)>,
+    index: HashMap<String, usize>,
+    /// The names of the outputs by their positions in the statement.
+    outputs: HashMap<usize, String>,
+}
+
+impl Names {
+    pub(super) fn get(&self, name: &str) -> Option<&(String, Kind, Range<usize>)> {
+        self.index.get(name).map(|i| &self.list[*i])
+    }
+
+    /// Adds a name; the caller has looked that it is new.
+    pub(super) fn insert(&mut self, name: String, kind: Kind, span: Range<usize>) {
+        self.index.insert(name.clone(), self.list.len());
+        if let Kind::Output(i, _) = kind {
+            self.outputs.insert(i, name.clone());
+        }
+        self.list.push((name, kind, span));
+    }
+
+    /// Gives a declared name its value.
+    pub(super) fn set(&mut self, name: &str, kind: Kind) {
+        if let Some(i) = self.index.get(name) {
+            self.list[*i].1 = kind;
+        }
+    }
 }
 
 /// Where an expression stands.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) enum Place {
+    /// A number: constants only.
+    Number,
     Rate,
     Signal,
     Output,
@@ -26,69 +76,120 @@ pub(super) enum Place {
 
 /// All declared names, as seen from one place.
 pub(super) struct NameScope<'a> {
-    pub(super) names: &'a [(String, Kind)],
+    pub(super) names: &'a Names,
     pub(super) place: Place,
+}
+
+/// Stands for a value that could not be read, so that what uses it is looked at all the same. A model with such a name is
+/// refused, whatever comes of it.
+fn stand_in() -> Value {
+    Value::Constant(BigRational::new(104_729.into(), 7_919.into()))
+}
+
+fn refused(message: String, help: &str) -> Value {
+    Value::Refused(message, help.into())
+}
+
+impl NameScope<'_> {
+    fn time(&self) -> Value {
+        match self.place {
+            Place::Rate => refused(
+                "a rate does not use t".into(),
+                "declare a [drive] with the time-dependent part and use its name",
+            ),
+            Place::Number => refused("t is not a constant".into(), "use numbers and constants only"),
+            Place::Signal | Place::Output | Place::Zone => Value::Variable(Variable::Time),
+        }
+    }
+
+    fn meaning(&self, name: &str, kind: &Kind) -> Value {
+        let word = kind.word();
+        match (kind, self.place) {
+            (Kind::Constant(Some(value)), _) => Value::Constant(value.clone()),
+            (Kind::Disturbance | Kind::Uncertain, Place::Zone) => refused(
+                format!("`{name}` is {word}: a zone does not use it"),
+                "describe the zone by states, drives, outputs, constants and t",
+            ),
+            (Kind::Constant(None) | Kind::Uncertain, _) => stand_in(),
+            (Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance, Place::Number) => {
+                refused(format!("`{name}` is {word}, not a constant"), "use numbers and constants only")
+            }
+            (Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance, Place::Signal) => refused(
+                format!("`{name}` is {word}: a signal uses only constants and t"),
+                "feedback belongs into a rate; a signal is known beforehand",
+            ),
+            (Kind::Output(..), Place::Rate) => refused(
+                format!("`{name}` is an output: a rate does not use outputs"),
+                "write the expression of the output in its place",
+            ),
+            (Kind::Disturbance, Place::Rate | Place::Output) => stand_in(),
+            (Kind::State(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::State(*i)),
+            (Kind::Drive(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::Drive(*i)),
+            (Kind::Output(_, Some(value)), Place::Output) => Value::Polynomial(value.clone()),
+            (Kind::Output(_, None), Place::Output) => stand_in(),
+            (Kind::Output(i, _), Place::Zone) => Value::Variable(Variable::Output(*i)),
+        }
+    }
 }
 
 impl Scope for NameScope<'_> {
     fn look_up(&self, name: &str) -> Option<Value> {
-        let refused = |message: &str, help: &str| Some(Value::Refused(message.into(), Some(help.into())));
         if name == "t" {
-            return match self.place {
-                Place::Rate => {
-                    refused("a rate does not use t", "declare a [drive] with the time-dependent part and use its name")
-                }
-                Place::Signal | Place::Output | Place::Zone => Some(Value::Variable(Variable::Time)),
-            };
+            return Some(self.time());
         }
-        let kind = &self.names.iter().find(|(n, _)| n == name)?.1;
-        Some(match (kind, self.place) {
-            (Kind::Constant(value), _) => Value::Constant(value.clone()),
-            (Kind::Broken, _) => Value::Refused(format!("`{name}` has no value: see above"), None),
-            (Kind::State(_) | Kind::Drive(_) | Kind::Output(_), Place::Signal) => {
-                return refused(
-                    "a signal uses only constants and t",
-                    "feedback belongs into a rate; a signal is known beforehand",
-                );
-            }
-            (Kind::Output(_), Place::Rate) => {
-                return refused("a rate does not use an output", "write the expression of the output in its place");
-            }
-            (Kind::State(i), _) => Value::Variable(Variable::State(*i)),
-            (Kind::Drive(i), _) => Value::Variable(Variable::Drive(*i)),
-            (Kind::Output(i), _) => Value::Variable(Variable::Output(*i)),
-        })
+        self.names.get(name).map(|(_, kind, _)| self.meaning(name, kind))
     }
 
     fn names(&self) -> Vec<String> {
         let allowed = |kind: &Kind| match self.place {
-            Place::Signal => matches!(kind, Kind::Constant(_)),
-            Place::Rate => !matches!(kind, Kind::Output(_)),
-            Place::Output | Place::Zone => true,
+            Place::Number | Place::Signal => matches!(kind, Kind::Constant(_)),
+            Place::Rate => !matches!(kind, Kind::Output(..)),
+            Place::Output => true,
+            Place::Zone => !matches!(kind, Kind::Disturbance | Kind::Uncertain),
         };
-        let mut names: Vec<String> = self.names.iter().filter(|(_, k)| allowed(k)).map(|(n, _)| n.clone()).collect();
-        if self.place != Place::Rate {
-            names.push("t".into());
+        let mut names: Vec<String> =
+            self.names.list.iter().filter(|(_, k, _)| allowed(k)).map(|(n, ..)| n.clone()).collect();
+        if !matches!(self.place, Place::Rate | Place::Number) {
+            names.insert(0, "t".into());
         }
-        names.truncate(30);
         names
     }
 
-    fn function_hint(&self) -> (&'static str, &'static str) {
-        match self.place {
-            Place::Rate | Place::Output => (
-                "exp, sin and cos are not allowed here: the model is linear",
-                "declare a [drive] for a known signal, or linearise",
+    fn function_hint(&self, function: Function) -> (String, String) {
+        let name = function.name();
+        let drive = "declare a [drive] for a known signal and use its name; a nonlinear plant has to be linearised";
+        match (self.place, function) {
+            (Place::Number, _) => (
+                format!("{name} is not exact in a constant"),
+                "give the value as an exact number, or a range around it under [uncertain]".into(),
             ),
-            Place::Signal => ("this argument is not allowed", "arguments are r*t or w*t"),
-            Place::Zone => (
-                "exp, sin and cos are not supported in zones yet",
-                "declare a [drive] for a known signal and use its name",
+            (Place::Rate, _) => (format!("{name} is not allowed in a rate"), drive.into()),
+            (Place::Output, _) => (format!("{name} is not allowed in an output"), drive.into()),
+            (Place::Signal, _) => (
+                format!("{name} is not allowed in the argument of another function"),
+                "a signal is a sum of products of t^k, exp(r*t), sin(w*t), cos(w*t)".into(),
+            ),
+            (Place::Zone, Function::Exp) => (
+                "exp in a zone is not supported yet".into(),
+                "declare a [drive] such as signal = \"exp(-2*t)\" and use its name".into(),
+            ),
+            (Place::Zone, Function::Sin | Function::Cos | Function::Abs) => (
+                format!("{name} is not allowed in a zone"),
+                format!("declare a [drive] such as signal = \"{name}(2*t)\" and use its name"),
             ),
         }
     }
 
     fn splits(&self) -> bool {
         self.place == Place::Zone
+    }
+
+    fn degree(&self, variable: Variable) -> u32 {
+        let Variable::Output(position) = variable else { return 1 };
+        let of = self.names.outputs.get(&position).and_then(|name| self.names.get(name));
+        match of {
+            Some((_, Kind::Output(_, Some(value)), _)) => value.degree(),
+            _ => 1,
+        }
     }
 }
