@@ -9,10 +9,9 @@ use std::path::Path;
 /// The entries of a coordinate Matrix Market file, decimals read exactly.
 fn market(name: &str) -> SparseMatrix {
     let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("data").join(name);
-    let rows = keepout::matrix_market::read(&std::fs::read_to_string(path).unwrap()).unwrap();
-    let entries =
-        rows.iter().enumerate().flat_map(|(i, row)| row.iter().enumerate().map(move |(j, v)| (i, j, v.clone())));
-    SparseMatrix::new(rows.len(), entries.filter(|(_, _, v)| *v != Rational::from_integer(0.into()))).unwrap()
+    let matrix = keepout::matrix_market::read(&std::fs::read_to_string(path).unwrap()).unwrap();
+    let entries = matrix.entries.iter().map(|((i, j), v)| (*i, *j, v.clone()));
+    SparseMatrix::new(matrix.rows, entries.filter(|(_, _, v)| *v != Rational::from_integer(0.into()))).unwrap()
 }
 
 #[test]
