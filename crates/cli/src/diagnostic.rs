@@ -111,7 +111,8 @@ fn floor_boundary(text: &str, at: usize) -> usize {
 pub fn nearest<'a>(name: &str, known: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
     let best =
         known.into_iter().map(|k| (distance(&name.to_lowercase(), &k.to_lowercase()), k)).min_by_key(|(d, _)| *d)?;
-    (best.0 <= 1 + name.chars().count() / 4).then_some(best.1)
+    let length = name.chars().count();
+    (best.0 <= 1 + length / 4 && (best.0 == 0 || best.0 + 1 < length)).then_some(best.1)
 }
 
 /// The number of single-character edits between two texts (Levenshtein distance).

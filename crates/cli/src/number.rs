@@ -35,6 +35,18 @@ impl NumberError {
     }
 }
 
+impl NumberError {
+    /// How to mend it.
+    pub fn help(self) -> &'static str {
+        match self {
+            Self::Form => "numbers are finite; for all time, leave `until` out",
+            Self::Separator => "write 1_000 or 1000",
+            Self::TooLong => "round it; a certificate holds every digit",
+            Self::Exponent => "choose a unit in which the number is neither so large nor so small",
+        }
+    }
+}
+
 /// Reads an integer or decimal with optional sign, point, exponent and digit separators `_`.
 ///
 /// # Errors

@@ -67,17 +67,17 @@ pub fn run(arguments: &Arguments) -> u8 {
         complain(&format!("{message}\n"));
         return WRONG;
     }
-    print(&if arguments.json {
-        report_json(&model, &settled)
-    } else {
-        report_text(&model, &settled, arguments.out.as_deref())
-    });
     let is = |word: &str| settled.iter().any(|s| s.verdict() == word);
-    match (is("enters"), is("unsettled")) {
+    let status = match (is("enters"), is("unsettled")) {
         (true, _) => ENTERED,
         (false, true) => UNSETTLED,
         (false, false) => CLEAR,
-    }
+    };
+    let report = match arguments.json {
+        true => report_json(&model, &settled),
+        false => report_text(&model, &settled, arguments.out.as_deref()),
+    };
+    print(&report, status)
 }
 
 /// The outcome; a defect of the program leaves the zone unsettled and the others alone.

@@ -17,10 +17,17 @@ pub const UNSETTLED: u8 = 2;
 /// Exit status when the model or the command is wrong.
 pub const WRONG: u8 = 3;
 
-/// Writes to standard output. A reader that has gone away is no error: nobody is left to tell.
-pub(crate) fn print(text: &str) {
+/// Writes to standard output; returns the status, or [`WRONG`] if the result is lost. A reader that has gone away is no
+/// error: nobody is left to tell.
+pub(crate) fn print(text: &str, status: u8) -> u8 {
     let mut out = std::io::stdout().lock();
-    let _ = out.write_all(text.as_bytes()).and_then(|()| out.flush());
+    match out.write_all(text.as_bytes()).and_then(|()| out.flush()) {
+        Err(e) if e.kind() != std::io::ErrorKind::BrokenPipe => {
+            complain(&format!("the result cannot be written: {e}\n"));
+            WRONG
+        }
+        Ok(()) | Err(_) => status,
+    }
 }
 
 /// Writes a message to standard error.

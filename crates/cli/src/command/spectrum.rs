@@ -29,10 +29,7 @@ pub fn run(arguments: &Arguments) -> u8 {
         }
     };
     match structure(&model) {
-        Ok(structure) => {
-            print(&report(&model, &structure));
-            CLEAR
-        }
+        Ok(structure) => print(&report(&model, &structure), CLEAR),
         Err(error) => {
             complain(&format!("{error}\n"));
             WRONG

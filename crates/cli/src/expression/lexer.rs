@@ -45,7 +45,8 @@ pub(super) fn tokens(text: &str) -> Result<Vec<(Token, Range<usize>)>, Diagnosti
         } else if c.is_ascii_digit() || (c == '.' && rest[1..].starts_with(|d: char| d.is_ascii_digit())) {
             let length = number_length(rest);
             let span = at..at + length;
-            let value = decimal(&rest[..length]).map_err(|e| Diagnostic::new(span.clone(), e.message()))?;
+            let value =
+                decimal(&rest[..length]).map_err(|e| Diagnostic::new(span.clone(), e.message()).help(e.help()))?;
             list.push((Token::Number(value), span));
             at += length;
         } else if c.is_ascii_alphabetic() || c == '_' {

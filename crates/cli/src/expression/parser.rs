@@ -19,7 +19,8 @@ pub const MAX_EXPRESSION_LENGTH: usize = 100_000;
 /// One diagnostic, with a place in `text`.
 pub fn parse(text: &str) -> Result<Node, Diagnostic> {
     if text.len() > MAX_EXPRESSION_LENGTH {
-        return Err(Diagnostic::new(0..1, format!("an expression has at most {MAX_EXPRESSION_LENGTH} characters")));
+        return Err(Diagnostic::new(0..1, format!("an expression has at most {MAX_EXPRESSION_LENGTH} characters"))
+            .help("name its parts with [output] sections"));
     }
     let mut parser = Parser { tokens: tokens(text)?, at: 0, depth: 0 };
     let node = parser.disjunction()?;
@@ -84,9 +85,10 @@ impl Parser {
             Token::Name(_) | Token::Number(_) | Token::Symbol("(") => {
                 Diagnostic::new(span, "expected an operator before this").help("write a product with *, as in 2*x")
             }
-            Token::Symbol(")") => Diagnostic::new(span, "this closing parenthesis has no opening one"),
+            Token::Symbol(")") => Diagnostic::new(span, "this closing parenthesis has no opening one")
+                .help("remove it, or open it before"),
             Token::Symbol(s) => misused(s, span),
-            Token::End => Diagnostic::new(span, "expected more"),
+            Token::End => Diagnostic::new(span, "expected more").help("finish the expression"),
         }
     }
 
@@ -107,9 +109,10 @@ impl Parser {
     }
 
     fn negation(&mut self) -> Parsed {
-        let start = self.span().start;
+        let place = self.span();
+        let start = place.start;
         if self.accept_word("not") {
-            self.deeper()?;
+            self.deeper(&place)?;
             let inner = self.negation()?;
             self.depth -= 1;
             return Ok(Node { span: start..inner.span.end, kind: NodeKind::Not(Box::new(inner)) });
@@ -165,9 +168,10 @@ impl Parser {
     }
 
     fn signed(&mut self) -> Parsed {
-        let start = self.span().start;
+        let place = self.span();
+        let start = place.start;
         if self.accept("-") {
-            self.deeper()?;
+            self.deeper(&place)?;
             let inner = self.signed()?;
             self.depth -= 1;
             return Ok(Node { span: start..inner.span.end, kind: NodeKind::Negative(Box::new(inner)) });
@@ -192,12 +196,13 @@ impl Parser {
         Ok(Node { span, kind: NodeKind::Power(Box::new(base), Box::new(exponent)) })
     }
 
-    fn deeper(&mut self) -> Result<(), Diagnostic> {
+    /// Counts a level that begins at a place.
+    fn deeper(&mut self, place: &Range<usize>) -> Result<(), Diagnostic> {
         self.depth += 1;
         if self.depth <= MAX_DEPTH {
             return Ok(());
         }
-        Err(Diagnostic::new(self.span(), format!("an expression is nested at most {MAX_DEPTH} deep"))
+        Err(Diagnostic::new(place.clone(), format!("an expression is nested at most {MAX_DEPTH} deep"))
             .help("name its parts with [output] sections"))
     }
 
@@ -206,7 +211,7 @@ impl Parser {
         match token {
             Token::Number(value) => Ok(Node { span, kind: NodeKind::Number(value) }),
             Token::Symbol("(") => {
-                self.deeper()?;
+                self.deeper(&span)?;
                 let inner = self.disjunction()?;
                 self.depth -= 1;
                 let end = self.close(&span)?;
@@ -214,7 +219,8 @@ impl Parser {
             }
             Token::Name(name) => self.named(name, span),
             Token::Symbol(s) => Err(misused(s, span)),
-            Token::End => Err(Diagnostic::new(span, "the expression ends too early: expected a number, a name or `(`")),
+            Token::End => Err(Diagnostic::new(span, "the expression ends too early: expected a number, a name or `(`")
+                .help("finish the expression")),
         }
     }
 
@@ -224,7 +230,9 @@ impl Parser {
             return Ok(span.end);
         }
         match self.peek() {
-            Token::End => Err(Diagnostic::new(open.clone(), "this parenthesis is never closed")),
+            Token::End => {
+                Err(Diagnostic::new(open.clone(), "this parenthesis is never closed").help("add the closing one"))
+            }
             _ => Err(self.trailing()),
         }
     }
@@ -252,7 +260,8 @@ impl Parser {
                     .help("put the negated comparison in parentheses, as in not (a > b)"));
             }
             "and" | "or" => {
-                return Err(Diagnostic::new(span, format!("expected a number, a name or `(` before `{name}`")));
+                return Err(Diagnostic::new(span, format!("expected a number, a name or `(` before `{name}`"))
+                    .help(format!("write a comparison on each side of `{name}`, as in x > 1 {name} y > 2")));
             }
             _ => return Ok(Node { span, kind: NodeKind::Name(name) }),
         };
@@ -261,7 +270,7 @@ impl Parser {
             return Err(Diagnostic::new(span, format!("{name} is a function: expected `(` after it"))
                 .help(format!("write {name}(...); it cannot be the name of a quantity")));
         }
-        self.deeper()?;
+        self.deeper(&open)?;
         let argument = self.sum()?;
         self.depth -= 1;
         let end = self.close(&open)?;
@@ -308,7 +317,7 @@ fn misused(symbol: &str, span: Range<usize>) -> Diagnostic {
         "**" => ("`**` is not an operator here", Some("write ^ for a power")),
         "," => ("a comma has no meaning in an expression", Some("write decimals with a point")),
         "+" => ("expected a number, a name or `(`", Some("there is no unary +: leave it out")),
-        _ => ("expected a number, a name or `(`", None),
+        _ => ("expected a number, a name or `(`", Some("an operator stands between two operands, as in x - 2*y")),
     };
     let diagnostic = Diagnostic::new(span, message);
     match help {

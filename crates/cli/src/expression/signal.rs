@@ -239,9 +239,11 @@ fn linear(function: Function, node: &Node, scope: &dyn Scope) -> Result<BigRatio
             [(Variable::Time, 1)] => rate = coefficient.clone(),
             [] => {
                 let help = match function {
-                    Function::Exp => "exp(a + r*t) is exp(a)*exp(r*t): give the factor exp(a) as an exact number",
+                    Function::Exp => {
+                        "exp(a + r*t) is exp(a)*exp(r*t): give the factor exp(a) as an exact number, or as a range under [uncertain]"
+                    }
                     Function::Sin | Function::Cos | Function::Abs => {
-                        "expand the phase: sin(w*t + a) is sin(w*t)*cos(a) + cos(w*t)*sin(a); give cos(a) and sin(a) as exact numbers"
+                        "expand the phase: sin(w*t + a) is sin(w*t)*cos(a) + cos(w*t)*sin(a); give cos(a) and sin(a) as exact numbers, or as ranges under [uncertain]"
                     }
                 };
                 return Err(Diagnostic::new(

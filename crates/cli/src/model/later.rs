@@ -8,18 +8,19 @@ use toml::de::DeTable;
 pub(super) const ONE_TRAJECTORY: &str =
     "this version settles a single trajectory: exact start, exact constants, known inputs, no disturbance";
 
-const SECTIONS: [(&str, &str); 4] = [
-    ("disturbance", "disturbances are not supported yet"),
-    ("uncertain", "uncertain constants are not supported yet"),
-    ("start", "sets of starts are not supported yet"),
-    ("phase", "phases are not supported yet"),
+/// Each section with what is refused and what to do instead.
+const SECTIONS: [(&str, &str, &str); 4] = [
+    ("disturbance", "disturbances are not supported yet", "leave it out, or declare a known input as a [drive]"),
+    ("uncertain", "uncertain constants are not supported yet", "give an exact value under [constants]"),
+    ("start", "sets of starts are not supported yet", "give each state one exact start"),
+    ("phase", "phases are not supported yet", "describe one phase, with a zone's `until` for its end"),
 ];
 
 /// Refuses these sections; faults inside them are told as well.
 pub(super) fn refuse_later(root: &DeTable, names: &Names, refusals: &Refusals) {
-    for (section, message) in SECTIONS {
+    for (section, message, instead) in SECTIONS {
         let Some((key, item)) = root.get_key_value(section) else { continue };
-        refusals.refuse(key.span(), message, ONE_TRAJECTORY);
+        refusals.refuse(key.span(), message, format!("{instead}; {ONE_TRAJECTORY}"));
         match section {
             "disturbance" => ranges(item, "disturbance", &["range", "unit"], names, refusals),
             "uncertain" => ranges(item, "uncertain", &["range", "unit", "varying"], names, refusals),

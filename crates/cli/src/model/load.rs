@@ -12,7 +12,7 @@ use keepout_checker::statement::{Affine, Phase, State};
 use std::io::Read;
 use std::ops::Range;
 use std::path::Path;
-use toml::de::DeTable;
+use toml::de::{DeTable, DeValue};
 
 /// The most bytes of a model or a matrix file.
 pub const MAX_BYTES: u64 = 64 << 20;
@@ -150,7 +150,8 @@ impl<'a> Loader<'a> {
                 section::states(states, &self.names, self.refusals)
             }
             (None, _) => {
-                if states.is_empty() && self.root.get("matrix").is_none() {
+                let is_empty = |item: &toml::Spanned<DeValue>| item.get_ref().as_table().is_some_and(|t| t.is_empty());
+                if self.root.get("state").is_none_or(is_empty) && self.root.get("matrix").is_none() {
                     let help = "add a section such as [state.speed] with `start` and `rate`";
                     self.refusals.refuse(0..1, "the model has no state", help);
                 }

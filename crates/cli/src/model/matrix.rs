@@ -81,7 +81,11 @@ impl<'a> Form<'a> {
         refusals: &Refusals,
     ) -> (Vec<State>, Vec<Affine>) {
         if let Some((key, _)) = self.table.get_key_value("E") {
-            refusals.refuse(key.span(), "disturbances are not supported yet", ONE_TRAJECTORY);
+            refusals.refuse(
+                key.span(),
+                "disturbances are not supported yet",
+                format!("leave `E` out; {ONE_TRAJECTORY}"),
+            );
         }
         let reader = Reader { folder, names, refusals };
         let n = self.size;

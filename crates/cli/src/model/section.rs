@@ -144,7 +144,11 @@ pub(super) fn start(item: Item, names: &Names, refusals: &Refusals) -> Option<Bi
     }
     let (lo, hi) = refusals.range(item, names)?;
     if lo != hi {
-        refusals.refuse(item.span(), "ranges of starts are not supported yet", ONE_TRAJECTORY);
+        refusals.refuse(
+            item.span(),
+            "ranges of starts are not supported yet",
+            format!("give one number; {ONE_TRAJECTORY}"),
+        );
         return None;
     }
     Some(lo)

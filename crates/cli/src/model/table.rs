@@ -188,14 +188,7 @@ pub(super) fn kind_of(item: Item) -> &'static str {
 }
 
 fn literal(item: Item) -> Result<BigRational, Diagnostic> {
-    let refuse = |e: NumberError| {
-        let help = match e {
-            NumberError::Form | NumberError::Separator => "numbers are finite; for all time, leave `until` out",
-            NumberError::TooLong => "round it; a certificate holds every digit",
-            NumberError::Exponent => "choose a unit in which the number is neither so large nor so small",
-        };
-        Diagnostic::new(item.span(), e.message()).help(help)
-    };
+    let refuse = |e: NumberError| Diagnostic::new(item.span(), e.message()).help(e.help());
     match item.get_ref() {
         DeValue::Integer(value) if value.radix() != 10 => {
             if value.as_str().len() > MAX_LENGTH {
