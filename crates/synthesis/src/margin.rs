@@ -20,11 +20,11 @@ use num_traits::{Signed, Zero};
 use std::cmp::Ordering;
 use std::collections::BinaryHeap;
 
-/// The margin is looked for at this precision.
-const BITS: u32 = 128;
+/// The margin is looked for with at least this precision, and with more bits than the proof needed.
+const MIN_BITS: u32 = 128;
 
 /// Steps of one branch and bound.
-const MAX_STEPS: u32 = 6_000;
+const MAX_STEPS: u32 = 3_000;
 
 /// How often the stretch that is searched for the supremum is made four times longer.
 const MAX_EXTENSIONS: u32 = 6;
@@ -34,7 +34,8 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
     let Formula::Atom(atom) = &proof.statement().zone.inside else { return None };
     let mut problem =
         Problem::new(proof.statement(), Claim::Never { margin: Rational::zero() }, &options.limits).ok()?;
-    let mut enclosure = Enclosure::new(&problem, BITS, &options.limits).ok()?;
+    let bits = MIN_BITS.max(proof.certificate().bits + MIN_BITS / 2);
+    let mut enclosure = Enclosure::new(&problem, bits, &options.limits).ok()?;
     let upward = match atom.relation {
         Relation::Positive | Relation::NonNegative => true,
         Relation::Negative | Relation::NonPositive => false,
