@@ -112,7 +112,7 @@ pub fn nearest<'a>(name: &str, known: impl IntoIterator<Item = &'a str>) -> Opti
     let best =
         known.into_iter().map(|k| (distance(&name.to_lowercase(), &k.to_lowercase()), k)).min_by_key(|(d, _)| *d)?;
     let length = name.chars().count();
-    (best.0 <= 1 + length / 4 && (best.0 == 0 || best.0 + 1 < length)).then_some(best.1)
+    (best.0 <= 1 + length / 4 && (best.0 == 0 || best.0 < length)).then_some(best.1)
 }
 
 /// The number of single-character edits between two texts (Levenshtein distance).

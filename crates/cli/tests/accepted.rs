@@ -257,8 +257,33 @@ fn the_last_accepted_sizes_are_accepted() {
     inside(&format!("{}x > 1{}", "(".repeat(100), ")".repeat(100)));
     inside("x^24 > 1");
     inside("w^24 > 1");
-    let six = vec!["abs(x)"; 6].join(" + ");
+    let six = ["abs(x)"; 6].join(" + ");
     assert!(matches!(inside(&format!("{six} > 1")), Formula::Or(cases) if cases.len() == 64));
-    let deepest = format!("{}x > 9{}", "x > 1 and (y > 1 or (".repeat(12), "))".repeat(12));
-    inside(&deepest);
+    inside(&format!("{}x > 9{}", "x > 1 and (y > 1 or (".repeat(4), "))".repeat(4)));
+}
+
+#[test]
+fn the_checker_reads_the_text_of_the_deepest_statement_also_inside_a_certificate() {
+    let deepest = format!("{}x > 9{}", "x > 1 and (x^2 > 1 or (".repeat(4), "))".repeat(4));
+    let text = format!("[state.x]\nstart = 1\nrate = \"-x\"\n[[zone]]\nname = \"z\"\ninside = \"{deepest}\"\n");
+    let statement = read(&text).statement(0);
+    let printed = statement.to_json().print();
+    let limits = keepout_checker::Limits::default();
+    let back = keepout_checker::statement::Statement::from_json(&printed, &limits);
+    assert_eq!(back.ok(), Some(statement));
+    // A certificate holds the statement one level deeper.
+    let inside_a_certificate = format!("{{\"statement\": {printed}}}");
+    assert!(keepout_checker::json::read(&inside_a_certificate, &limits).is_ok());
+}
+
+#[test]
+fn the_examples_of_the_documentation_are_accepted() {
+    let here = Path::new(env!("CARGO_MANIFEST_DIR"));
+    let page = std::fs::read_to_string(here.join("../../docs/model-format.md")).expect("the page");
+    let examples: Vec<&str> = page.split("```toml\n").skip(1).filter_map(|rest| rest.split("```").next()).collect();
+    assert_eq!(examples.len(), 2);
+    for example in examples {
+        let model = load_text(example, "example", "m", &here.join("tests/models/good"), Need::Zones);
+        model.unwrap_or_else(|d| panic!("{d}"));
+    }
 }

@@ -6,8 +6,8 @@ use super::syntax::{Comparator, Node, NodeKind};
 use crate::diagnostic::Diagnostic;
 use keepout_checker::statement::{Atom, Formula, Relation};
 
-/// The most levels of alternating `and` and `or`: what the statement's text has room for.
-pub const MAX_NESTING: usize = 24;
+/// The most levels of alternating `and` and `or`: printing a statement takes four times as long with each level.
+pub const MAX_NESTING: usize = 8;
 
 /// The most comparisons of a condition, the cases of `abs` counted.
 pub const MAX_COMPARISONS: usize = 10_000;

@@ -1,0 +1,175 @@
+//! The program: exit statuses, output, evidence.
+
+use keepout_checker::Limits;
+use keepout_checker::certificate::Certificate;
+use keepout_checker::statement::Statement;
+use std::path::{Path, PathBuf};
+use std::process::{Command, Output, Stdio};
+
+fn keepout(arguments: &[&str]) -> Output {
+    Command::new(env!("CARGO_BIN_EXE_keepout")).args(arguments).output().expect("the program runs")
+}
+
+fn status(output: &Output) -> i32 {
+    output.status.code().expect("an exit status, not a signal")
+}
+
+fn text(bytes: &[u8]) -> String {
+    String::from_utf8(bytes.to_vec()).expect("UTF-8")
+}
+
+/// A folder of its own for a test.
+fn folder(name: &str) -> PathBuf {
+    let path = Path::new(env!("CARGO_TARGET_TMPDIR")).join(name);
+    let _ = std::fs::remove_dir_all(&path);
+    std::fs::create_dir_all(&path).expect("a folder");
+    path
+}
+
+/// A decaying and an oscillating state, with zones given as name and condition.
+fn model(folder: &Path, zones: &[(&str, &str)]) -> String {
+    let mut model = String::from(
+        "title = \"m\"\n[state.x]\nstart = 1\nrate = \"-x\"\n[state.p]\nstart = 1\nrate = \"q\"\n[state.q]\nstart = 0\nrate = \"-p\"\n",
+    );
+    for (name, inside) in zones {
+        model.push_str(&format!("[[zone]]\nname = \"{name}\"\ninside = \"{inside}\"\n"));
+    }
+    let path = folder.join("m.toml");
+    std::fs::write(&path, model).expect("the model is written");
+    path.to_string_lossy().into_owned()
+}
+
+#[test]
+fn the_exit_status_says_what_became_of_the_zones() {
+    let folder = folder("statuses");
+    let clear = model(&folder, &[("a", "x > 2"), ("b", "p > 1.5")]);
+    assert_eq!(status(&keepout(&["certify", &clear])), 0);
+    let entered = model(&folder, &[("a", "x > 2"), ("b", "x < 0.5")]);
+    assert_eq!(status(&keepout(&["certify", &entered])), 1);
+    let chosen = model(&folder, &[("a", "x < 0.5"), ("b", "p > 1.5")]);
+    assert_eq!(status(&keepout(&["certify", &chosen, "--zone", "b"])), 0);
+    // p returns to 1 - x for ever more closely, and with too little work nothing is decided
+    let unsettled = model(&folder, &[("a", "x > 2"), ("b", "p >= 1.5 - x and t > 1")]);
+    assert_eq!(status(&keepout(&["certify", &unsettled, "--effort", "0"])), 2);
+    let wrong = model(&folder, &[("a", "x == 2")]);
+    assert_eq!(status(&keepout(&["certify", &wrong])), 3);
+    let none = model(&folder, &[]);
+    assert_eq!(status(&keepout(&["certify", &none])), 3);
+    assert_eq!(status(&keepout(&["spectrum", &none])), 0);
+}
+
+#[test]
+fn every_misuse_of_the_command_line_exits_with_3() {
+    for arguments in [
+        &[][..],
+        &["certify"],
+        &["bogus"],
+        &["--bogus"],
+        &["certify", "a", "b"],
+        &["certify", "absent.toml"],
+        &["certify", "."],
+        &["certify", "a.toml", "--effort", "many"],
+        &["certify", "a.toml", "--zone"],
+        &["spectrum"],
+        &["spectrum", "absent.toml"],
+    ] {
+        let output = keepout(arguments);
+        assert_eq!(status(&output), 3, "{arguments:?}");
+        assert!(output.stdout.is_empty(), "{arguments:?}: messages go to standard error");
+        assert!(!output.stderr.is_empty(), "{arguments:?}");
+    }
+}
+
+#[test]
+fn help_and_version_exit_with_0() {
+    for arguments in [&["--help"][..], &["--version"], &["certify", "--help"], &["help"], &["spectrum", "--help"]] {
+        let output = keepout(arguments);
+        assert_eq!(status(&output), 0, "{arguments:?}");
+        assert!(!output.stdout.is_empty(), "{arguments:?}");
+    }
+}
+
+#[test]
+fn an_unknown_zone_is_answered_with_the_nearest_and_all_names() {
+    let path = model(&folder("names"), &[("end stop", "x > 2"), ("over speed", "p > 3")]);
+    let output = keepout(&["certify", &path, "--zone", "end-stop"]);
+    assert_eq!(status(&output), 3);
+    let message = text(&output.stderr);
+    assert!(message.contains("no zone `end-stop`") && message.contains("did you mean `end stop`?"), "{message}");
+    assert!(message.contains("over speed"), "{message}");
+}
+
+#[test]
+fn messages_have_place_line_and_caret_and_no_colour() {
+    let path = model(&folder("messages"), &[("a", "x > 2y")]);
+    let output = keepout(&["certify", &path]);
+    let message = text(&output.stderr);
+    assert!(message.starts_with(&format!("{path}:13:16: expected an operator before this\n")), "{message}");
+    assert!(message.contains("13 | inside = \"x > 2y\"\n   |                ^\n"), "{message}");
+    assert!(!message.contains('\u{1b}'), "{message}");
+}
+
+#[test]
+fn json_is_one_object_with_a_verdict_for_each_chosen_zone() {
+    let path = model(&folder("json"), &[("a", "x > 2"), ("b", "x < 0.5"), ("c", "p > 7")]);
+    let output = keepout(&["certify", &path, "--json", "--zone", "b", "--zone", "a", "--zone", "b"]);
+    assert_eq!(status(&output), 1);
+    let report: serde_json::Value = serde_json::from_slice(&output.stdout).expect("one JSON object");
+    let zones = report["zones"].as_array().expect("zones");
+    assert_eq!(zones.len(), 2);
+    assert_eq!((&zones[0]["name"], &zones[0]["verdict"]), (&"b".into(), &"enters".into()));
+    assert_eq!((&zones[1]["name"], &zones[1]["verdict"]), (&"a".into(), &"clear".into()));
+    for key in ["from", "to"] {
+        let exact = zones[0]["time"][key].as_str().expect("a string");
+        let (p, q) = exact.split_once('/').unwrap_or((exact, "1"));
+        let value = p.parse::<f64>().expect("a number") / q.parse::<f64>().expect("a number");
+        assert!((value - std::f64::consts::LN_2).abs() < 1e-3, "exp(-t) = 1/2 at ln 2, {key} is {exact}");
+    }
+    assert_eq!(zones[0]["time"]["first"], true);
+    assert!(zones[1]["margin"].is_string());
+}
+
+#[test]
+fn evidence_can_be_read_and_is_checked_again() {
+    let folder = folder("evidence");
+    let nested = "x > 3 and (p > 3 or (x > 9 and (p > 9 or q > 9)))";
+    let path = model(&folder, &[("end stop", "abs(x) >= 2"), ("nested", nested), ("b", "x < 0.5")]);
+    let out = folder.join("out");
+    let output = keepout(&["certify", &path, "--out", &out.to_string_lossy()]);
+    assert_eq!(status(&output), 1, "{}", text(&output.stderr));
+    for zone in ["end stop", "nested", "b"] {
+        let read = |what: &str| std::fs::read_to_string(out.join(format!("{zone}.{what}.json"))).expect("evidence");
+        let limits = Limits::default();
+        let statement = Statement::from_json(&read("statement"), &limits).unwrap_or_else(|e| panic!("{zone}: {e}"));
+        let certificate =
+            Certificate::from_json(&read("certificate"), &limits).unwrap_or_else(|e| panic!("{zone}: {e}"));
+        assert_eq!(statement.zone.name, zone);
+        assert!(keepout_checker::check(&statement, &certificate, &limits).is_ok(), "{zone}");
+    }
+}
+
+#[test]
+fn a_reader_that_goes_away_is_no_panic() {
+    let path = model(&folder("pipe"), &[("a", "x > 2")]);
+    for arguments in [&["certify", path.as_str()][..], &["spectrum", path.as_str()], &["--help"]] {
+        let mut child = Command::new(env!("CARGO_BIN_EXE_keepout"))
+            .args(arguments)
+            .stdout(Stdio::piped())
+            .stderr(Stdio::piped())
+            .spawn()
+            .expect("the program runs");
+        drop(child.stdout.take());
+        let output = child.wait_with_output().expect("the program ends");
+        assert_eq!(status(&output), 0, "{arguments:?}");
+        assert!(output.stderr.is_empty(), "{arguments:?}: {}", text(&output.stderr));
+    }
+}
+
+#[test]
+fn bytes_that_are_not_text_are_refused_with_their_place() {
+    let path = folder("bytes").join("m.toml");
+    std::fs::write(&path, b"title = \"a\"\n# caf\xe9\n").expect("the model is written");
+    let output = keepout(&["certify", &path.to_string_lossy()]);
+    assert_eq!(status(&output), 3);
+    assert!(text(&output.stderr).contains(":2:6: expected UTF-8 text"), "{}", text(&output.stderr));
+}
