@@ -30,23 +30,26 @@ impl Value {
     /// The value as JSON: short lists and objects on one line, others one entry a line.
     pub fn print(&self) -> String {
         let mut out = String::new();
-        self.write(&mut out, 0);
-        out.push('\n');
-        out
+        self.write(&mut out, 0, usize::MAX);
+        out + "\n"
     }
 
-    fn write(&self, out: &mut String, indent: usize) {
+    /// Nothing is written once the text is longer than `limit`: an attempt to stay on one line ends early.
+    fn write(&self, out: &mut String, indent: usize, limit: usize) {
         match self {
+            _ if out.len() > limit => {}
             Self::Bool(value) => out.push_str(if *value { "true" } else { "false" }),
             Self::Text(text) => write_text(out, text),
-            Self::List(items) => {
-                write_block(out, indent, ('[', ']'), items, |out, item, inner| item.write(out, inner));
-            }
-            Self::Object(fields) => write_block(out, indent, ('{', '}'), fields, |out, (key, value), inner| {
-                write_text(out, key);
-                out.push_str(": ");
-                value.write(out, inner);
+            Self::List(items) => write_block(out, indent, limit, ('[', ']'), items, |out, item, inner, limit| {
+                item.write(out, inner, limit);
             }),
+            Self::Object(fields) => {
+                write_block(out, indent, limit, ('{', '}'), fields, |out, (key, value), inner, limit| {
+                    write_text(out, key);
+                    out.push_str(": ");
+                    value.write(out, inner, limit);
+                })
+            }
         }
     }
 }
@@ -64,18 +67,20 @@ pub(crate) fn object(fields: Vec<(&str, Value)>) -> Value {
 fn write_block<T>(
     out: &mut String,
     indent: usize,
+    limit: usize,
     brackets: (char, char),
     items: &[T],
-    write: impl Fn(&mut String, &T, usize),
+    write: impl Fn(&mut String, &T, usize, usize),
 ) {
     let start = out.len();
+    let line_end = limit.min((start + 110).saturating_sub(indent));
     out.push(brackets.0);
     for (i, item) in items.iter().enumerate() {
         out.push_str(if i == 0 { "" } else { ", " });
-        write(out, item, indent);
+        write(out, item, indent, line_end);
     }
     out.push(brackets.1);
-    if out.len() - start + indent <= 110 {
+    if out.len() <= line_end || limit < usize::MAX {
         return;
     }
     out.truncate(start);
@@ -83,7 +88,7 @@ fn write_block<T>(
     for (i, item) in items.iter().enumerate() {
         out.push_str(if i == 0 { "\n" } else { ",\n" });
         out.extend(std::iter::repeat_n(' ', indent + 2));
-        write(out, item, indent + 2);
+        write(out, item, indent + 2, limit);
     }
     out.push('\n');
     out.extend(std::iter::repeat_n(' ', indent));

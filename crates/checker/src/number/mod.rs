@@ -12,8 +12,3 @@ pub use dyadic::{Direction, Dyadic};
 pub use interval::Interval;
 
 pub use crate::statement::Rational;
-
-/// The length in bits of the longer of numerator and denominator.
-pub fn rational_bits(value: &Rational) -> u64 {
-    value.numer().bits().max(value.denom().bits())
-}
