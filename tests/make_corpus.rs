@@ -155,6 +155,11 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
         ("entry", "rational_time", proved(&cubic.statement(atom(&[("1", x)], Relation::NonPositive)))),
         (
             "entry",
+            "transcendental_time",
+            proved(&rotation.statement(atom(&[("1", y), ("-1", &[])], Relation::NonNegative))),
+        ),
+        (
+            "entry",
             "irrational_time",
             proved(
                 &irrational
@@ -383,6 +388,25 @@ fn reject_cones(base: &impl Fn(&str) -> Certificate) {
 
 fn reject_entries(base: &impl Fn(&str) -> Certificate) {
     let rule = "entry";
+    reject(rule, "root_of_another_square", "refuted trace ProductEqualsTrace", base("transcendental_time"), |c| {
+        let position = c.products[0].pivot;
+        c.auxiliaries[position].derivatives[0] = rational("2");
+    });
+    reject(
+        rule,
+        "open_zone_touched_by_a_square",
+        "refuted entry ZoneIsProvedAtInstant",
+        base("transcendental_time"),
+        |c| {
+            if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+                atom.relation = Relation::Positive;
+            }
+            cells(c).clear();
+            if let Claim::Enters { first, .. } = &mut c.statement.claim {
+                *first = false;
+            }
+        },
+    );
     let in_window = "refuted entry InstantIsInWindow";
     reject(rule, "outside_the_bracket", in_window, base("instant@entry"), |c| {
         c.statement.claim = Claim::Enters { from: rational("0"), to: rational("1/10"), first: false };

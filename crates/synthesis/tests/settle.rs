@@ -144,10 +144,10 @@ fn relative_orbits_are_settled() {
 }
 
 #[test]
-fn touches_at_transcendental_times_are_unsettled() {
+fn touches_at_transcendental_times_are_settled_where_the_trace_is_a_square() {
     let a: &[&[&str]] = &[&["0", "1"], &["-1", "0"]];
     let p: &[(&str, &[u32])] = &[("1", &[1, 0]), ("-1", &[])];
-    assert!(word(&statement(a, &["0", "0"], &["0", "1"], p, Relation::NonNegative)).starts_with("unsettled Touches"));
+    assert!(word(&statement(a, &["0", "0"], &["0", "1"], p, Relation::NonNegative)).starts_with("enters"));
     let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-1", "0", "0", "0"], &["0", "0", "0", "1"], &["0", "0", "-2", "0"]];
     let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-2", &[])];
     assert!(

@@ -6,3 +6,4 @@ pub(crate) mod entry;
 pub(crate) mod equality;
 pub(crate) mod pivot;
 pub(crate) mod root;
+pub(crate) mod square;

@@ -2,6 +2,7 @@
 
 use crate::enclosure::Enclosure;
 use crate::problem::Problem;
+use crate::strategy::square::square_root;
 use keepout_checker::certificate::{Auxiliary, Cell, Factor, Pivot, Product, Sign};
 use keepout_checker::number::Rational;
 use keepout_core::{IntegerPolynomial, factorize};
@@ -35,6 +36,9 @@ pub(crate) enum Touch {
     /// The zone is true where the pivot vanishes, which it does.
     Entered(Cell),
 }
+
+/// A trace, the power of the pivot in it, and the cofactor.
+type Split = (usize, u32, Auxiliary);
 
 /// A cell after t = 0 in which the zone is entered is made this short: 2^-34, times the first length tried.
 const START_HALVINGS: u32 = 80;
@@ -127,8 +131,28 @@ impl Pivots {
         problem: &mut Problem,
         enclosure: &mut Enclosure,
     ) -> Touch {
-        for candidate in candidates(a, b, problem).into_iter().filter(|w| !w[0].is_zero()) {
-            match self.touch_with(&candidate, a, b, problem, enclosure) {
+        let mut pivots: Vec<(usize, Vec<Split>)> = Vec::new();
+        for w in candidates(a, b, problem).into_iter().filter(|w| !w[0].is_zero()) {
+            let splits: Vec<Split> = (0..problem.sequences.len())
+                .filter_map(|i| divided(i, &w, problem).map(|(power, cofactor)| (i, power, cofactor)))
+                .collect();
+            if !splits.is_empty() {
+                pivots.extend(self.polynomial(&w, problem).map(|pivot| (pivot, splits)));
+            }
+        }
+        for i in 0..problem.sequences.len() {
+            if let Some((kappa, root)) = square_root(i, problem) {
+                let constant = constant(&kappa, problem);
+                let pivot = self.auxiliary(root);
+                pivots.extend(constant.map(|cofactor| (pivot, vec![(i, 2, cofactor)])));
+            }
+        }
+        let limits = enclosure.limits().clone();
+        if pivots.is_empty() || Enclosure::new(problem, enclosure.bits, &limits).map(|e| *enclosure = e).is_err() {
+            return Touch::None;
+        }
+        for (pivot, splits) in pivots {
+            match self.touch_with(pivot, splits, a, b, problem, enclosure) {
                 Some(Touch::None) | None => {}
                 Some(found) => return found,
             }
@@ -138,20 +162,13 @@ impl Pivots {
 
     fn touch_with(
         &mut self,
-        w: &[Rational],
+        pivot: usize,
+        splits: Vec<Split>,
         a: &Rational,
         b: &Rational,
-        problem: &mut Problem,
+        problem: &Problem,
         enclosure: &mut Enclosure,
     ) -> Option<Touch> {
-        let splits: Vec<(usize, u32, Auxiliary)> = (0..problem.sequences.len())
-            .filter_map(|i| divided(i, w, problem).map(|(power, cofactor)| (i, power, cofactor)))
-            .collect();
-        if splits.is_empty() {
-            return None;
-        }
-        let pivot = self.polynomial(w, problem)?;
-        *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
         let order = enclosure.order(a, b);
         let mut plain: Vec<Option<Sign>> =
             (0..problem.sequences.len()).map(|i| enclosure.sign(problem, i, a, b, order)).collect();
@@ -175,8 +192,11 @@ impl Pivots {
         if truths == [Some(false); 3] {
             return Some(Touch::Clear(cell));
         }
-        let value = |t: &Rational| w.iter().rev().fold(Rational::zero(), |sum, c| sum * t + c);
-        let changes = value(a) * value(b) < Rational::zero();
+        let root = self.auxiliaries[pivot].clone();
+        let form = enclosure.closed_form(&root.factors, &root.derivatives).ok()?;
+        let mut at = |t: &Rational| enclosure.on_stretch(&form, t, t, order).and_then(|v| v.certain_sign());
+        let ends = (at(a)?, at(b)?);
+        let changes = ends.0 == ends.1.reverse() && ends.0 != Ordering::Equal;
         (changes && truths[1] == Some(true)).then_some(Touch::Entered(cell))
     }
 
@@ -188,18 +208,28 @@ impl Pivots {
         position_or_push(&mut self.products, product)
     }
 
-    /// The auxiliary function that is a polynomial in t.
+    /// The position of the auxiliary function that is a polynomial in t.
     fn polynomial(&mut self, coefficients: &[Rational], problem: &mut Problem) -> Option<usize> {
-        let family = problem.family(&IntegerPolynomial::variable())?;
-        let factors = vec![Factor { family, multiplicity: u32::try_from(coefficients.len()).ok()? }];
-        let mut factorial = Rational::one();
-        let mut derivatives = Vec::new();
-        for (k, c) in coefficients.iter().enumerate() {
-            factorial *= Rational::from_integer(BigInt::from(k.max(1)));
-            derivatives.push(c * &factorial);
-        }
-        Some(self.auxiliary(Auxiliary { factors, derivatives }))
+        polynomial(coefficients, problem).map(|auxiliary| self.auxiliary(auxiliary))
     }
+}
+
+/// The function that is a polynomial in t.
+fn polynomial(coefficients: &[Rational], problem: &mut Problem) -> Option<Auxiliary> {
+    let family = problem.family(&IntegerPolynomial::variable())?;
+    let factors = vec![Factor { family, multiplicity: u32::try_from(coefficients.len()).ok()? }];
+    let mut factorial = Rational::one();
+    let mut derivatives = Vec::new();
+    for (k, c) in coefficients.iter().enumerate() {
+        factorial *= Rational::from_integer(BigInt::from(k.max(1)));
+        derivatives.push(c * &factorial);
+    }
+    Some(Auxiliary { factors, derivatives })
+}
+
+/// The function that is a constant.
+fn constant(value: &Rational, problem: &mut Problem) -> Option<Auxiliary> {
+    polynomial(std::slice::from_ref(value), problem)
 }
 
 fn position_or_push<T: PartialEq>(list: &mut Vec<T>, item: T) -> usize {
