@@ -222,7 +222,10 @@ fn read_lead(field: &Field, counts: &Counts) -> Result<Option<Lead>, Rejection> 
         (None, Some(doubled)) => RealPart::Doubled(doubled.each(|f| f.position(counts.sums))?),
         (Some(_), Some(_)) => return Err(field.refuse("line or doubled, not both")),
     };
-    Ok(Some(Lead { roots: field.get("roots")?.each(|f| f.position(counts.roots))?, real_part }))
+    Ok(Some(Lead {
+        roots: bounded(&field.get("roots")?, "roots", field.limits().roots)?.each(|f| f.position(counts.roots))?,
+        real_part,
+    }))
 }
 
 fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {

@@ -114,13 +114,8 @@ impl LeadForm {
     }
 
     /// The number of leading terms.
-    pub fn len(&self) -> usize {
+    pub fn count(&self) -> usize {
         self.waves.len()
-    }
-
-    /// Whether there is no leading term.
-    pub fn is_empty(&self) -> bool {
-        self.waves.is_empty()
     }
 
     /// A bound of |r| for all times from t0 on.
@@ -136,16 +131,11 @@ fn power_of_start(start: &Interval, numerator: usize, denominator: usize, bits: 
     if numerator >= denominator { Some(power) } else { power.recip(bits) }
 }
 
-/// The side of the box of angles that covers the torus: 44/7 > 2 pi.
+/// The box that covers the torus of this dimension: its side 44/7 is more than 2 pi.
 ///
 /// Source: pi < 22/7 (Archimedes, Measurement of a Circle, prop. 3; 22/7 - pi is the integral of x^4 (1-x)^4 / (1+x^2) over [0, 1]).
-pub fn full_turn() -> Rational {
-    Rational::new(44.into(), 7.into())
-}
-
-/// The box that covers the torus of this dimension.
 pub fn whole_torus(dimension: usize) -> AngleBox {
-    let half = full_turn() / Rational::from_integer(2_i32.into());
+    let half = Rational::new(22_i32.into(), 7_i32.into());
     vec![(half.clone(), half); dimension]
 }
 

@@ -40,9 +40,9 @@ pub struct Limits {
 impl Default for Limits {
     fn default() -> Self {
         Self {
-            text_bytes: 1 << 28,
+            text_bytes: 1 << 25,
             nesting: 64,
-            number_length: 100_000,
+            number_length: 10_000,
             statement_entries: 10_000,
             degree: 24,
             derivatives: 4_000,
@@ -54,7 +54,7 @@ impl Default for Limits {
             nodes: 400_000,
             dimension: 8,
             multiplier_bits: 16,
-            work: 20_000_000_000,
+            work: 5_000_000_000,
         }
     }
 }

@@ -59,8 +59,7 @@ impl Model {
         let mut traces = Vec::new();
         for (position, (polynomial, factors)) in formula.polynomials.iter().zip(&certificate.traces).enumerate() {
             check_degree(factors, &table, limits)?;
-            let (order, sequence) = flow.trace(polynomial)?;
-            budget.spend(order.saturating_mul(order), certificate.bits)?;
+            let (order, sequence) = flow.trace(polynomial, budget)?;
             let m = table.product(factors).ok_or_else(|| fits.refuted())?;
             // The order bound N holds for m(d/dt) g: N vanishing derivatives at 0 make it zero (see `Flow::order_bound`).
             let annihilates = sequence.is_annihilated(&m, order);

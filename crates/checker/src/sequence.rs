@@ -7,7 +7,7 @@
 //! `rate` is one positive integer for all sequences of a statement: it clears the denominators of the dynamics.
 
 use crate::error::Rejection;
-use crate::limits::{Limits, within};
+use crate::limits::{Budget, Limits, within};
 use crate::number::Rational;
 use crate::polynomial::Polynomial;
 use crate::statement::{Affine, Drive, Expression, SignalTerm, Statement, Variable, Wave};
@@ -34,13 +34,8 @@ impl Sequence {
     }
 
     /// How many derivatives are known.
-    pub fn len(&self) -> usize {
+    pub fn count(&self) -> usize {
         self.values.len()
-    }
-
-    /// Whether no derivative is known.
-    pub fn is_empty(&self) -> bool {
-        self.values.is_empty()
     }
 
     /// The integers y_k denominator rate^k.
@@ -261,10 +256,16 @@ impl<'a> Flow<'a> {
     /// # Errors
     /// [`Rejection::LimitExceeded`] where the order bound or the degree is beyond the limits; [`Rejection::Malformed`] where
     /// the expression names a quantity that the statement does not declare.
-    pub fn trace(&self, expression: &Expression) -> Result<(usize, Sequence), Rejection> {
+    pub fn trace(&self, expression: &Expression, budget: &mut Budget) -> Result<(usize, Sequence), Rejection> {
         let order = self.order_bound(expression)?;
         let length = 2 * order.max(1);
-        let mut known = self.variables(&self.support(expression), length);
+        let support = self.support(expression);
+        // The k-th values are about as long as rate^k: so long sums for each state, and products for each factor of a term.
+        let words = usize::try_from(self.rate.bits()).unwrap_or(usize::MAX).saturating_mul(length) / 64 + 1;
+        budget.spend(words.saturating_mul(length).saturating_mul(100 * support.len()), 1)?;
+        let factors = expression.terms.len() * self.degree(expression).saturating_sub(1).min(length);
+        budget.spend(factors.saturating_mul(length * length).saturating_mul(words), 1)?;
+        let mut known = self.variables(&support, length);
         for (i, output) in self.statement.outputs.iter().enumerate() {
             let value = self.evaluate(&output.value, &known, length);
             known.extend(value.map(|sequence| (Variable::Output(i), sequence)));

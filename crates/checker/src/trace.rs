@@ -67,7 +67,8 @@ impl ClosedForm {
         let mut terms = Vec::new();
         for factor in factors {
             for (index, root) in table.roots().iter().enumerate().filter(|(_, r)| r.family == factor.family) {
-                budget.spend(2 * m.degree() * usize::try_from(factor.multiplicity).unwrap_or(usize::MAX), bits)?;
+                let multiplicity = usize::try_from(factor.multiplicity).unwrap_or(usize::MAX);
+                budget.spend((m.degree() * multiplicity).saturating_mul(multiplicity + 2), bits)?;
                 let series = coefficients(factors, *factor, &numerator, &root.value, table, bits);
                 let coefficients = series.ok_or_else(|| duty.inconclusive())?;
                 terms.push(Term { root: index, exponent: root.value.clone(), is_real: root.is_real, coefficients });
@@ -92,7 +93,8 @@ impl ClosedForm {
         let mut sums = vec![Interval::integer(0); order];
         let mut slack = Dyadic::zero();
         for term in &self.terms {
-            budget.spend(order + usize::try_from(stretch.bits / 4).unwrap_or(0) + 64, stretch.bits)?;
+            let size = (order + term.coefficients.len()).saturating_mul(term.coefficients.len());
+            budget.spend(size + usize::try_from(stretch.bits / 4).unwrap_or(0) + 64, stretch.bits)?;
             let Some(tail) = term.expand(stretch, &h, drop, &mut sums) else { return Ok(None) };
             slack = slack.add(&tail, stretch.bits, Up);
         }

@@ -10,6 +10,7 @@
 
 mod sample;
 
+use keepout_checker::limits::Budget;
 use keepout_checker::number::Rational;
 use keepout_checker::polynomial::Polynomial;
 use keepout_checker::sequence::{Flow, Sequence};
@@ -23,8 +24,9 @@ fn monomial(coefficient: &str, powers: &[(Variable, u32)]) -> Term {
 
 fn derivatives(statement: &Statement, terms: Vec<Term>, count: usize) -> Vec<Rational> {
     let limits = Limits::default();
-    let (order, sequence) = Flow::new(statement, &limits).trace(&Expression { terms }).unwrap();
-    assert_eq!(sequence.len(), 2 * order);
+    let (order, sequence) =
+        Flow::new(statement, &limits).trace(&Expression { terms }, &mut Budget::new(&limits)).unwrap();
+    assert_eq!(sequence.count(), 2 * order);
     sequence.derivatives(count)
 }
 
@@ -148,7 +150,7 @@ fn an_annihilator_is_proved_by_all_its_equations_and_by_no_fewer() {
     let limits = Limits::default();
     let x = Expression { terms: vec![monomial("1", &[(Variable::State(0), 1)])] };
     // 1, x, y: order bound 3.
-    let (order, sequence) = Flow::new(&rotation, &limits).trace(&x).unwrap();
+    let (order, sequence) = Flow::new(&rotation, &limits).trace(&x, &mut Budget::new(&limits)).unwrap();
     assert_eq!(order, 3);
     let polynomial = |text: &str| Polynomial::new(text.split_whitespace().map(rational).collect());
     assert!(sequence.is_annihilated(&polynomial("1 0 1"), order));
@@ -167,7 +169,9 @@ fn an_annihilator_is_proved_by_all_its_equations_and_by_no_fewer() {
 fn order_bounds_count_states_and_exponents_once() {
     let full = statement(FULL_STATEMENT);
     let limits = Limits::default();
-    let order = |terms| Flow::new(&full, &limits).trace(&Expression { terms }).map(|(order, _)| order);
+    let order = |terms| {
+        Flow::new(&full, &limits).trace(&Expression { terms }, &mut Budget::new(&limits)).map(|(order, _)| order)
+    };
     // Exponents of the torque: 0 (1), -2 (t^2: 3), +-12 i (2), -1/2 +- i (t: 4); with two states 12.
     assert_eq!(order(vec![monomial("1", &[(Variable::Drive(0), 1)])]), Ok(10));
     assert_eq!(order(vec![monomial("1", &[(Variable::State(0), 1)])]), Ok(12));
@@ -183,7 +187,8 @@ fn names_that_are_not_declared_have_no_trace() {
     let full = statement(FULL_STATEMENT);
     let limits = Limits::default();
     for variable in [Variable::State(2), Variable::Drive(1), Variable::Output(1)] {
-        let trace = Flow::new(&full, &limits).trace(&Expression { terms: vec![monomial("1", &[(variable, 1)])] });
+        let trace = Flow::new(&full, &limits)
+            .trace(&Expression { terms: vec![monomial("1", &[(variable, 1)])] }, &mut Budget::new(&limits));
         assert!(matches!(trace, Err(Rejection::Malformed { .. })), "{variable:?}");
     }
     // An offset counts once, at the first derivative.

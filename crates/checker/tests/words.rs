@@ -273,7 +273,7 @@ fn the_program_refuses_what_it_cannot_read() {
     let (status, out, _) = run(&[&claim, &long]);
     std::fs::remove_file(&long).unwrap();
     assert_eq!(status, 2);
-    assert!(out.contains("limit text_bytes: at most 268435456, found 268435457"), "{out}");
+    assert!(out.contains("limit text_bytes: at most 33554432, found 33554433"), "{out}");
 }
 
 #[test]

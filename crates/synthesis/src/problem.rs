@@ -4,6 +4,7 @@ use keepout_checker::Limits;
 use keepout_checker::certificate::Factor;
 use keepout_checker::error::Rejection;
 use keepout_checker::formula::{IndexedFormula, claimed_formula};
+use keepout_checker::limits::Budget;
 use keepout_checker::sequence::{Flow, Sequence};
 use keepout_checker::statement::{Claim, Statement};
 use keepout_core::{IntegerPolynomial, factorize, minimal_annihilator};
@@ -27,10 +28,11 @@ impl Problem {
         let zone = claimed_formula(&statement).unwrap_or_else(|| statement.zone.inside.clone());
         let formula = IndexedFormula::new(&zone);
         let flow = Flow::new(&statement, limits);
+        let mut budget = Budget::new(limits);
         let mut sequences = Vec::new();
         let mut annihilators = Vec::new();
         for polynomial in &formula.polynomials {
-            let (order, sequence) = flow.trace(polynomial)?;
+            let (order, sequence) = flow.trace(polynomial, &mut budget)?;
             let exceeded =
                 Rejection::LimitExceeded { limit: "derivatives", max: limits.derivatives, found: order as u64 };
             annihilators.push(unscaled(&sequence).ok_or(exceeded)?);

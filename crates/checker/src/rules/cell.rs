@@ -65,7 +65,7 @@ pub(crate) fn prove_signs(
                 let trace = model.traces.get(*index).ok_or_else(|| on_cell.refuted())?;
                 let power = usize::try_from(*power).unwrap_or(usize::MAX);
                 let vanishes =
-                    trace.sequence.len() >= power && trace.sequence.values().iter().take(power).all(Zero::is_zero);
+                    trace.sequence.count() >= power && trace.sequence.values().iter().take(power).all(Zero::is_zero);
                 Duty::new(rule, Obligation::VanishesAtStart, position).ensure(vanishes)?;
                 let zero = Rational::zero();
                 let stretch = Stretch { centre: &zero, half_width: &cell.to, ..stretch };

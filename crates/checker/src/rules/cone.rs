@@ -61,7 +61,7 @@ fn check_leaf(
             on_leaf.ensure(*sign == Ordering::Equal)?;
         } else {
             let form = forms.get(*index).and_then(Option::as_ref).ok_or_else(|| on_leaf.refuted())?;
-            budget.spend(40 * form.len(), certificate.bits)?;
+            budget.spend(200 * form.count(), certificate.bits)?;
             on_leaf.sign(&form.enclose(angles).ok_or_else(|| on_leaf.inconclusive())?, *sign)?;
         }
         set(&mut signs, *index, *sign);
@@ -79,7 +79,9 @@ fn lead_forms(cone: &Cone, on: Setting, budget: &mut Budget) -> Result<Vec<Optio
             forms.push(None);
             continue;
         };
-        budget.spend(100 * trace.form.terms.len(), certificate.bits)?;
+        // A line of symmetry is shown by a product of polynomials for each root.
+        let size = model.table.roots().len();
+        budget.spend((size * size).saturating_mul(64 * lead.roots.len()) + 100 * size, certificate.bits)?;
         let rho_lo = check_real_parts(position, lead, on)?;
         let mut leading = Vec::new();
         for root in &lead.roots {

@@ -21,16 +21,19 @@ pub(crate) fn check(position: usize, sum: &Sum, on: Setting, budget: &mut Budget
     let are_roots = Duty::new(Rule::Equality, Obligation::SumsAreRoots, position);
     let missing = || are_roots.refuted();
     let mut left = vec![Rational::one()];
-    let mut size = 1_usize;
+    let (mut size, mut length) = (1_usize, 8_u64);
     let mut polynomials = Vec::new();
     for (times, part) in &sum.parts {
         let root = model.table.get(*part).ok_or_else(missing)?;
         let polynomial = model.table.polynomial(root.family).ok_or_else(missing)?;
         size = size.saturating_mul(polynomial.degree());
+        length += polynomial.coefficients().iter().map(|c| c.numer().bits() + c.denom().bits()).sum::<u64>();
         polynomials.push((Rational::from_integer((*times).into()), polynomial.clone()));
     }
     within("derivatives", size, limits.derivatives)?;
-    budget.spend(size.saturating_mul(size), certificate.bits)?;
+    // The k-th power sums are at most about k times as long as all coefficients together.
+    let bits = u32::try_from(length.saturating_mul(u64::try_from(size).unwrap_or(u64::MAX)) / 4).unwrap_or(u32::MAX);
+    budget.spend(size.saturating_mul(size), bits)?;
     left.resize(size + 1, Rational::zero());
     for (times, polynomial) in &polynomials {
         left = combined(&left, &scaled(&polynomial.power_sums(size), times));
@@ -64,13 +67,8 @@ fn normal(root: RootRef, model: &Model) -> RootRef {
 
 /// Power sums of the multiples.
 fn scaled(sums: &[Rational], times: &Rational) -> Vec<Rational> {
-    let mut power = Rational::one();
-    let mut result = Vec::new();
-    for s in sums {
-        result.push(s * &power);
-        power *= times;
-    }
-    result
+    let powers = std::iter::successors(Some(Rational::one()), |power| Some(power * times));
+    powers.zip(sums).map(|(power, s)| s * power).collect()
 }
 
 /// Power sums of all sums of two numbers.

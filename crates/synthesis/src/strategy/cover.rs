@@ -175,9 +175,12 @@ enum Undecided {
 /// A rational with a short binary expansion near the middle of [a, b].
 pub(crate) fn simple_middle(a: &Rational, b: &Rational) -> Rational {
     let middle = (a + b) / Rational::from_integer(2.into());
-    let width = b - a;
+    let width = approx_value(&(b - a));
+    if width <= 0.0 {
+        return middle;
+    }
     // 2^-k <= width / 64: rounding the middle to a multiple of it moves it by less than a hundredth of the width.
-    let k = 6 - (num_traits::ToPrimitive::to_f64(&width).unwrap_or(1.0)).log2().floor() as i64;
+    let k = 6_i64.saturating_sub(width.log2().floor() as i64);
     let power = Rational::from_integer(num_bigint::BigInt::from(1) << u64::try_from(k.clamp(0, 4000)).unwrap_or(0));
     let rounded = (middle.clone() * &power).round() / power;
     if *a < rounded && rounded < *b { rounded } else { middle }

@@ -16,7 +16,7 @@ use num_traits::{One, Zero};
 /// The constant kappa and the function h for one trace. Families may be added to the problem.
 pub(crate) fn square_root(index: usize, problem: &mut Problem) -> Option<(Rational, Auxiliary)> {
     let degree = problem.degree(&problem.factors[index]);
-    let count = problem.sequences[index].len().min(degree + 7);
+    let count = problem.sequences[index].count().min(degree + 7);
     let taylor = taylor(&problem.sequences[index].derivatives(count));
     let first = taylor.iter().position(|c| !c.is_zero())?;
     if first % 2 == 1 {
