@@ -1,4 +1,4 @@
-//! Settles the zones of `wrist_joint` from Rust: load the model, certify each zone, let the checker speak.
+//! Settles the zones of the wrist joint from Rust and prints the certified margins.
 
 use keepout::model::{Need, load};
 use keepout_synthesis::{Options, Outcome, certify};
@@ -7,10 +7,12 @@ use std::path::Path;
 fn main() -> Result<(), Box<dyn std::error::Error>> {
     let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("wrist_joint/model.toml");
     let model = load(&path, Need::Zones).map_err(|diagnostics| diagnostics.to_string())?;
-    for zone in 0..model.zones.len() {
+    for (zone, name) in model.zones.iter().map(|z| &z.name).enumerate() {
         match certify(&model.statement(zone), &Options::default())? {
-            Outcome::Clear { proof, .. } | Outcome::Enters { proof } => println!("{}", proof.statement().words()),
-            Outcome::Unsettled { reason, .. } => println!("{}: not settled: {reason:?}", model.zones[zone].name),
+            Outcome::Clear { margin: Some(margin), .. } => println!("{name}: clear by {}", margin.certified),
+            Outcome::Clear { margin: None, .. } => println!("{name}: clear"),
+            Outcome::Enters { proof } => println!("{name}: entered\n{}", proof.statement().words()),
+            Outcome::Unsettled { reason, .. } => println!("{name}: not settled: {reason:?}"),
         }
     }
     Ok(())
