@@ -154,6 +154,11 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
         ("entry", "crossing", proved(&servo.statement(atom(&[("1", x), ("-1/2", &[])], Relation::Zero)))),
         ("entry", "rational_time", proved(&cubic.statement(atom(&[("1", x)], Relation::NonPositive)))),
         (
+            "cover",
+            "square_for_all_time",
+            proved(&rotation.statement(atom(&[("1", y), ("-1", &[])], Relation::Positive))),
+        ),
+        (
             "entry",
             "transcendental_time",
             proved(&rotation.statement(atom(&[("1", y), ("-1", &[])], Relation::NonNegative))),
@@ -265,6 +270,20 @@ fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
 
 fn reject_covers(base: &impl Fn(&str) -> Certificate) {
     let rule = "cover";
+    let fits = "refuted cover EvidenceFitsClaim";
+    reject(rule, "timeless_cell_lists_a_sign", fits, base("square_for_all_time"), |c| {
+        cells(c)[0].signs.push((0, std::cmp::Ordering::Less));
+    });
+    reject(rule, "timeless_cell_with_another_annihilator", fits, base("square_for_all_time"), |c| {
+        let position = c.products[0].cofactor;
+        c.auxiliaries[position].factors[0].multiplicity += 1;
+        c.auxiliaries[position].derivatives.push(rational("0"));
+    });
+    reject(rule, "start_pivot_for_all_time", fits, base("start_touched"), |c| {
+        if let Evidence::Never { cone, .. } = &mut c.evidence {
+            *cone = None;
+        }
+    });
     let covers = "refuted cover CellsCoverWindow";
     reject(rule, "last_cell_missing", covers, base("window"), |c| drop(cells(c).pop()));
     reject(rule, "no_cell", covers, base("window"), |c| cells(c).clear());

@@ -1,6 +1,7 @@
 //! Spectral abscissae of open models, against python-flint (reference/spectrum.py).
 
 use keepout_checker::number::{Interval, Rational};
+use keepout_core::ToRational;
 use keepout_core::blocks::SparseMatrix;
 use keepout_core::structure::{StructureOptions, spectral_structure_with};
 use keepout_tests::reference::{bounds, group};

@@ -41,7 +41,9 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     let fits = Duty::new(Rule::Cover, Obligation::EvidenceFitsClaim, 0);
     match (&statement.claim, &certificate.evidence) {
         (Claim::Never { .. }, Evidence::Never { cells, cone: None }) => {
-            let until = zone.until.as_ref().ok_or_else(|| fits.refuted())?;
+            // Without an end, the last cell must hold for all time.
+            let timeless = cells.last().filter(|cell| cover::is_timeless(cell, on));
+            let until = zone.until.as_ref().or(timeless.map(|cell| &cell.to)).ok_or_else(|| fits.refuted())?;
             cover::check(&zone.from, until, cells, on, &mut budget)?;
         }
         (Claim::Never { .. }, Evidence::Never { cells, cone: Some(cone) }) => {

@@ -58,11 +58,6 @@ impl Polynomial {
         (0..exponent).fold(Self::one(), |product, _| product.mul(self))
     }
 
-    /// The value at a rational point.
-    pub fn value(&self, at: &Rational) -> Rational {
-        self.coefficients.iter().rev().fold(Rational::zero(), |sum, c| sum * at + c)
-    }
-
     /// The polynomial p(c - z).
     pub fn reflected(&self, c: &Rational) -> Self {
         let line = Self::new(vec![c.clone(), -Rational::one()]);

@@ -21,6 +21,7 @@ mod modular;
 mod modular_polynomial;
 pub mod root;
 pub mod structure;
+mod to_rational;
 
 pub use blocks::SparseMatrix;
 pub use characteristic::characteristic_polynomial;
@@ -34,3 +35,4 @@ pub use matrix::{IntegerMatrix, RationalMatrix};
 pub use minimal_polynomial::{minimal_polynomial, minimal_polynomial_at};
 pub use root::{RootDisc, enclose_roots};
 pub use structure::{SpectralStructure, spectral_structure};
+pub use to_rational::ToRational;

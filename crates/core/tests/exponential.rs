@@ -2,6 +2,7 @@
 //! themselves.
 
 use keepout_checker::number::{Complex, Interval};
+use keepout_core::ToRational;
 use keepout_core::{CoreError, IntervalMatrix, RationalMatrix, enclose_exponential};
 use num_bigint::BigInt;
 use num_rational::BigRational;

@@ -1,6 +1,7 @@
 //! The ring of exponential polynomials: identities, cancellations, exact coefficients, dominance, enclosures.
 
 use keepout_checker::number::{Complex, Dyadic, Interval};
+use keepout_core::ToRational;
 use keepout_core::structure::Evidence;
 use keepout_core::{CoreError, ExponentialPolynomial, IntegerPolynomial, RationalMatrix, enclose_exponential};
 use num_bigint::BigInt;

@@ -1,6 +1,7 @@
 //! Root discs against known roots, Sturm counts, Vieta's formulas and themselves at other precisions.
 
 use keepout_checker::number::{Dyadic, Interval};
+use keepout_core::ToRational;
 use keepout_core::{CoreError, IntegerPolynomial, RootDisc, enclose_roots};
 use num_bigint::BigInt;
 use num_rational::BigRational;

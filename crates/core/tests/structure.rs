@@ -1,5 +1,6 @@
 //! The structure of published and constructed matrices: Jordan indices, equal real parts, relations, growth.
 
+use keepout_core::ToRational;
 use keepout_core::structure::{Boundedness, Evidence, StructureOptions, pair_sum_polynomial, spectral_structure_with};
 use keepout_core::{
     IntegerPolynomial, RationalMatrix, SparseMatrix, SpectralStructure, characteristic_polynomial, factorize,

@@ -15,6 +15,7 @@ use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
 use keepout_checker::statement::{Claim, Formula, Relation};
 use keepout_core::IntegerPolynomial;
+use keepout_core::ToRational;
 use num_bigint::BigInt;
 use num_traits::{Signed, Zero};
 use std::cmp::Ordering;

@@ -24,6 +24,9 @@ pub(crate) enum Finding {
 /// The precisions tried, in turn.
 const FIRST_BITS: u32 = 96;
 
+/// An identity that holds for all time is looked for when no cone was found at the first so many starts.
+const TIMELESS_AFTER: u32 = 6;
+
 /// A cone's start is doubled at most so often.
 const MAX_DOUBLINGS: u32 = 60;
 
@@ -73,7 +76,17 @@ impl<'a> Attempt<'a> {
     fn run(mut self) -> Finding {
         let until = self.problem.statement.zone.until.clone();
         let mut t0 = first_start(&self.enclosure);
-        for _ in 0..MAX_DOUBLINGS {
+        for attempt in 0..MAX_DOUBLINGS {
+            if attempt == TIMELESS_AFTER
+                && let Some(cell) = self.cover.pivots.timeless(
+                    until.as_ref().unwrap_or(&self.cover.from),
+                    &mut self.problem,
+                    &mut self.enclosure,
+                )
+            {
+                let evidence = Evidence::Never { cells: vec![cell], cone: None };
+                return Finding::Never(self.certificate(self.problem.statement.clone(), Vec::new(), evidence));
+            }
             if let Some(until) = until.as_ref().filter(|until| **until <= t0) {
                 return self.finish(&until.clone(), None);
             }

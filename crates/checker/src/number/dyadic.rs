@@ -3,7 +3,6 @@
 //! Addition, subtraction and multiplication round in a named direction to a number of mantissa bits; comparison
 //! is exact. This is the only file of the crate in which digits are dropped.
 
-use super::Rational;
 use num_bigint::{BigInt, Sign};
 use num_traits::{One, Signed, Zero};
 use std::cmp::Ordering;
@@ -66,17 +65,6 @@ impl Dyadic {
             Ok(bits) => self.exponent.saturating_add(bits),
             Err(_) => i64::MAX / 2,
         }
-    }
-
-    /// The value as a rational number. Cost: exponential in the size of the exponent; `None` beyond 2^20.
-    pub fn to_rational(&self) -> Option<Rational> {
-        let shift = u64::try_from(self.exponent.checked_abs()?).ok().filter(|s| *s <= 1 << 20_u32)?;
-        let power = BigInt::one() << shift;
-        Some(if self.exponent >= 0 {
-            Rational::from_integer(&self.mantissa * power)
-        } else {
-            Rational::new(self.mantissa.clone(), power)
-        })
     }
 
     /// -value.

@@ -18,7 +18,14 @@ pub(crate) fn dyadic(m: i64, e: i64) -> Dyadic {
 
 /// The exact value.
 pub(crate) fn exact(value: &Dyadic) -> Rational {
-    value.to_rational().unwrap()
+    let power = Rational::from_integer(num_bigint::BigInt::from(1) << value.exponent().unsigned_abs());
+    let mantissa = Rational::from_integer(value.mantissa().clone());
+    if value.exponent() >= 0 { mantissa * power } else { mantissa / power }
+}
+
+/// The value of a polynomial at a rational point.
+pub(crate) fn value(p: &keepout_checker::polynomial::Polynomial, at: &Rational) -> Rational {
+    p.coefficients().iter().rev().fold(rational("0"), |sum, c| sum * at + c)
 }
 
 /// Whether a rational number is a member.

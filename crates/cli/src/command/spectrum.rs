@@ -5,6 +5,7 @@ use crate::model::{Model, Need, load};
 use crate::number::{for_people, nearest_decimal};
 use keepout_checker::number::{Interval, Rational};
 use keepout_checker::statement::Variable;
+use keepout_core::ToRational;
 use keepout_core::blocks::SparseMatrix;
 use keepout_core::structure::{Boundedness, Evidence, StructureOptions, spectral_structure_with};
 use keepout_core::{CoreError, IntegerPolynomial, Irreducibility, SpectralStructure};

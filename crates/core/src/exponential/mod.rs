@@ -103,6 +103,7 @@ impl Index<(usize, usize)> for IntervalMatrix {
 /// About (log2 |A t| + 10) products of n x n matrices of `bits` + (growth) bits.
 ///
 /// ```
+/// use keepout_core::ToRational;
 /// use keepout_core::{RationalMatrix, enclose_exponential};
 /// use num_rational::BigRational;
 /// let nilpotent = RationalMatrix::from_integers(&[vec![0, 6], vec![0, 0]])?;

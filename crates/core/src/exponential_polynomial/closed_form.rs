@@ -27,6 +27,7 @@ pub struct Term {
 /// An exponential polynomial as a sum of enclosed terms.
 ///
 /// ```
+/// use keepout_core::ToRational;
 /// use keepout_core::ExponentialPolynomial;
 /// use keepout_checker::number::Interval;
 /// use num_rational::BigRational;

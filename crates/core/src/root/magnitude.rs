@@ -3,6 +3,8 @@
 //! A magnitude is mantissa * 2^exponent with a mantissa below 2^62. Each operation rounds in the direction of its
 //! name. Cheap bounds of radii and norms, where a few bits are all that matters.
 
+#[cfg(test)]
+use crate::ToRational;
 use keepout_checker::number::Dyadic;
 use num_bigint::BigInt;
 use num_traits::ToPrimitive;

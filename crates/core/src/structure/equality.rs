@@ -6,6 +6,7 @@
 //! root is proved by Rouche's theorem: |q_1| r > |q_0| + sum_(k>=2) |q_k| r^k for the Taylor coefficients q_k of Q at
 //! the centre.
 
+use crate::ToRational;
 use crate::integer_polynomial::IntegerPolynomial;
 use crate::root::{RootDisc, enclose_roots};
 use keepout_checker::number::{Complex, Direction, Dyadic, Interval, Rational};

@@ -8,6 +8,7 @@ use crate::strategy::pivot::simplest_between;
 use keepout_checker::certificate::{Angle, Cone, Lead, Node, RealPart, RootRef, Sum};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
+use keepout_core::ToRational;
 use num_bigint::BigInt;
 use num_traits::{ToPrimitive, Zero};
 use std::collections::BTreeMap;

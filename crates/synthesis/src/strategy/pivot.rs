@@ -123,6 +123,28 @@ impl Pivots {
         None
     }
 
+    /// A cell that refutes the zone for all time: a trace is a constant times a square, and the zone is false whether the root
+    /// is zero or not.
+    pub(crate) fn timeless(&mut self, to: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Cell> {
+        for i in 0..problem.sequences.len() {
+            let Some((kappa, root)) = square_root(i, problem) else { continue };
+            let sign = kappa.cmp(&Rational::zero());
+            let with = |sign: Sign| -> Vec<Option<Sign>> {
+                (0..problem.sequences.len()).map(|j| (i == j).then_some(sign)).collect()
+            };
+            if [sign, Ordering::Equal].iter().any(|s| problem.formula.truth(&with(*s)) != Some(false)) {
+                continue;
+            }
+            let cofactor = constant(&kappa, problem)?;
+            let (pivot, cofactor) = (self.auxiliary(root), self.auxiliary(cofactor));
+            let product = self.product(Product { trace: i, pivot, power: 2, cofactor });
+            *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+            let pivot = Pivot::Auxiliary(pivot, vec![(product, sign)]);
+            return Some(Cell { to: to.clone(), order: 2, signs: Vec::new(), pivot });
+        }
+        None
+    }
+
     /// Decides a cell [a, b] in which traces vanish at a time that is a root of a polynomial with rational coefficients.
     pub(crate) fn touch(
         &mut self,
