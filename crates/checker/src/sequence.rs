@@ -21,8 +21,8 @@ use std::collections::{BTreeMap, BTreeSet};
 #[derive(Clone, Debug)]
 pub struct Sequence {
     rate: BigInt,
-    denominator: BigInt,
-    values: Vec<BigInt>,
+    pub(crate) denominator: BigInt,
+    pub(crate) values: Vec<BigInt>,
 }
 
 impl Sequence {
@@ -46,11 +46,6 @@ impl Sequence {
     /// The common positive integer factor of time.
     pub fn rate(&self) -> &BigInt {
         &self.rate
-    }
-
-    /// Whether all known derivatives are 0.
-    pub fn is_zero(&self) -> bool {
-        self.values.iter().all(Zero::is_zero)
     }
 
     /// The sign of the function's value at 0, exactly.

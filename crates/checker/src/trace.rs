@@ -12,8 +12,8 @@ use crate::number::Direction::Up;
 use crate::number::{Complex, Dyadic, Interval, Rational};
 use crate::polynomial::Polynomial;
 use crate::root::RootTable;
+use crate::sequence::Sequence;
 use num_bigint::BigInt;
-use num_traits::Zero;
 
 /// The terms of one exponent, its conjugate understood: `sum_j coefficients[j] t^j exp(mu t)`.
 #[derive(Clone, Debug)]
@@ -202,11 +202,13 @@ fn taylor_shift(p: &[Complex], centre: &Interval, bits: u32) -> Vec<Complex> {
 
 /// N_i = sum_(j > i) m_j y_(j-1-i).
 fn laplace_numerator(m: &Polynomial, derivatives: &[Rational]) -> Polynomial {
+    // Over common denominators, so that no common divisor is taken before the end.
+    let [m, y] = [m.coefficients(), derivatives].map(Sequence::from_rationals);
     let coefficient = |i: usize| {
-        let pairs = m.coefficients().iter().skip(i + 1).zip(derivatives);
-        pairs.fold(Rational::zero(), |sum, (m, y)| sum + m * y)
+        let sum = m.values.iter().skip(i + 1).zip(&y.values).map(|(m, y)| m * y).sum();
+        Rational::new(sum, &m.denominator * &y.denominator)
     };
-    Polynomial::new((0..m.degree()).map(coefficient).collect())
+    Polynomial::new((0..m.count().saturating_sub(1)).map(coefficient).collect())
 }
 
 /// The coefficients of t^j exp(mu t), j = 0 .. e - 1. `None`: a division by an interval that may contain 0.

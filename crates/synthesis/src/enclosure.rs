@@ -42,6 +42,14 @@ impl Enclosure {
         Ok(enclosure)
     }
 
+    /// Takes in the families that were added to the problem since. Known roots keep their places, so the closed forms stay.
+    pub(crate) fn renew(&mut self, problem: &Problem) -> Option<()> {
+        let added = problem.families.iter().skip(self.families.len()).map(|f| family(f, self.bits));
+        self.families.extend(added);
+        self.table = RootTable::new(&self.families, self.bits, &mut self.budget).ok()?;
+        Some(())
+    }
+
     /// The closed form of a further function.
     pub(crate) fn closed_form(
         &mut self,
@@ -49,6 +57,29 @@ impl Enclosure {
         derivatives: &[Rational],
     ) -> Result<ClosedForm, Rejection> {
         ClosedForm::new(factors, derivatives, &self.table, self.bits, 0, &mut self.budget)
+    }
+
+    /// Whether the closed forms lose no more than half of their digits to cancellation: at t = 0, where the values are known.
+    ///
+    /// A guess for choosing the precision. The scale of a trace is the largest of |y_k| / r^k for its first derivatives, r a
+    /// bound of its exponents.
+    pub(crate) fn is_precise(&mut self, problem: &Problem) -> bool {
+        let zero = Rational::from_integer(0.into());
+        (0..self.forms.len()).all(|i| {
+            let form = self.forms[i].clone();
+            if form.terms.is_empty() {
+                return true;
+            }
+            let rates = form.terms.iter().map(|t| t.exponent.abs_hi(self.bits).top());
+            let rate = 2.0_f64.powi(rates.max().unwrap_or(0).clamp(-500, 500) as i32);
+            let derivatives = problem.sequences[i].derivatives(6);
+            let sizes = derivatives.iter().enumerate().map(|(k, y)| approx_value(y).abs() / rate.powi(k as i32));
+            let scale = sizes.fold(0.0, f64::max);
+            let order = self.order(&zero, &zero);
+            let Some(value) = self.on_stretch(&form, &zero, &zero, order) else { return false };
+            let width = value.hi().add(&value.lo().neg(), 64, keepout_checker::number::Direction::Up);
+            width.top() as f64 <= scale.log2() - 0.5 * f64::from(self.bits)
+        })
     }
 
     /// Encloses a function on [from, to], with a number of Taylor terms that suits the stretch.

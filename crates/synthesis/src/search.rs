@@ -7,7 +7,7 @@ use crate::problem::Problem;
 use crate::strategy::cone::{Plan, first_start};
 use crate::strategy::cover::{Cover, Entry, Step};
 use keepout_checker::certificate::{Certificate, Cone, Evidence, Sum};
-use keepout_checker::error::Rejection;
+use keepout_checker::error::{Obligation, Rejection, Rule};
 use keepout_checker::number::Rational;
 use keepout_checker::statement::{Claim, Statement};
 
@@ -67,7 +67,14 @@ impl<'a> Attempt<'a> {
         effort: &'a mut u64,
     ) -> Result<Self, Rejection> {
         let problem = Problem::new(statement, claim, &options.limits)?;
-        let enclosure = Enclosure::new(&problem, bits, &options.limits)?;
+        let mut enclosure = Enclosure::new(&problem, bits, &options.limits)?;
+        if bits.saturating_mul(2) <= options.max_bits && !enclosure.is_precise(&problem) {
+            return Err(Rejection::Inconclusive {
+                rule: Rule::Trace,
+                obligation: Obligation::ClosedFormIsEnclosed,
+                position: 0,
+            });
+        }
         let cover = Cover::new(&statement.zone.from);
         Ok(Self { problem, enclosure, plan: None, cover, effort })
     }

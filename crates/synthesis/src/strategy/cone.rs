@@ -79,7 +79,7 @@ impl Plan {
             return Some(Some(known));
         }
         let Some(open) = OpenSum::new(parts, problem, enclosure) else { return Some(None) };
-        *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+        enclosure.renew(problem)?;
         Some(open.close(enclosure).map(|sum| {
             self.sums.push(sum);
             self.sums.len() - 1
@@ -146,7 +146,7 @@ impl Plan {
         }
         let scaled = problem.families[family].dilate_up(&BigInt::from(times)).primitive_part();
         let Some(position) = problem.family(&scaled) else { return Some(()) };
-        *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+        enclosure.renew(problem)?;
         let part = Interval::integer(times);
         let wanted = frequency(*first, enclosure);
         let bits = enclosure.bits;

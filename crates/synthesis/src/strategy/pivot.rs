@@ -111,7 +111,7 @@ impl Pivots {
             });
             let one = self.polynomial(&[Rational::one()], problem)?;
             let product = self.product(Product { trace: i, pivot, power: 1, cofactor: one });
-            *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+            enclosure.renew(problem)?;
             let plain = signs.iter().enumerate().filter_map(|(j, s)| s.map(|s| (j, s))).collect();
             return Some(Cell {
                 to: b.clone(),
@@ -138,7 +138,7 @@ impl Pivots {
             let cofactor = constant(&kappa, problem)?;
             let (pivot, cofactor) = (self.auxiliary(root), self.auxiliary(cofactor));
             let product = self.product(Product { trace: i, pivot, power: 2, cofactor });
-            *enclosure = Enclosure::new(problem, enclosure.bits, &enclosure.limits().clone()).ok()?;
+            enclosure.renew(problem)?;
             let pivot = Pivot::Auxiliary(pivot, vec![(product, sign)]);
             return Some(Cell { to: to.clone(), order: 2, signs: Vec::new(), pivot });
         }
@@ -169,8 +169,7 @@ impl Pivots {
                 pivots.extend(constant.map(|cofactor| (pivot, vec![(i, 2, cofactor)])));
             }
         }
-        let limits = enclosure.limits().clone();
-        if pivots.is_empty() || Enclosure::new(problem, enclosure.bits, &limits).map(|e| *enclosure = e).is_err() {
+        if pivots.is_empty() || enclosure.renew(problem).is_none() {
             return Touch::None;
         }
         for (pivot, splits) in pivots {
