@@ -1,9 +1,9 @@
 //! `keepout certify`: settles the zones of a model and writes the evidence.
 
 use super::progress::Progress;
-use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, print};
+use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, loaded, print};
 use crate::diagnostic::nearest;
-use crate::model::{Model, Need, load};
+use crate::model::{Model, Need};
 use crate::number::{for_people, to_decimal};
 use keepout_checker::statement::{Claim, Formula, Rational, Statement, Variable};
 use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify};
@@ -35,13 +35,7 @@ pub struct Arguments {
 
 /// Runs the command; returns the exit status.
 pub fn run(arguments: &Arguments) -> u8 {
-    let model = match load(&arguments.model, Need::Zones) {
-        Ok(model) => model,
-        Err(diagnostics) => {
-            complain(&diagnostics.to_string());
-            return WRONG;
-        }
-    };
+    let Some(model) = loaded(&arguments.model, Need::Zones) else { return WRONG };
     let chosen = match chosen(&model, &arguments.zones) {
         Ok(chosen) => chosen,
         Err(message) => {

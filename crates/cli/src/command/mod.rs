@@ -6,7 +6,9 @@ pub mod certify;
 mod progress;
 pub mod spectrum;
 
+use crate::model::{Model, Need, load};
 use std::io::Write;
+use std::path::Path;
 
 /// Exit status when all zones are clear.
 pub const CLEAR: u8 = 0;
@@ -33,4 +35,9 @@ pub(crate) fn print(text: &str, status: u8) -> u8 {
 /// Writes a message to standard error.
 pub(crate) fn complain(text: &str) {
     let _ = std::io::stderr().lock().write_all(text.as_bytes());
+}
+
+/// Loads a model; what is wrong with it goes to standard error.
+pub(crate) fn loaded(path: &Path, need: Need) -> Option<Model> {
+    load(path, need).map_err(|diagnostics| complain(&diagnostics.to_string())).ok()
 }

@@ -1,7 +1,7 @@
 //! `keepout spectrum`: the exact structure of a model's dynamics, which engineers look at first.
 
-use super::{CLEAR, WRONG, complain, print};
-use crate::model::{Model, Need, load};
+use super::{CLEAR, WRONG, complain, loaded, print};
+use crate::model::{Model, Need};
 use crate::number::{for_people, nearest_decimal};
 use keepout_checker::number::{Interval, Rational};
 use keepout_checker::statement::Variable;
@@ -22,13 +22,7 @@ pub struct Arguments {
 
 /// Runs the command; returns the exit status.
 pub fn run(arguments: &Arguments) -> u8 {
-    let model = match load(&arguments.model, Need::Nothing) {
-        Ok(model) => model,
-        Err(diagnostics) => {
-            complain(&diagnostics.to_string());
-            return WRONG;
-        }
-    };
+    let Some(model) = loaded(&arguments.model, Need::Nothing) else { return WRONG };
     match structure(&model) {
         Ok(structure) => print(&report(&model, &structure), CLEAR),
         Err(error) => {
