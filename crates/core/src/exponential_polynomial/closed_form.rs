@@ -9,6 +9,7 @@ use crate::error::CoreError;
 use crate::integer_polynomial::IntegerPolynomial;
 use crate::root::{RootDisc, enclose_roots};
 use keepout_checker::number::{Complex, Direction, Dyadic, Interval, Rational};
+use keepout_checker::polynomial::Polynomial;
 use num_bigint::BigInt;
 
 /// c t^power/power! exp(mu t) for one real exponent, or the sum of it and its conjugate.
@@ -122,17 +123,8 @@ impl FactorData<'_> {
 }
 
 fn taylor(p: &IntegerPolynomial, at: &Complex, count: usize, bits: u32) -> Vec<Complex> {
-    let enclose = |c: &BigInt| Complex::real(Interval::rational(&Rational::from_integer(c.clone()), bits));
-    let mut row: Vec<Complex> = p.coefficients().iter().map(enclose).collect();
-    for done in 0..count.min(row.len()) {
-        let mut carry = Complex::zero();
-        for slot in row.iter_mut().skip(done).rev() {
-            carry = slot.add(&carry.mul(at, bits), bits);
-            *slot = carry.clone();
-        }
-    }
-    row.resize(count, Complex::zero());
-    row
+    let coefficients = p.coefficients().iter().map(|c| Rational::from_integer(c.clone())).collect();
+    Polynomial::new(coefficients).taylor(at, count, bits)
 }
 
 fn series_product(a: &[Complex], b: &[Complex], count: usize, bits: u32) -> Vec<Complex> {
