@@ -66,17 +66,16 @@ impl Enclosure {
     pub(crate) fn is_precise(&mut self, problem: &Problem) -> bool {
         let zero = Rational::from_integer(0.into());
         (0..self.forms.len()).all(|i| {
-            let form = self.forms[i].clone();
-            if form.terms.is_empty() {
+            if self.forms[i].terms.is_empty() {
                 return true;
             }
-            let rates = form.terms.iter().map(|t| t.exponent.abs_hi(self.bits).top());
+            let rates = self.forms[i].terms.iter().map(|t| t.exponent.abs_hi(self.bits).top());
             let rate = 2.0_f64.powi(rates.max().unwrap_or(0).clamp(-500, 500) as i32);
             let derivatives = problem.sequences[i].derivatives(6);
             let sizes = derivatives.iter().enumerate().map(|(k, y)| approx_value(y).abs() / rate.powi(k as i32));
             let scale = sizes.fold(0.0, f64::max);
             let order = self.order(&zero, &zero);
-            let Some(value) = self.on_stretch(&form, &zero, &zero, order) else { return false };
+            let Some(value) = self.trace_on_stretch(i, &zero, &zero, order) else { return false };
             let width = value.hi().add(&value.lo().neg(), 64, keepout_checker::number::Direction::Up);
             width.top() as f64 <= scale.log2() - 0.5 * f64::from(self.bits)
         })
@@ -90,10 +89,18 @@ impl Enclosure {
         to: &Rational,
         order: u32,
     ) -> Option<Interval> {
-        let half = Rational::new(1.into(), 2.into());
-        let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
-        let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits: self.bits };
-        form.enclose(stretch, &mut self.budget).ok().flatten()
+        on_stretch(form, from, to, order, self.bits, &mut self.budget)
+    }
+
+    /// Encloses a trace on [from, to].
+    pub(crate) fn trace_on_stretch(
+        &mut self,
+        index: usize,
+        from: &Rational,
+        to: &Rational,
+        order: u32,
+    ) -> Option<Interval> {
+        on_stretch(&self.forms[index], from, to, order, self.bits, &mut self.budget)
     }
 
     /// Encloses g / t^power on [0, to] for a trace that vanishes at 0 to that order.
@@ -139,11 +146,10 @@ impl Enclosure {
         if *to == zero {
             return Some(problem.sequences[index].sign_at_zero());
         }
-        let form = self.forms[index].clone();
-        if form.terms.is_empty() {
+        if self.forms[index].terms.is_empty() {
             return Some(Ordering::Equal);
         }
-        self.on_stretch(&form, from, to, order)?.certain_sign()
+        self.trace_on_stretch(index, from, to, order)?.certain_sign()
     }
 
     /// A number of Taylor terms: the remainder is then small against the terms kept, for exponents up to the largest.
@@ -168,6 +174,19 @@ impl Enclosure {
     pub(crate) fn limits(&self) -> &Limits {
         &self.limits
     }
+}
+
+fn on_stretch(
+    form: &ClosedForm,
+    from: &Rational,
+    to: &Rational,
+    order: u32,
+    bits: u32,
+    budget: &mut Budget,
+) -> Option<Interval> {
+    let half = Rational::new(1.into(), 2.into());
+    let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
+    form.enclose(Stretch { centre: &centre, half_width: &half_width, order, bits }, budget).ok().flatten()
 }
 
 impl Problem {

@@ -62,7 +62,8 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
         match proved(&-high.to_rational()?, proof, options) {
             Attempt::Proved(proof) => {
                 let Claim::Never { margin } = &proof.statement().claim else { return None };
-                return Some((*proof.clone(), Margin { certified: margin.clone(), at_most: Some(at_most), place }));
+                let margin = Margin { certified: margin.clone(), at_most: Some(at_most), place };
+                return Some((*proof, margin));
             }
             Attempt::Failed => {
                 return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: Some(at_most), place }));
@@ -199,7 +200,7 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     }
     let mut t0 = Rational::from_integer(1.into());
     for _ in 0..60 {
-        if let Some(form) = plan.forms(&t0, enclosure)?.first()?.as_ref()
+        if let Some(form) = plan.forms(&t0, enclosure).first()?.as_ref()
             && form.rest().top() < -100
         {
             let supremum = torus_supremum(form, plan.base.len(), upward)?;
@@ -256,7 +257,6 @@ struct Peak {
 
 /// The supremum of v between the first and the last instant.
 fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> Option<Peak> {
-    let form = enclosure.forms[0].clone();
     let mut best: Option<(Dyadic, Rational)> = None;
     let mut scale = 0.0_f64;
     let mut open = BinaryHeap::new();
@@ -270,14 +270,14 @@ fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> O
             let middle = crate::strategy::cover::simple_middle(&a, &b);
             for t in [&a, &middle, &b] {
                 let order = enclosure.order(t, t);
-                let value = oriented(enclosure.on_stretch(&form, t, t, order)?, upward);
+                let value = oriented(enclosure.trace_on_stretch(0, t, t, order)?, upward);
                 scale = scale.max(value.lo().to_rational().map_or(0.0, |x| approx_value(&x.abs())));
                 if best.as_ref().is_none_or(|(low, _)| value.lo() > low) {
                     best = Some((value.lo().clone(), t.clone()));
                 }
             }
             let order = enclosure.order(&a, &b);
-            let high = oriented(enclosure.on_stretch(&form, &a, &b, order)?, upward).hi().clone();
+            let high = oriented(enclosure.trace_on_stretch(0, &a, &b, order)?, upward).hi().clone();
             if best.as_ref().is_none_or(|(low, _)| high >= *low) {
                 open.push(Open { high, part: (a, b) });
             }

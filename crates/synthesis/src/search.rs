@@ -21,7 +21,7 @@ pub(crate) enum Finding {
     Open(Reason),
 }
 
-/// The precisions tried, in turn.
+/// The first precision tried; each further one is twice as great.
 const FIRST_BITS: u32 = 96;
 
 /// An identity that holds for all time is looked for when no cone was found at the first so many starts.
@@ -32,11 +32,14 @@ const MAX_DOUBLINGS: u32 = 60;
 
 /// Searches evidence for `never` with a margin, or of an entry.
 pub(crate) fn settle(statement: &Statement, margin: &Rational, options: &Options, effort: &mut u64) -> Finding {
+    let problem = match Problem::new(statement, Claim::Never { margin: margin.clone() }, &options.limits) {
+        Ok(problem) => problem,
+        Err(rejection) => return Finding::Open(Reason::Limit(rejection)),
+    };
     let mut bits = FIRST_BITS;
     let mut last = Reason::Effort { clear_until: statement.zone.from.clone() };
     while bits <= options.max_bits {
-        let claim = Claim::Never { margin: margin.clone() };
-        match Attempt::new(statement, claim, bits, options, effort).map(Attempt::run) {
+        match Attempt::new(problem.clone(), bits, options, effort).map(Attempt::run) {
             Err(rejection @ Rejection::LimitExceeded { .. }) => return Finding::Open(Reason::Limit(rejection)),
             // The roots are not separated at this precision.
             Err(_) => {}
@@ -59,14 +62,7 @@ struct Attempt<'a> {
 }
 
 impl<'a> Attempt<'a> {
-    fn new(
-        statement: &Statement,
-        claim: Claim,
-        bits: u32,
-        options: &Options,
-        effort: &'a mut u64,
-    ) -> Result<Self, Rejection> {
-        let problem = Problem::new(statement, claim, &options.limits)?;
+    fn new(problem: Problem, bits: u32, options: &Options, effort: &'a mut u64) -> Result<Self, Rejection> {
         let mut enclosure = Enclosure::new(&problem, bits, &options.limits)?;
         if bits.saturating_mul(2) <= options.max_bits && !enclosure.is_precise(&problem) {
             return Err(Rejection::Inconclusive {
@@ -75,7 +71,7 @@ impl<'a> Attempt<'a> {
                 position: 0,
             });
         }
-        let cover = Cover::new(&statement.zone.from);
+        let cover = Cover::new(&problem.statement.zone.from);
         Ok(Self { problem, enclosure, plan: None, cover, effort })
     }
 
@@ -134,7 +130,10 @@ impl<'a> Attempt<'a> {
         {
             return end;
         }
-        let sums = self.plan.iter().flatten().find(|_| cone.is_some()).map_or_else(Vec::new, |p| p.sums.clone());
+        let sums = match (&cone, &self.plan) {
+            (Some(_), Some(Some(plan))) => plan.sums.clone(),
+            _ => Vec::new(),
+        };
         let cells = std::mem::take(&mut self.cover.cells);
         Finding::Never(self.certificate(self.problem.statement.clone(), sums, Evidence::Never { cells, cone }))
     }

@@ -10,6 +10,7 @@ use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
 use keepout_core::ToRational;
 use num_bigint::BigInt;
+use num_integer::Integer;
 use num_traits::{ToPrimitive, Zero};
 use std::collections::BTreeMap;
 
@@ -134,10 +135,8 @@ impl Plan {
     /// A base root of which all commensurate frequencies are integer multiples, if the least of them is not one itself.
     fn common_base(&mut self, roots: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<()> {
         let Some(first) = roots.first() else { return Some(()) };
-        let divisor = roots
-            .iter()
-            .filter_map(|r| ratio(*r, *first, enclosure))
-            .fold(BigInt::from(1), |l, q| num_lcm(&l, q.denom()));
+        let divisor =
+            roots.iter().filter_map(|r| ratio(*r, *first, enclosure)).fold(BigInt::from(1), |l, q| l.lcm(q.denom()));
         let times = divisor.to_i64().filter(|n| *n > 1 && *n <= MAX_RATIO);
         let Some(times) = times else { return Some(()) };
         let family = enclosure.table.roots()[*first].family;
@@ -159,7 +158,7 @@ impl Plan {
         Some(())
     }
 
-    /// The cone from t0, if the zone is false on all leaves of a bisection of at most `leaves` leaves.
+    /// The cone from t0, if the zone is false on all leaves of a bisection.
     pub(crate) fn cone(
         &self,
         t0: &Rational,
@@ -167,7 +166,7 @@ impl Plan {
         enclosure: &Enclosure,
         effort: &mut u64,
     ) -> Option<Cone> {
-        let forms = self.forms(t0, enclosure)?;
+        let forms = self.forms(t0, enclosure);
         let mut nodes = Vec::new();
         let mut open = vec![(whole_torus(self.base.len()), 0_u64)];
         while let Some((angles, depth)) = open.pop() {
@@ -199,32 +198,22 @@ impl Plan {
     }
 
     /// The leading part of each trace from t0 on, where it can be enclosed.
-    pub(crate) fn forms(&self, t0: &Rational, enclosure: &Enclosure) -> Option<Vec<Option<LeadForm>>> {
-        let mut forms = Vec::new();
-        for (index, lead) in self.leads.iter().enumerate() {
-            let form = lead.as_ref().and_then(|lead| {
+    pub(crate) fn forms(&self, t0: &Rational, enclosure: &Enclosure) -> Vec<Option<LeadForm>> {
+        let form = |(index, lead): (usize, &Option<Lead>)| {
+            lead.as_ref().and_then(|lead| {
                 let roots = enclosure.table.roots();
                 let rho_lo = lead.roots.iter().map(|r| roots[*r].value.re.lo().clone()).max()?;
                 let leading: Vec<(usize, Vec<i64>)> = lead.roots.iter().map(|r| (*r, self.turns(*r))).collect();
                 LeadForm::new(&enclosure.forms[index], &leading, &rho_lo, t0, index, enclosure.bits).ok()
-            });
-            forms.push(form);
-        }
-        Some(forms)
+            })
+        };
+        self.leads.iter().enumerate().map(form).collect()
     }
 
     fn turns(&self, root: usize) -> Vec<i64> {
         let known = self.angles.iter().find(|a| a.root == root);
         known.map_or_else(|| vec![0; self.base.len()], |a| a.turns.clone())
     }
-}
-
-fn num_lcm(a: &BigInt, b: &BigInt) -> BigInt {
-    let mut x = (a.clone(), b.clone());
-    while !x.1.is_zero() {
-        x = (x.1.clone(), &x.0 % &x.1);
-    }
-    a * b / x.0
 }
 
 /// The signs of all traces on a box of the torus.

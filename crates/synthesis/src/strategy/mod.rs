@@ -7,3 +7,4 @@ pub(crate) mod equality;
 pub(crate) mod pivot;
 pub(crate) mod root;
 pub(crate) mod square;
+pub(crate) mod taylor;

@@ -3,10 +3,10 @@
 use crate::enclosure::Enclosure;
 use crate::problem::Problem;
 use crate::strategy::square::square_root;
+use crate::strategy::taylor::{derivatives, taylor};
 use keepout_checker::certificate::{Auxiliary, Cell, Factor, Pivot, Product, Sign};
 use keepout_checker::number::Rational;
 use keepout_core::{IntegerPolynomial, factorize};
-use num_bigint::BigInt;
 use num_traits::{One, Zero};
 use std::cmp::Ordering;
 
@@ -239,13 +239,7 @@ impl Pivots {
 fn polynomial(coefficients: &[Rational], problem: &mut Problem) -> Option<Auxiliary> {
     let family = problem.family(&IntegerPolynomial::variable())?;
     let factors = vec![Factor { family, multiplicity: u32::try_from(coefficients.len()).ok()? }];
-    let mut factorial = Rational::one();
-    let mut derivatives = Vec::new();
-    for (k, c) in coefficients.iter().enumerate() {
-        factorial *= Rational::from_integer(BigInt::from(k.max(1)));
-        derivatives.push(c * &factorial);
-    }
-    Some(Auxiliary { factors, derivatives })
+    Some(Auxiliary { factors, derivatives: derivatives(coefficients) })
 }
 
 /// The function that is a constant.
@@ -275,8 +269,8 @@ fn candidates(a: &Rational, b: &Rational, problem: &Problem) -> Vec<Vec<Rational
         let p = without_exponential(&sequence.derivatives(factor.multiplicity as usize), &rate);
         for part in factorize(&IntegerPolynomial::from_rationals(&p)).factors {
             let w = part.polynomial.to_monic().coefficients().to_vec();
-            let value = |t: &Rational| w.iter().rev().fold(Rational::zero(), |sum, c| sum * t + c);
-            if value(a) * value(b) <= Rational::zero() && !list.contains(&w) {
+            let ends = [a, b].map(|t| part.polynomial.value_rational(t));
+            if &ends[0] * &ends[1] <= Rational::zero() && !list.contains(&w) {
                 list.push(w);
             }
         }
@@ -284,20 +278,12 @@ fn candidates(a: &Rational, b: &Rational, problem: &Problem) -> Vec<Vec<Rational
     list
 }
 
-/// The coefficients of P from the derivatives at 0 of P(t) exp(rate t).
-fn without_exponential(derivatives: &[Rational], rate: &Rational) -> Vec<Rational> {
-    let mut inverse = vec![Rational::one()];
-    let mut taylor = Vec::new();
-    let mut factorial = Rational::one();
-    for (k, y) in derivatives.iter().enumerate() {
-        if k > 0 {
-            factorial *= Rational::from_integer(BigInt::from(k));
-            let last = inverse[k - 1].clone();
-            inverse.push(last * -rate / Rational::from_integer(BigInt::from(k)));
-        }
-        taylor.push(y / &factorial);
-    }
-    (0..taylor.len()).map(|k| (0..=k).map(|j| &taylor[j] * &inverse[k - j]).sum()).collect()
+/// The coefficients of P from the list of derivatives at 0 of P(t) exp(rate t).
+fn without_exponential(list: &[Rational], rate: &Rational) -> Vec<Rational> {
+    let p = taylor(list);
+    let powers = std::iter::successors(Some(Rational::one()), |power| Some(-(power * rate)));
+    let inverse = taylor(&powers.take(p.len()).collect::<Vec<_>>());
+    (0..p.len()).map(|k| (0..=k).map(|j| &p[j] * &inverse[k - j]).sum()).collect()
 }
 
 /// The trace as w^power times a cofactor, power >= 1 as great as possible, if w divides it.
@@ -325,19 +311,14 @@ fn divided(index: usize, w: &[Rational], problem: &Problem) -> Option<(u32, Auxi
     (power > 0).then_some((power, Auxiliary { factors, derivatives }))
 }
 
-/// The derivatives at 0 of g / w from those of g; w(0) is not 0.
-fn series_quotient(derivatives: &[Rational], w: &[Rational]) -> Vec<Rational> {
-    let mut factorial = Rational::one();
+/// The derivatives at 0 of g / w from the list of those of g; w(0) is not 0.
+fn series_quotient(list: &[Rational], w: &[Rational]) -> Vec<Rational> {
     let mut quotient: Vec<Rational> = Vec::new();
-    let mut result = Vec::new();
-    for (k, y) in derivatives.iter().enumerate() {
-        factorial *= Rational::from_integer(BigInt::from(k.max(1)));
+    for (k, c) in taylor(list).iter().enumerate() {
         let known: Rational = (1..w.len().min(k + 1)).map(|j| &w[j] * &quotient[k - j]).sum();
-        let value = (y / &factorial - known) / &w[0];
-        result.push(&value * &factorial);
-        quotient.push(value);
+        quotient.push((c - known) / &w[0]);
     }
-    result
+    derivatives(&quotient)
 }
 
 /// The rational with the least denominator in [a, b], 0 < a < b. Source: Stern-Brocot tree.

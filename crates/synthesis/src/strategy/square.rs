@@ -6,11 +6,12 @@
 //! 1 - sin t = (cos(t/2) - sin(t/2))^2.
 
 use crate::problem::Problem;
+use crate::strategy::taylor::{derivatives, taylor};
 use keepout_checker::certificate::Auxiliary;
 use keepout_checker::number::Rational;
+use keepout_checker::sequence::Sequence;
 use keepout_core::minimal_annihilator;
 use num_bigint::BigInt;
-use num_integer::Integer;
 use num_traits::{One, Zero};
 
 /// The constant kappa and the function h for one trace. Families may be added to the problem.
@@ -37,24 +38,6 @@ pub(crate) fn square_root(index: usize, problem: &mut Problem) -> Option<(Ration
     Some((kappa, Auxiliary { factors, derivatives: derivatives.get(..size)?.to_vec() }))
 }
 
-fn taylor(derivatives: &[Rational]) -> Vec<Rational> {
-    with_factorials(derivatives, |y, factorial| y / factorial)
-}
-
-fn derivatives(taylor: &[Rational]) -> Vec<Rational> {
-    with_factorials(taylor, |c, factorial| c * factorial)
-}
-
-fn with_factorials(list: &[Rational], combine: impl Fn(&Rational, &Rational) -> Rational) -> Vec<Rational> {
-    let mut factorial = Rational::one();
-    let mut result = Vec::new();
-    for (k, x) in list.iter().enumerate() {
-        factorial *= Rational::from_integer(BigInt::from(k.max(1)));
-        result.push(combine(x, &factorial));
-    }
-    result
-}
-
 /// The square root with constant term 1 of a power series divided by its constant term.
 fn series_root(series: &[Rational], first: &Rational) -> Vec<Rational> {
     let two = Rational::from_integer(2.into());
@@ -68,12 +51,7 @@ fn series_root(series: &[Rational], first: &Rational) -> Vec<Rational> {
 
 /// The integers y_k rate^k times a common denominator.
 fn scaled(derivatives: &[Rational], rate: &Rational) -> Vec<BigInt> {
-    let mut power = Rational::one();
-    let mut list = Vec::new();
-    for y in derivatives {
-        list.push(y * &power);
-        power *= rate;
-    }
-    let common = list.iter().fold(BigInt::one(), |c, y| c.lcm(y.denom()));
-    list.iter().map(|y| y.numer() * (&common / y.denom())).collect()
+    let powers = std::iter::successors(Some(Rational::one()), |power| Some(power * rate));
+    let scaled: Vec<Rational> = derivatives.iter().zip(powers).map(|(y, power)| y * power).collect();
+    Sequence::from_rationals(&scaled).values().to_vec()
 }
