@@ -44,17 +44,13 @@ pub struct Auxiliary {
     pub derivatives: Vec<Rational>,
 }
 
-/// The identity `trace = pivot^power * cofactor`.
+/// The identity `target = sum of the summands`, each of these a product of powers of functions.
 #[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Product {
-    /// The position of the trace.
-    pub trace: usize,
-    /// The position of the auxiliary function that is raised to the power.
-    pub pivot: usize,
-    /// The power, >= 1.
-    pub power: u32,
-    /// The position of the auxiliary function that remains.
-    pub cofactor: usize,
+pub struct Identity {
+    /// The function that the sum is.
+    pub target: usize,
+    /// For each summand its factors: functions and their powers >= 1.
+    pub summands: Vec<Vec<(usize, u32)>>,
 }
 
 /// The fact `root = sum of multiplier * part`, with one or two parts.
@@ -68,32 +64,31 @@ pub struct Sum {
     pub factors: Vec<Factor>,
 }
 
-/// A sign of a trace: `Less` negative, `Equal` zero, `Greater` positive.
+/// A sign of a function: `Less` negative, `Equal` zero, `Greater` positive.
 pub type Sign = Ordering;
 
-/// How the signs on a cell depend on the sign of one function, the pivot.
+/// The function whose sign is taken case by case: negative, zero, positive.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum Pivot {
-    /// They do not.
+    /// None.
     None,
-    /// The pivot is t, on a cell that starts at 0: `(trace, power, sign)` says that the trace vanishes at 0 to the order
-    /// `power`, and that trace / t^power has the sign on the cell.
+    /// The time t, on a cell that starts at 0: `(function, power, sign)` says that the function vanishes at 0 to the order
+    /// `power`, and that function / t^power has the sign on the cell.
     Start(Vec<(usize, u32, Sign)>),
-    /// The pivot is the auxiliary function at this position: `(product, sign)` says that the cofactor of the product has
-    /// the sign on the cell.
-    Auxiliary(usize, Vec<(usize, Sign)>),
+    /// A function.
+    Function(usize),
 }
 
-/// A closed stretch of time and the signs of traces on it. It begins where the cell before it ends.
+/// A closed stretch of time and the signs of functions on it. It begins where the cell before it ends.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Cell {
     /// The end.
     pub to: Rational,
     /// The number of Taylor terms, >= 1.
     pub order: u32,
-    /// Traces and their signs on the whole cell.
+    /// Functions and their signs on the whole cell.
     pub signs: Vec<(usize, Sign)>,
-    /// The signs that depend on a pivot.
+    /// The function whose sign is taken case by case.
     pub pivot: Pivot,
 }
 
@@ -102,11 +97,12 @@ pub struct Cell {
 pub enum Node {
     /// The box is halved along this axis; the lower half follows, then the upper half.
     Split(usize),
-    /// The box is not split: traces and their signs on it, for all times from the cone's start on.
-    Leaf(Vec<(usize, Sign)>),
+    /// The box is not split: functions and their signs on it for all times from the far field's start on, and the function
+    /// whose sign is taken case by case, if any.
+    Leaf(Vec<(usize, Sign)>, Option<usize>),
 }
 
-/// Why the leading roots of a trace have equal real parts.
+/// Why the leading roots of a function have equal real parts.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum RealPart {
     /// They lie on the vertical line through this rational number.
@@ -117,9 +113,11 @@ pub enum RealPart {
     Single,
 }
 
-/// The leading terms of one trace.
+/// The leading terms of one function.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Lead {
+    /// The function.
+    pub function: usize,
     /// The leading roots (positions of listed centres; conjugates are understood).
     pub roots: Vec<usize>,
     /// Why their real parts are equal.
@@ -137,25 +135,47 @@ pub struct Angle {
     pub sum: Option<usize>,
 }
 
-/// Signs for all times from `from` on.
+/// Leading terms of functions for all times from `from` on, on the torus of the angles of their roots.
 #[derive(Clone, Debug, PartialEq, Eq)]
-pub struct Cone {
-    /// The cone's start, > 0.
+pub struct FarField {
+    /// The start, > 0.
     pub from: Rational,
     /// The base roots: their imaginary parts are the base frequencies of the torus.
     pub base: Vec<usize>,
     /// The angles of the leading roots that are not real; each refers to sums of roots that stand before it.
     pub angles: Vec<Angle>,
-    /// For each trace its leading terms; `None`: no sign of this trace is used.
-    pub leads: Vec<Option<Lead>>,
+    /// The leading terms of each function whose sign is used.
+    pub leads: Vec<Lead>,
+}
+
+/// Signs for all times from the far field's start on.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Cone {
+    /// The leading terms.
+    pub far: FarField,
     /// The bisection of the torus.
     pub nodes: Vec<Node>,
+}
+
+/// A point of the torus in the zone, for all times from the far field's start on; it may move with time inside a box.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Meeting {
+    /// The leading terms.
+    pub far: FarField,
+    /// The box: for each base angle a centre and half the width.
+    pub angles: Vec<(Rational, Rational)>,
+    /// Functions that vanish together at a point of the box, each with an axis of its own: it has opposite signs on the two
+    /// faces of the box across this axis.
+    pub zeros: Vec<(usize, usize)>,
+    /// Functions and their signs on the whole box.
+    pub signs: Vec<(usize, Sign)>,
 }
 
 /// The kind of evidence.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum Evidence {
     /// For `never`: cells from the window's start to the cone's start or the window's end; the cone where there is no end.
+    /// For `eventually`: the cone alone.
     Never {
         /// The cells.
         cells: Vec<Cell>,
@@ -171,6 +191,8 @@ pub enum Evidence {
         /// That cell: with `to` = `from` an instant; with a pivot the instant at which the pivot changes its sign.
         cell: Cell,
     },
+    /// For `inseparable`.
+    Inseparable(Meeting),
 }
 
 /// Evidence for one statement.
@@ -184,10 +206,10 @@ pub struct Certificate {
     pub families: Vec<RootFamily>,
     /// For each distinct polynomial of the (widened) zone, in order of appearance: the factors of an annihilator.
     pub traces: Vec<Vec<Factor>>,
-    /// Further functions.
+    /// Further functions. A position of a function counts the traces first, then these.
     pub auxiliaries: Vec<Auxiliary>,
-    /// Identities between traces and auxiliary functions.
-    pub products: Vec<Product>,
+    /// Identities between functions.
+    pub identities: Vec<Identity>,
     /// Relations among roots.
     pub sums: Vec<Sum>,
     /// The evidence.

@@ -1,8 +1,8 @@
 //! Certificates as JSON: reading with all its refusals, and writing.
 
 use crate::certificate::{
-    Angle, Auxiliary, Cell, Certificate, Cone, Evidence, Factor, Lead, Node, Pivot, Product, RealPart, RootFamily,
-    RootRef, Sign, Sum,
+    Angle, Auxiliary, Cell, Certificate, Cone, Evidence, Factor, FarField, Identity, Lead, Meeting, Node, Pivot,
+    RealPart, RootFamily, RootRef, Sign, Sum,
 };
 use crate::error::Rejection;
 use crate::field::{Field, dyadic_text};
@@ -10,6 +10,7 @@ use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::polynomial::Polynomial;
 use crate::statement_text::read_statement;
+use num_traits::Signed;
 use std::cmp::Ordering;
 
 /// The `format` of a certificate.
@@ -44,7 +45,7 @@ impl Certificate {
             ("families", list(&self.families, write_family)),
             ("traces", list(&self.traces, |factors| list(factors, write_factor))),
             ("auxiliaries", list(&self.auxiliaries, write_auxiliary)),
-            ("products", list(&self.products, write_product)),
+            ("identities", list(&self.identities, write_identity)),
             ("sums", list(&self.sums, write_sum)),
             ("evidence", write_evidence(&self.evidence)),
         ])
@@ -53,8 +54,8 @@ impl Certificate {
 
 fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
     field.only(
-        &["format", "statement", "bits", "families", "traces", "auxiliaries", "products", "sums", "evidence"],
-        "a certificate: format, statement, bits, families, traces, auxiliaries, products, sums, evidence",
+        &["format", "statement", "bits", "families", "traces", "auxiliaries", "identities", "sums", "evidence"],
+        "a certificate: format, statement, bits, families, traces, auxiliaries, identities, sums, evidence",
     )?;
     let format = field.get("format")?;
     if format.text()? != CERTIFICATE_FORMAT {
@@ -75,7 +76,8 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
         let derivatives = bounded(&f.get("derivatives")?, "roots", f.limits().roots)?.each(Field::rational)?;
         Ok(Auxiliary { factors: factors(&f.get("factors")?)?, derivatives })
     })?;
-    let products = lists("products")?.each(|f| read_product(f, traces.len(), auxiliaries.len()))?;
+    let functions = traces.len() + auxiliaries.len();
+    let identities = lists("identities")?.each(|f| read_identity(f, functions))?;
     let sums = lists("sums")?.each(|f| {
         f.only(&["root", "parts", "factors"], "a sum: root, parts, factors")?;
         let parts = f.get("parts")?.each(|part| {
@@ -87,25 +89,17 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
         }
         Ok(Sum { root: read_root(&f.get("root")?, roots)?, parts, factors: factors(&f.get("factors")?)? })
     })?;
-    let counts = Counts {
-        traces: traces.len(),
-        roots,
-        sums: sums.len(),
-        products: products.len(),
-        auxiliaries: auxiliaries.len(),
-    };
+    let counts = Counts { functions, roots, sums: sums.len() };
     let (statement, evidence) =
         (read_statement(&field.get("statement")?)?, read_evidence(&field.get("evidence")?, &counts)?);
-    Ok(Certificate { statement, bits, families, traces, auxiliaries, products, sums, evidence })
+    Ok(Certificate { statement, bits, families, traces, auxiliaries, identities, sums, evidence })
 }
 
 /// The lengths of the lists that positions refer to.
 struct Counts {
-    traces: usize,
+    functions: usize,
     roots: usize,
     sums: usize,
-    products: usize,
-    auxiliaries: usize,
 }
 
 fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
@@ -148,15 +142,21 @@ fn read_factor(field: &Field, families: usize) -> Result<Factor, Rejection> {
     Ok(Factor { family: field.get("family")?.position(families)?, multiplicity })
 }
 
-fn read_product(field: &Field, traces: usize, auxiliaries: usize) -> Result<Product, Rejection> {
-    field.only(&["trace", "pivot", "power", "cofactor"], "a product: trace, pivot, power, cofactor")?;
-    let power = field.get("power")?.count_within("degree", field.limits().degree)?;
-    Ok(Product {
-        trace: field.get("trace")?.position(traces)?,
-        pivot: field.get("pivot")?.position(auxiliaries)?,
-        power: if power == 0 { Err(field.refuse("a power >= 1"))? } else { power },
-        cofactor: field.get("cofactor")?.position(auxiliaries)?,
-    })
+fn read_identity(field: &Field, functions: usize) -> Result<Identity, Rejection> {
+    field.only(&["target", "summands"], "an identity: target, summands")?;
+    let summands = bounded(&field.get("summands")?, "degree", field.limits().degree)?
+        .each(|f| bounded(f, "degree", f.limits().degree)?.each(|f| read_power(f, functions)))?;
+    Ok(Identity { target: field.get("target")?.position(functions)?, summands })
+}
+
+/// `K^P`, P >= 1.
+fn read_power(field: &Field, functions: usize) -> Result<(usize, u32), Rejection> {
+    let refused = || field.refuse("\"K^P\", K the position of a function, P a power >= 1");
+    let (function, power) = field.text()?.split_once('^').ok_or_else(refused)?;
+    let function = function.parse::<usize>().ok().filter(|f| *f < functions).ok_or_else(refused)?;
+    let power = power.parse::<u32>().ok().filter(|p| *p > 0).ok_or_else(refused)?;
+    within("degree", usize::try_from(power).unwrap_or(usize::MAX), field.limits().degree)?;
+    Ok((function, power))
 }
 
 /// `K` or `K*` for the conjugate.
@@ -177,59 +177,55 @@ fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection>
     Ok((position, found.1))
 }
 
+fn read_signs(field: &Field, counts: &Counts) -> Result<Vec<(usize, Sign)>, Rejection> {
+    field.each(|f| read_signed(f, counts.functions))
+}
+
+fn read_pivot(field: &Field, counts: &Counts) -> Result<Option<usize>, Rejection> {
+    field.optional("pivot").map(|pivot| pivot.position(counts.functions)).transpose()
+}
+
 fn read_cell(field: &Field, counts: &Counts) -> Result<Cell, Rejection> {
-    field.only(
-        &["to", "order", "signs", "start", "pivot", "cofactors"],
-        "a cell: to, order, signs; start, or pivot and cofactors",
-    )?;
+    field.only(&["to", "order", "signs", "start", "pivot"], "a cell: to, order, signs; start or pivot")?;
     let order = field.get("order")?.count_within("order", field.limits().order)?;
-    let pivot = match (field.optional("start"), field.optional("pivot")) {
+    let pivot = match (field.optional("start"), read_pivot(field, counts)?) {
         (None, None) => Pivot::None,
         (Some(start), None) => Pivot::Start(start.each(|f| {
-            f.only(&["sign", "power"], "a trace that vanishes at the start: sign, power")?;
-            let (trace, sign) = read_signed(&f.get("sign")?, counts.traces)?;
+            f.only(&["sign", "power"], "a function that vanishes at the start: sign, power")?;
+            let (function, sign) = read_signed(&f.get("sign")?, counts.functions)?;
             let power = f.get("power")?.count_within("order", f.limits().order)?;
-            Ok((trace, power, sign))
+            Ok((function, power, sign))
         })?),
-        (None, Some(pivot)) => Pivot::Auxiliary(
-            pivot.position(counts.auxiliaries)?,
-            field.get("cofactors")?.each(|f| read_signed(f, counts.products))?,
-        ),
+        (None, Some(pivot)) => Pivot::Function(pivot),
         (Some(_), Some(_)) => return Err(field.refuse("start or pivot, not both")),
     };
-    if field.optional("cofactors").is_some() && field.optional("pivot").is_none() {
-        return Err(field.refuse("cofactors only beside a pivot"));
-    }
-    let signs = field.get("signs")?.each(|f| read_signed(f, counts.traces))?;
     if order == 0 {
         return Err(field.get("order")?.refuse("at least 1"));
     }
-    Ok(Cell { to: field.get("to")?.rational()?, order, signs, pivot })
+    Ok(Cell { to: field.get("to")?.rational()?, order, signs: read_signs(&field.get("signs")?, counts)?, pivot })
 }
 
 fn read_cells(field: &Field, counts: &Counts) -> Result<Vec<Cell>, Rejection> {
     bounded(field, "cells", field.limits().cells)?.each(|f| read_cell(f, counts))
 }
 
-fn read_lead(field: &Field, counts: &Counts) -> Result<Option<Lead>, Rejection> {
-    if matches!(field.value(), Value::Bool(false)) {
-        return Ok(None);
-    }
-    field.only(&["roots", "line", "doubled"], "false, or a lead: roots, line or doubled")?;
+fn read_lead(field: &Field, counts: &Counts) -> Result<Lead, Rejection> {
+    field.only(&["function", "roots", "line", "doubled"], "a lead: function, roots; line or doubled")?;
     let real_part = match (field.optional("line"), field.optional("doubled")) {
         (None, None) => RealPart::Single,
         (Some(line), None) => RealPart::Line(line.rational()?),
         (None, Some(doubled)) => RealPart::Doubled(doubled.each(|f| f.position(counts.sums))?),
         (Some(_), Some(_)) => return Err(field.refuse("line or doubled, not both")),
     };
-    Ok(Some(Lead {
+    Ok(Lead {
+        function: field.get("function")?.position(counts.functions)?,
         roots: bounded(&field.get("roots")?, "roots", field.limits().roots)?.each(|f| f.position(counts.roots))?,
         real_part,
-    }))
+    })
 }
 
-fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
-    field.only(&["from", "base", "angles", "leads", "nodes"], "a cone: from, base, angles, leads, nodes")?;
+fn read_far_field(field: &Field, counts: &Counts) -> Result<FarField, Rejection> {
+    field.only(&["from", "base", "angles", "leads"], "a far field: from, base, angles, leads")?;
     let base =
         bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
     let angles = bounded(&field.get("angles")?, "roots", field.limits().roots)?.each(|f| {
@@ -240,18 +236,40 @@ fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
             sum: f.optional("sum").map(|s| s.position(counts.sums)).transpose()?,
         })
     })?;
+    let leads = bounded(&field.get("leads")?, "statement_entries", field.limits().statement_entries)?
+        .each(|f| read_lead(f, counts))?;
+    Ok(FarField { from: field.get("from")?.rational()?, base, angles, leads })
+}
+
+fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
+    field.only(&["far", "nodes"], "a cone: far, nodes")?;
+    let far = read_far_field(&field.get("far")?, counts)?;
     let nodes = bounded(&field.get("nodes")?, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
         Some(axis) => {
             f.only(&["split"], "one key")?;
-            Ok(Node::Split(axis.position(base.len())?))
+            Ok(Node::Split(axis.position(far.base.len())?))
         }
-        None => Ok(Node::Leaf(f.each(|s| read_signed(s, counts.traces))?)),
+        None => {
+            f.only(&["signs", "pivot"], "a leaf: signs, pivot; or split")?;
+            Ok(Node::Leaf(read_signs(&f.get("signs")?, counts)?, read_pivot(f, counts)?))
+        }
     })?;
-    let leads = field.get("leads")?.each(|f| read_lead(f, counts))?;
-    if leads.len() != counts.traces {
-        return Err(field.get("leads")?.refuse("one entry for each trace"));
-    }
-    Ok(Cone { from: field.get("from")?.rational()?, base, angles, leads, nodes })
+    Ok(Cone { far, nodes })
+}
+
+fn read_meeting(field: &Field, counts: &Counts) -> Result<Meeting, Rejection> {
+    field.only(&["far", "angles", "zeros", "signs"], "evidence for inseparable: far, angles, zeros, signs")?;
+    let far = read_far_field(&field.get("far")?, counts)?;
+    let angles = bounded(&field.get("angles")?, "dimension", field.limits().dimension)?.each(|f| {
+        f.only(&["centre", "radius"], "an interval of angles: centre, radius")?;
+        let radius = f.get("radius")?.rational()?;
+        if radius.is_negative() { Err(f.refuse("a radius >= 0")) } else { Ok((f.get("centre")?.rational()?, radius)) }
+    })?;
+    let zeros = field.get("zeros")?.each(|f| {
+        f.only(&["function", "axis"], "a zero: function, axis")?;
+        Ok((f.get("function")?.position(counts.functions)?, f.get("axis")?.position(far.base.len())?))
+    })?;
+    Ok(Meeting { far, angles, zeros, signs: read_signs(&field.get("signs")?, counts)? })
 }
 
 fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> {
@@ -261,7 +279,11 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
         let cone = never.optional("cone").map(|f| read_cone(&f, counts)).transpose()?;
         return Ok(Evidence::Never { cells: read_cells(&never.get("cells")?, counts)?, cone });
     }
-    field.only(&["enters"], "evidence: never or enters")?;
+    if let Some(meeting) = field.optional("inseparable") {
+        field.only(&["inseparable"], "one key")?;
+        return Ok(Evidence::Inseparable(read_meeting(&meeting, counts)?));
+    }
+    field.only(&["enters"], "evidence: never, enters or inseparable")?;
     let enters = field.get("enters")?;
     enters.only(&["before", "from", "cell"], "evidence for enters: before, from, cell")?;
     Ok(Evidence::Enters {
@@ -291,9 +313,10 @@ fn write_auxiliary(w: &Auxiliary) -> Value {
     object(vec![("factors", list(&w.factors, write_factor)), ("derivatives", list(&w.derivatives, |x| text(x)))])
 }
 
-fn write_product(p: &Product) -> Value {
-    let (trace, pivot, cofactor) = (text(p.trace), text(p.pivot), text(p.cofactor));
-    object(vec![("trace", trace), ("pivot", pivot), ("power", text(p.power)), ("cofactor", cofactor)])
+fn write_identity(identity: &Identity) -> Value {
+    let power = |(function, power): &(usize, u32)| Value::Text(format!("{function}^{power}"));
+    let summands = list(&identity.summands, |factors| list(factors, power));
+    object(vec![("target", text(identity.target)), ("summands", summands)])
 }
 
 fn write_root(root: RootRef) -> Value {
@@ -314,32 +337,31 @@ fn write_signed(position: usize, sign: Sign) -> Value {
     Value::Text(format!("{position}:{symbol}"))
 }
 
+fn write_signs(signs: &[(usize, Sign)]) -> Value {
+    list(signs, |(position, sign)| write_signed(*position, *sign))
+}
+
 fn write_cell(cell: &Cell) -> Value {
-    let signs = |signs: &[(usize, Sign)]| list(signs, |(position, sign)| write_signed(*position, *sign));
-    let order = |(trace, power, sign): &(usize, u32, Sign)| {
-        object(vec![("sign", write_signed(*trace, *sign)), ("power", text(power))])
+    let order = |(function, power, sign): &(usize, u32, Sign)| {
+        object(vec![("sign", write_signed(*function, *sign)), ("power", text(power))])
     };
-    let mut fields = vec![("to", text(&cell.to)), ("order", text(cell.order)), ("signs", signs(&cell.signs))];
+    let mut fields = vec![("to", text(&cell.to)), ("order", text(cell.order)), ("signs", write_signs(&cell.signs))];
     match &cell.pivot {
         Pivot::None => {}
         Pivot::Start(start) => fields.push(("start", list(start, order))),
-        Pivot::Auxiliary(pivot, cofactors) => {
-            fields.push(("pivot", text(pivot)));
-            fields.push(("cofactors", signs(cofactors)));
-        }
+        Pivot::Function(pivot) => fields.push(("pivot", text(pivot))),
     }
     object(fields)
 }
 
-fn write_cone(cone: &Cone) -> Value {
+fn write_far_field(far: &FarField) -> Value {
     let angle = |angle: &Angle| {
         let mut fields = vec![("root", text(angle.root)), ("turns", list(&angle.turns, |n| text(n)))];
         fields.extend(angle.sum.map(|sum| ("sum", text(sum))));
         object(fields)
     };
-    let lead = |lead: &Option<Lead>| {
-        let Some(lead) = lead else { return Value::Bool(false) };
-        let mut fields = vec![("roots", list(&lead.roots, |r| text(r)))];
+    let lead = |lead: &Lead| {
+        let mut fields = vec![("function", text(lead.function)), ("roots", list(&lead.roots, |r| text(r)))];
         match &lead.real_part {
             RealPart::Single => {}
             RealPart::Line(line) => fields.push(("line", text(line))),
@@ -347,16 +369,34 @@ fn write_cone(cone: &Cone) -> Value {
         }
         object(fields)
     };
+    object(vec![
+        ("from", text(&far.from)),
+        ("base", list(&far.base, |b| text(b))),
+        ("angles", list(&far.angles, angle)),
+        ("leads", list(&far.leads, lead)),
+    ])
+}
+
+fn write_cone(cone: &Cone) -> Value {
     let node = |node: &Node| match node {
         Node::Split(axis) => object(vec![("split", text(axis))]),
-        Node::Leaf(signs) => list(signs, |(position, sign)| write_signed(*position, *sign)),
+        Node::Leaf(signs, pivot) => {
+            let mut fields = vec![("signs", write_signs(signs))];
+            fields.extend(pivot.map(|pivot| ("pivot", text(pivot))));
+            object(fields)
+        }
     };
+    object(vec![("far", write_far_field(&cone.far)), ("nodes", list(&cone.nodes, node))])
+}
+
+fn write_meeting(meeting: &Meeting) -> Value {
+    let interval = |(centre, radius): &(_, _)| object(vec![("centre", text(centre)), ("radius", text(radius))]);
+    let zero = |(function, axis): &(usize, usize)| object(vec![("function", text(function)), ("axis", text(axis))]);
     object(vec![
-        ("from", text(&cone.from)),
-        ("base", list(&cone.base, |b| text(b))),
-        ("angles", list(&cone.angles, angle)),
-        ("leads", list(&cone.leads, lead)),
-        ("nodes", list(&cone.nodes, node)),
+        ("far", write_far_field(&meeting.far)),
+        ("angles", list(&meeting.angles, interval)),
+        ("zeros", list(&meeting.zeros, zero)),
+        ("signs", write_signs(&meeting.signs)),
     ])
 }
 
@@ -371,5 +411,6 @@ fn write_evidence(evidence: &Evidence) -> Value {
             let fields = vec![("before", list(before, write_cell)), ("from", text(from)), ("cell", write_cell(cell))];
             object(vec![("enters", object(fields))])
         }
+        Evidence::Inseparable(meeting) => object(vec![("inseparable", write_meeting(meeting))]),
     }
 }

@@ -4,7 +4,7 @@ use crate::certificate::{Certificate, Evidence};
 use crate::error::{Duty, Obligation, Rejection, Rule};
 use crate::limits::{Budget, Limits};
 use crate::model::{Model, Setting};
-use crate::rules::{cone, cover, entry, equality};
+use crate::rules::{cone, cover, entry, equality, inseparable};
 use crate::statement::{Claim, Statement};
 
 /// A statement that has been proved. Only [`check`] makes one.
@@ -41,15 +41,13 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     let fits = Duty::new(Rule::Cover, Obligation::EvidenceFitsClaim, 0);
     match (&statement.claim, &certificate.evidence) {
         (Claim::Never { .. }, Evidence::Never { cells, cone: None }) => {
-            // Without an end, the last cell must hold for all time.
-            let timeless = cells.last().filter(|cell| cover::is_timeless(cell, on));
-            let until = zone.until.as_ref().or(timeless.map(|cell| &cell.to)).ok_or_else(|| fits.refuted())?;
+            let until = zone.until.as_ref().ok_or_else(|| fits.refuted())?;
             cover::check(&zone.from, until, cells, on, &mut budget)?;
         }
         (Claim::Never { .. }, Evidence::Never { cells, cone: Some(cone) }) => {
             // The cone holds from its start on; cells are needed for the part of the window before it.
-            if cone.from > zone.from {
-                cover::check(&zone.from, &cone.from, cells, on, &mut budget)?;
+            if cone.far.from > zone.from {
+                cover::check(&zone.from, &cone.far.from, cells, on, &mut budget)?;
             } else {
                 fits.ensure(cells.is_empty())?;
             }
@@ -67,9 +65,15 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
                 fits.ensure(before.is_empty())?;
             }
         }
-        (Claim::Never { .. }, Evidence::Enters { .. }) | (Claim::Enters { .. }, Evidence::Never { .. }) => {
-            return Err(fits.refuted());
+        (Claim::Eventually { from }, Evidence::Never { cells, cone: Some(cone) }) => {
+            fits.ensure(cells.is_empty() && zone.until.is_none() && zone.from <= *from && cone.far.from <= *from)?;
+            cone::check(cone, on, &mut budget)?;
         }
+        (Claim::Inseparable, Evidence::Inseparable(meeting)) => {
+            fits.ensure(zone.until.is_none())?;
+            inseparable::check(meeting, on, &mut budget)?;
+        }
+        (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_)) => return Err(fits.refuted()),
     }
     Ok(Verified { statement: statement.clone() })
 }

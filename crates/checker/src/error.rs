@@ -16,6 +16,8 @@ pub enum Rule {
     Cone,
     /// An instant in the zone.
     Entry,
+    /// A point of each trajectory cone in the zone.
+    Inseparable,
 }
 
 /// The side conditions of the proof rules: one variant each.
@@ -25,10 +27,10 @@ pub enum Obligation {
     RootsAreSeparated,
     /// The product of the factors annihilates the trace.
     FactorsAnnihilateTrace,
-    /// The closed form of a trace can be enclosed.
+    /// The closed form of a function can be enclosed.
     ClosedFormIsEnclosed,
-    /// A trace is the product that it is said to be.
-    ProductEqualsTrace,
+    /// A function is the sum of products that it is said to be.
+    IdentityHolds,
     /// The sums of the roots of two polynomials are the roots of the product of the listed ones.
     SumsAreRoots,
     /// A sum of two roots meets the disc of the named root and no other.
@@ -43,11 +45,11 @@ pub enum Obligation {
     AngleIsCombination,
     /// A lower term decreases from the cone's start on.
     LowerTermDecreases,
-    /// A trace has the said sign on the cell.
+    /// A function has the said sign on the cell.
     SignOnCell,
-    /// A trace vanishes at t = 0 to the said order.
+    /// A function vanishes at t = 0 to the said order.
     VanishesAtStart,
-    /// A trace has the said sign on the leaf of the torus.
+    /// A function has the said sign on the leaf of the torus.
     SignOnLeaf,
     /// The signs refute the zone on the cell.
     ZoneIsRefutedOnCell,
@@ -55,6 +57,14 @@ pub enum Obligation {
     ZoneIsRefutedOnLeaf,
     /// The cells cover the window up to the cone, or to the window's end.
     CellsCoverWindow,
+    /// The far field starts after t = 0.
+    FarFieldStartsLate,
+    /// The base frequencies are independent over the rationals.
+    FrequenciesAreIndependent,
+    /// A function has opposite signs on the two faces of the box across its axis.
+    FacesHaveOppositeSigns,
+    /// The signs prove the zone on the box of angles.
+    ZoneIsProvedOnTorus,
     /// The bisection of the torus is complete.
     LeavesCoverTorus,
     /// The instant lies in the window and in the claimed bracket.
@@ -174,6 +184,7 @@ impl fmt::Display for Rule {
             Self::Cover => "cover",
             Self::Cone => "cone",
             Self::Entry => "entry",
+            Self::Inseparable => "inseparable",
         })
     }
 }
@@ -183,21 +194,27 @@ impl fmt::Display for Obligation {
         f.write_str(match self {
             Self::RootsAreSeparated => "the roots of polynomial {} lie one each in disjoint discs",
             Self::FactorsAnnihilateTrace => "the listed factors annihilate trace {}",
-            Self::ClosedFormIsEnclosed => "the closed form of trace {} can be enclosed",
-            Self::ProductEqualsTrace => "product {} equals its trace",
+            Self::ClosedFormIsEnclosed => "the closed form of function {} can be enclosed",
+            Self::IdentityHolds => "identity {} holds",
             Self::SumsAreRoots => "sum {}: the sums of the roots are the roots of the listed polynomials",
             Self::SumIsIdentified => "sum {} meets the disc of the named root alone",
             Self::RootIsOnLine => "root {} lies on the named vertical line",
-            Self::RealPartsAreEqual => "the leading roots of trace {} have equal real parts",
-            Self::LowerRealPartIsLess => "the other roots of trace {} have smaller real parts than the leading ones",
+            Self::RealPartsAreEqual => "the leading roots of function {} have equal real parts",
+            Self::LowerRealPartIsLess => "the other roots of function {} have smaller real parts than the leading ones",
             Self::AngleIsCombination => "the angle of root {} is the listed combination",
-            Self::LowerTermDecreases => "the lower terms of trace {} decrease from the start of the cone on",
+            Self::LowerTermDecreases => "the lower terms of function {} decrease from the start of the cone on",
             Self::SignOnCell => "the listed signs hold on cell {}",
             Self::VanishesAtStart => "the listed derivatives vanish at t = 0 on cell {}",
             Self::SignOnLeaf => "the listed signs hold on leaf {}",
             Self::ZoneIsRefutedOnCell => "the signs refute the zone on cell {}",
             Self::ZoneIsRefutedOnLeaf => "the signs refute the zone on leaf {}",
             Self::CellsCoverWindow => "the cells increase and cover the window (cell {})",
+            Self::FarFieldStartsLate => "the far field starts after t = 0",
+            Self::FrequenciesAreIndependent => "the base frequencies are independent over the rationals",
+            Self::FacesHaveOppositeSigns => {
+                "function {} of the box has opposite signs on the two faces across its own axis"
+            }
+            Self::ZoneIsProvedOnTorus => "the signs prove the zone on the box of angles",
             Self::LeavesCoverTorus => "the bisection of the torus is complete (node {})",
             Self::InstantIsInWindow => "the instant lies in the window and in the claimed bracket",
             Self::PivotChangesSign => "pivot {} has opposite signs at the ends",

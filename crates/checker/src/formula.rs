@@ -1,6 +1,7 @@
-//! Zones with unknown signs: three-valued evaluation of a formula in negation normal form.
+//! Zones with signs not fully known: three-valued evaluation of a formula in negation normal form.
 
 use crate::certificate::Sign;
+use crate::signs::SignSet;
 use crate::statement::{Atom, Claim, Expression, Formula, Rational, Relation, Statement, Term};
 use num_traits::{Signed, Zero};
 use std::cmp::Ordering;
@@ -29,11 +30,11 @@ impl IndexedFormula {
         Self { shape, polynomials }
     }
 
-    /// The truth of the formula where it follows from the known signs alone; `None`: it does not.
+    /// The truth of the formula where it follows from the possible signs alone; `None`: it does not.
     ///
-    /// Lemma: in a formula without negation, a part whose truth is known to be true (false) whatever the unknown atoms are
-    /// decides as in Kleene's strong three-valued logic; the value is right for each assignment of the unknown atoms.
-    pub fn truth(&self, signs: &[Option<Sign>]) -> Option<bool> {
+    /// Lemma: in a formula without negation, a part whose truth is known to be true (false) whatever the undecided atoms are
+    /// decides as in Kleene's strong three-valued logic; the value is right for each assignment of the undecided atoms.
+    pub fn truth(&self, signs: &[SignSet]) -> Option<bool> {
         truth(&self.shape, signs)
     }
 }
@@ -53,16 +54,20 @@ fn number(formula: &Formula, polynomials: &mut Vec<Expression>) -> Shape {
     }
 }
 
-fn truth(shape: &Shape, signs: &[Option<Sign>]) -> Option<bool> {
+fn truth(shape: &Shape, signs: &[SignSet]) -> Option<bool> {
     match shape {
-        Shape::Atom(index, relation) => Some(holds(*relation, (*signs.get(*index)?)?)),
+        Shape::Atom(index, relation) => {
+            let mut truths = signs.get(*index)?.members().map(|sign| holds(*relation, sign));
+            let first = truths.next()?;
+            truths.all(|other| other == first).then_some(first)
+        }
         Shape::And(parts) => combine(parts, signs, false),
         Shape::Or(parts) => combine(parts, signs, true),
     }
 }
 
 /// `decisive` if one part has that truth, its opposite if all parts have the opposite.
-fn combine(parts: &[Shape], signs: &[Option<Sign>], decisive: bool) -> Option<bool> {
+fn combine(parts: &[Shape], signs: &[SignSet], decisive: bool) -> Option<bool> {
     let mut all_known = true;
     for part in parts {
         match truth(part, signs) {
@@ -94,7 +99,7 @@ pub fn claimed_formula(statement: &Statement) -> Option<Formula> {
     let zone = &statement.zone.inside;
     let margin = match &statement.claim {
         Claim::Never { margin } if margin.is_positive() => margin,
-        Claim::Never { .. } | Claim::Enters { .. } => return Some(zone.clone()),
+        _ => return Some(zone.clone()),
     };
     let Formula::Atom(Atom { polynomial, relation }) = zone else { return None };
     let above = Formula::Atom(Atom { polynomial: shifted(polynomial, margin), relation: Relation::NonNegative });

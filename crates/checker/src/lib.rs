@@ -8,7 +8,8 @@
 //! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
 //! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
 //!
-//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `lead`, `sequence`, `formula`, `number/`;
+//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `sequence`, `formula`,
+//! `signs`, `number/`;
 //! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `field`, `json` read and write texts.
 
 pub use check::{Verified, check};
@@ -27,11 +28,13 @@ pub mod number;
 pub mod polynomial;
 pub mod root;
 pub mod sequence;
+pub mod signs;
 pub mod statement;
 pub mod trace;
 
 mod certificate_text;
 mod check;
+mod far_field;
 mod field;
 mod rules;
 mod statement_text;

@@ -1,21 +1,23 @@
-//! The traces of a certificate, each proved to be what it is said to be: what the proof rules speak about.
+//! The functions of a certificate, each proved to be what it is said to be: what the proof rules speak about.
 //!
 //! Theorem page: docs/theorems/trace.md.
 
-use crate::certificate::{Certificate, Factor, Product};
+use crate::certificate::{Certificate, Factor, Identity};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::formula::{IndexedFormula, claimed_formula};
 use crate::limits::{Budget, Limits, within};
+use crate::number::Rational;
 use crate::root::RootTable;
 use crate::sequence::{Flow, Sequence};
+use crate::signs::{SignSet, narrow};
 use crate::trace::ClosedForm;
 use num_bigint::BigInt;
 use num_traits::{One, Zero};
 
-/// One trace: the polynomial of an atom along the trajectory.
+/// One function of time: a trace, that is the polynomial of an atom along the trajectory, or an auxiliary function.
 #[derive(Clone, Debug)]
-pub struct Trace {
-    /// Its derivatives at 0, exactly.
+pub struct Function {
+    /// Its derivatives at 0, exactly; of an auxiliary function as many as its annihilator's degree.
     pub sequence: Sequence,
     /// Its closed form; no terms if it is zero for all time.
     pub form: ClosedForm,
@@ -30,10 +32,8 @@ pub struct Model {
     pub formula: IndexedFormula,
     /// The certified roots.
     pub table: RootTable,
-    /// One trace for each polynomial of the formula.
-    pub traces: Vec<Trace>,
-    /// The auxiliary functions.
-    pub auxiliaries: Vec<ClosedForm>,
+    /// One trace for each polynomial of the formula, then the auxiliary functions.
+    pub functions: Vec<Function>,
 }
 
 /// What every proof rule works on.
@@ -44,8 +44,21 @@ pub(crate) struct Setting<'a> {
     pub(crate) limits: &'a Limits,
 }
 
+impl Setting<'_> {
+    /// The truth of the zone where it follows from the signs of functions and the certificate's identities.
+    pub(crate) fn truth(&self, mut signs: Vec<SignSet>) -> Option<bool> {
+        narrow(&mut signs, &self.certificate.identities);
+        self.model.formula.truth(&signs)
+    }
+
+    /// No sign is known of any function.
+    pub(crate) fn no_signs(&self) -> Vec<SignSet> {
+        vec![SignSet::ANY; self.model.functions.len()]
+    }
+}
+
 impl Model {
-    /// Proves all traces, auxiliary functions and products of a certificate.
+    /// Proves all functions and identities of a certificate.
     ///
     /// # Errors
     /// The first obligation that is not met.
@@ -54,9 +67,10 @@ impl Model {
         let formula = claimed_formula(&certificate.statement).ok_or_else(|| fits.refuted())?;
         let formula = IndexedFormula::new(&formula);
         fits.ensure(formula.polynomials.len() == certificate.traces.len())?;
-        let table = RootTable::new(&certificate.families, certificate.bits, budget)?;
+        let bits = certificate.bits;
+        let table = RootTable::new(&certificate.families, bits, budget)?;
         let flow = Flow::new(&certificate.statement, limits);
-        let mut traces = Vec::new();
+        let mut functions = Vec::new();
         for (position, (polynomial, factors)) in formula.polynomials.iter().zip(&certificate.traces).enumerate() {
             check_degree(factors, &table, limits)?;
             let (order, sequence) = flow.trace(polynomial, budget)?;
@@ -65,81 +79,82 @@ impl Model {
             let annihilates = sequence.is_annihilated(&m, order);
             Duty::new(Rule::Trace, Obligation::FactorsAnnihilateTrace, position).ensure(annihilates)?;
             let derivatives = sequence.derivatives(m.degree());
-            let form = ClosedForm::new(factors, &derivatives, &table, certificate.bits, position, budget)?;
-            traces.push(Trace { sequence, form, factors: factors.clone() });
+            let form = ClosedForm::new(factors, &derivatives, &table, bits, position, budget)?;
+            functions.push(Function { sequence, form, factors: factors.clone() });
         }
-        let mut auxiliaries = Vec::new();
-        for (position, auxiliary) in certificate.auxiliaries.iter().enumerate() {
-            let degree = check_degree(&auxiliary.factors, &table, limits)?;
+        for auxiliary in &certificate.auxiliaries {
+            let (position, factors) = (functions.len(), &auxiliary.factors);
+            let degree = check_degree(factors, &table, limits)?;
             let duty = Duty::new(Rule::Trace, Obligation::ClosedFormIsEnclosed, position);
-            duty.ensure(auxiliary.derivatives.len() == degree && !auxiliary.factors.is_empty())?;
-            let form = ClosedForm::new(
-                &auxiliary.factors,
-                &auxiliary.derivatives,
-                &table,
-                certificate.bits,
-                position,
-                budget,
-            )?;
-            auxiliaries.push(form);
+            duty.ensure(auxiliary.derivatives.len() == degree && !factors.is_empty())?;
+            let form = ClosedForm::new(factors, &auxiliary.derivatives, &table, bits, position, budget)?;
+            let sequence = Sequence::from_rationals(&auxiliary.derivatives);
+            functions.push(Function { sequence, form, factors: factors.clone() });
         }
-        let model = Self { formula, table, traces, auxiliaries };
-        let on = Setting { certificate, model: &model, limits };
-        for (position, product) in certificate.products.iter().enumerate() {
-            check_product(position, product, on, budget)?;
+        let model = Self { formula, table, functions };
+        for (position, identity) in certificate.identities.iter().enumerate() {
+            model.check_identity(position, identity, limits, budget)?;
         }
         Ok(model)
     }
 
-    fn degree(&self, factors: &[Factor]) -> usize {
+    fn degree(&self, function: &Function) -> usize {
         let degree = |f: &Factor| self.table.polynomial(f.family).map_or(0, |p| p.degree());
-        factors.iter().map(|f| degree(f).saturating_mul(usize::try_from(f.multiplicity).unwrap_or(usize::MAX))).sum()
+        let times = |f: &Factor| usize::try_from(f.multiplicity).unwrap_or(usize::MAX);
+        function.factors.iter().map(|f| degree(f).saturating_mul(times(f))).sum()
     }
 
-    /// The first `count` derivatives at 0 of the function with this annihilator and these first derivatives.
-    fn extended(&self, factors: &[Factor], derivatives: &[crate::number::Rational], count: usize) -> Option<Sequence> {
-        let m = self.table.product(factors)?;
-        let mut values = derivatives.to_vec();
+    /// The first `count` derivatives at 0 of a function, from as many as its annihilator's degree.
+    fn extended(&self, function: &Function, count: usize) -> Option<Sequence> {
+        let m = self.table.product(&function.factors)?;
+        let mut values = function.sequence.derivatives(m.degree());
         while values.len() < count {
             let recent = values.iter().skip(values.len().checked_sub(m.degree())?);
-            let next = recent.zip(m.coefficients()).fold(crate::number::Rational::zero(), |sum, (y, c)| sum - y * c);
+            let next = recent.zip(m.coefficients()).fold(Rational::zero(), |sum, (y, c)| sum - y * c);
             values.push(next);
         }
         Some(Sequence::from_rationals(&values))
     }
-}
 
-/// Checks `trace = pivot^power * cofactor`.
-///
-/// Lemma: the solutions of m(d/dt) g = 0 form a space of dimension deg m closed under d/dt. Products of k elements
-/// of one of dimension p and one element of one of dimension c span a space of dimension at most
-/// binom(p + k - 1, k) c, closed under d/dt. So the difference of the two sides lies in a closed space of dimension
-/// <= B = deg(trace) + binom(p + k - 1, k) c, and is zero if its first B derivatives at 0 are.
-fn check_product(position: usize, product: &Product, on: Setting, budget: &mut Budget) -> Checked {
-    let Setting { certificate: Certificate { auxiliaries, .. }, model, limits } = on;
-    let duty = Duty::new(Rule::Trace, Obligation::ProductEqualsTrace, position);
-    let missing = || duty.refuted();
-    let trace = model.traces.get(product.trace).ok_or_else(missing)?;
-    let pivot = auxiliaries.get(product.pivot).ok_or_else(missing)?;
-    let cofactor = auxiliaries.get(product.cofactor).ok_or_else(missing)?;
-    let trace_degree = model.degree(&trace.factors);
-    let pivot_degree = model.degree(&pivot.factors);
-    let mut ways = 1_usize;
-    for i in 1..=usize::try_from(product.power).unwrap_or(usize::MAX) {
-        ways = ways.saturating_mul((pivot_degree + i).saturating_sub(1)) / i;
-        within("derivatives", ways, limits.derivatives)?;
+    /// Checks `target = sum of the summands`.
+    ///
+    /// Lemma: the solutions of m(d/dt) g = 0 form a space of dimension deg m closed under d/dt. The products of k elements of one
+    /// of dimension d span a space of dimension at most binom(d + k - 1, k), closed under d/dt; products of elements of several
+    /// spaces and sums are in closed spaces of dimension at most the product and the sum of theirs. So the difference of
+    /// the two sides is in a closed space of dimension at most the bound B below, and is zero if its first B derivatives at 0 are.
+    fn check_identity(&self, position: usize, identity: &Identity, limits: &Limits, budget: &mut Budget) -> Checked {
+        let duty = Duty::new(Rule::Trace, Obligation::IdentityHolds, position);
+        let function = |index: &usize| self.functions.get(*index).ok_or_else(|| duty.refuted());
+        let mut bound = self.degree(function(&identity.target)?);
+        let mut products = 1_usize;
+        for summand in &identity.summands {
+            let mut ways = 1_usize;
+            for (index, power) in summand {
+                let degree = self.degree(function(index)?);
+                for i in 1..=usize::try_from(*power).unwrap_or(usize::MAX) {
+                    ways = ways.saturating_mul((degree + i).saturating_sub(1)) / i;
+                    products += 1;
+                    within("derivatives", ways, limits.derivatives)?;
+                }
+            }
+            bound = bound.saturating_add(ways);
+            within("derivatives", bound, limits.derivatives)?;
+        }
+        budget.spend(bound.saturating_mul(bound).saturating_mul(products), 64)?;
+        let mut sum = Sequence::from_rationals(&vec![Rational::zero(); bound]);
+        for summand in &identity.summands {
+            let mut product = Sequence::constant(&Rational::one(), &BigInt::one(), bound);
+            for (index, power) in summand {
+                let factor = self.extended(function(index)?, bound).ok_or_else(|| duty.refuted())?;
+                for _ in 0..*power {
+                    product = product.mul(&factor);
+                }
+            }
+            sum = sum.add(&product);
+        }
+        let target = self.extended(function(&identity.target)?, bound);
+        duty.ensure(target.is_some_and(|target| target.derivatives(bound) == sum.derivatives(bound)))
     }
-    let bound = trace_degree.saturating_add(ways.saturating_mul(model.degree(&cofactor.factors)));
-    within("derivatives", bound, limits.derivatives)?;
-    budget.spend(bound.saturating_mul(bound), 64)?;
-    let left = model.extended(&trace.factors, &trace.sequence.derivatives(trace_degree), bound);
-    let pivot = model.extended(&pivot.factors, &pivot.derivatives, bound).ok_or_else(missing)?;
-    let mut right = model.extended(&cofactor.factors, &cofactor.derivatives, bound).ok_or_else(missing)?;
-    for _ in 0..product.power {
-        right = right.mul(&pivot);
-    }
-    let equal = left.is_some_and(|left| left.derivatives(bound) == right.derivatives(bound));
-    duty.ensure(equal)
 }
 
 /// The degree of a product of families, within the limit, with each family at most once.

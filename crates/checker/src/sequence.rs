@@ -84,7 +84,7 @@ impl Sequence {
         })
     }
 
-    fn constant(value: &Rational, rate: &BigInt, length: usize) -> Self {
+    pub(crate) fn constant(value: &Rational, rate: &BigInt, length: usize) -> Self {
         let mut values = vec![BigInt::zero(); length];
         if let Some(first) = values.first_mut() {
             *first = value.numer().clone();
@@ -107,7 +107,7 @@ impl Sequence {
     }
 
     /// self + other; both have the same rate and length.
-    fn add(mut self, other: &Self) -> Self {
+    pub(crate) fn add(mut self, other: &Self) -> Self {
         let common = self.denominator.lcm(&other.denominator);
         let (ours, theirs) = (&common / &self.denominator, &common / &other.denominator);
         for (v, w) in self.values.iter_mut().zip(&other.values) {

@@ -181,6 +181,18 @@ pub enum Claim {
         /// Whether the trajectory is also claimed to be outside the zone at all instants of the window before `from`.
         first: bool,
     },
+    /// The trajectory cone from `from` on avoids the zone: whatever the phases of its oscillations are, and so the trajectory
+    /// itself is in the zone at no instant t >= from. Only for windows without an end. The cone is the set of all points that
+    /// come about when in the closed form of the trajectory the factors exp(i omega t) are replaced by points of the closure
+    /// of their joint orbit, and the rest is kept, at t >= from.
+    Eventually {
+        /// The cone's start.
+        from: Rational,
+    },
+    /// The trajectory cone from each instant on meets the zone; so no o-minimal set that is invariant, contains the trajectory
+    /// from some instant on, and avoids the zone exists (doi:10.4230/LIPIcs.ICALP.2020.107). It does not say that the
+    /// trajectory enters the zone, nor that it does not. Only for windows without an end.
+    Inseparable,
 }
 
 /// A claim about a system: what a certificate is evidence for.

@@ -234,7 +234,18 @@ fn read_claim(field: &Field) -> Result<Claim, Rejection> {
         let margin = never.get("margin")?.rational()?;
         return if margin.is_negative() { Err(never.refuse("a margin >= 0")) } else { Ok(Claim::Never { margin }) };
     }
-    field.only(&["enters"], "a claim: never or enters")?;
+    if let Some(eventually) = field.optional("eventually") {
+        field.only(&["eventually"], "one key")?;
+        eventually.only(&["from"], "eventually: from")?;
+        let from = eventually.get("from")?.rational()?;
+        return if from.is_negative() { Err(eventually.refuse("from >= 0")) } else { Ok(Claim::Eventually { from }) };
+    }
+    if let Some(inseparable) = field.optional("inseparable") {
+        field.only(&["inseparable"], "one key")?;
+        inseparable.only(&[], "inseparable: no key")?;
+        return Ok(Claim::Inseparable);
+    }
+    field.only(&["enters"], "a claim: never, enters, eventually or inseparable")?;
     let enters = field.get("enters")?;
     enters.only(&["from", "to", "first"], "enters: from, to, first")?;
     let (from, to) = (enters.get("from")?.rational()?, enters.get("to")?.rational()?);
@@ -329,6 +340,8 @@ fn write_statement(s: &Statement) -> Value {
             "enters",
             object(vec![("from", text(from)), ("to", text(to)), ("first", Value::Bool(*first))]),
         )]),
+        Claim::Eventually { from } => object(vec![("eventually", object(vec![("from", text(from))]))]),
+        Claim::Inseparable => object(vec![("inseparable", object(Vec::new()))]),
     };
     object(vec![
         ("format", text(STATEMENT_FORMAT)),

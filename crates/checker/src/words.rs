@@ -19,6 +19,12 @@ All numbers are exact. A decimal in parentheses repeats the number before it; wh
 fraction counts. t is time, counted from 0 in the unit of the model; x' is the derivative of x with respect to t.
 ";
 
+const INSEPARABLE: &str = "\
+  The trajectory cone from each instant on meets the zone: some phases of the oscillations, to which the trajectory comes
+  arbitrarily close, would put it into the zone, at each large t. So no invariant of the o-minimal kind (defined by polynomials
+  and exponentials) contains the trajectory from some instant on and avoids the zone.
+  This does NOT say that the trajectory enters the zone, nor that it does not.";
+
 impl Statement {
     /// The statement in plain words: several lines, closed by a line feed.
     ///
@@ -120,6 +126,15 @@ impl Statement {
                     ));
                 }
             }
+            Claim::Eventually { from } => {
+                let from = fraction_and_decimal(from);
+                lines.push(format!(
+                    "  From t = {from} on, the trajectory cone avoids the zone: the trajectory is in the zone at no"
+                ));
+                lines.push("  instant from then on, and would not be if the phases of its oscillations were any others that it".into());
+                lines.push("  comes arbitrarily close to. Nothing is said about earlier instants.".into());
+            }
+            Claim::Inseparable => lines.extend(INSEPARABLE.lines().map(str::to_string)),
         }
     }
 

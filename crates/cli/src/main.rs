@@ -16,7 +16,8 @@ struct Cli {
 enum Command {
     /// Settle the keep-out zones of a model
     ///
-    /// Exit status: 0 every zone is clear; 1 some zone is entered; 2 none is entered, but some zone is not settled;
+    /// Exit status: 0 every zone is clear (or left for good); 1 some zone is entered; 2 none is entered, but some zone is not
+    /// settled, or inseparable;
     /// 3 the model or the command is wrong.
     Certify(certify::Arguments),
     /// Print the exact structure of a model's dynamics: blocks, factors, eigenvalues, growth, frequencies

@@ -2,8 +2,9 @@
 
 use crate::margin::margin;
 use crate::options::Options;
-use crate::outcome::{Error, Outcome, Proof};
-use crate::search::{Finding, settle};
+use crate::outcome::{Error, Outcome, Proof, Reason};
+use crate::search::{Finding, settle, settle_eventually};
+use keepout_checker::certificate::Certificate;
 use keepout_checker::number::Rational;
 use keepout_checker::statement::Statement;
 use num_traits::Zero;
@@ -49,26 +50,50 @@ use num_traits::Zero;
 /// ```
 pub fn certify(statement: &Statement, options: &Options) -> Result<Outcome, Error> {
     let mut effort = options.effort;
-    let zero = Rational::zero();
-    match settle(statement, &zero, options, &mut effort) {
-        Finding::Open(reason) => {
-            let tried = format!(
-                "cells of a cover, leading terms at doubling times, precisions of 96 to {} bits; {} of {} units of work used",
-                options.max_bits,
-                options.effort - effort,
-                options.effort
-            );
-            Ok(Outcome::Unsettled { reason, tried })
-        }
-        Finding::Enters(certificate) => {
-            let proof = Proof::new(certificate, &options.limits).map_err(Error::Refused)?;
-            Ok(Outcome::Enters { proof: Box::new(proof) })
-        }
+    match settle(statement, &Rational::zero(), options, &mut effort) {
+        Finding::Open(reason) => Ok(unsettled(reason, options, effort)),
+        Finding::Enters(certificate) => Ok(Outcome::Enters { proof: proved(certificate, options)? }),
+        Finding::Inseparable(certificate) => Ok(Outcome::Inseparable { proof: proved(certificate, options)? }),
         Finding::Never(certificate) => {
-            let proof = Proof::new(certificate, &options.limits).map_err(Error::Refused)?;
+            let proof = proved(certificate, options)?;
             let widened = if options.margin { margin(&proof, options) } else { None };
-            let (proof, margin) = widened.map_or((proof, None), |(wide, margin)| (wide, Some(margin)));
-            Ok(Outcome::Clear { proof: Box::new(proof), margin })
+            let (proof, margin) = widened.map_or((proof, None), |(wide, margin)| (Box::new(wide), Some(margin)));
+            Ok(Outcome::Clear { proof, margin })
         }
     }
+}
+
+/// Settles whether the trajectory cone avoids the zone from some instant on, whatever happens before: the outcome is
+/// [`Outcome::Eventually`], [`Outcome::Inseparable`] or [`Outcome::Unsettled`]. The statement's own claim is not looked at.
+///
+/// # Guarantee
+/// A proof in the outcome has been verified by [`keepout_checker::check`] under `options.limits`.
+///
+/// # Errors
+/// [`Error::Refused`] if the checker refuses what the search found, which is a defect of the search.
+pub fn certify_eventually(statement: &Statement, options: &Options) -> Result<Outcome, Error> {
+    let mut effort = options.effort;
+    if statement.zone.until.is_some() {
+        return Ok(unsettled(Reason::WindowEnds, options, effort));
+    }
+    match settle_eventually(statement, options, &mut effort) {
+        Finding::Never(certificate) => Ok(Outcome::Eventually { proof: proved(certificate, options)? }),
+        Finding::Enters(certificate) => Ok(Outcome::Enters { proof: proved(certificate, options)? }),
+        Finding::Inseparable(certificate) => Ok(Outcome::Inseparable { proof: proved(certificate, options)? }),
+        Finding::Open(reason) => Ok(unsettled(reason, options, effort)),
+    }
+}
+
+fn proved(certificate: Certificate, options: &Options) -> Result<Box<Proof>, Error> {
+    Proof::new(certificate, &options.limits).map(Box::new).map_err(Error::Refused)
+}
+
+fn unsettled(reason: Reason, options: &Options, effort: u64) -> Outcome {
+    let tried = format!(
+        "cells of a cover, leading terms at doubling times, precisions of 96 to {} bits; {} of {} units of work used",
+        options.max_bits,
+        options.effort - effort,
+        options.effort
+    );
+    Outcome::Unsettled { reason, tried }
 }

@@ -35,28 +35,27 @@ impl Enclosure {
         let mut budget = Budget::new(&unlimited);
         let table = RootTable::new(&families, bits, &mut budget)?;
         let mut enclosure = Self { bits, families, table, forms: Vec::new(), budget, limits: unlimited };
-        for (sequence, factors) in problem.sequences.iter().zip(&problem.factors) {
-            let form = enclosure.closed_form(factors, &sequence.derivatives(problem.degree(factors)))?;
-            enclosure.forms.push(form);
-        }
+        enclosure.add_forms(problem)?;
         Ok(enclosure)
     }
 
-    /// Takes in the families that were added to the problem since. Known roots keep their places, so the closed forms stay.
-    pub(crate) fn renew(&mut self, problem: &Problem) -> Option<()> {
-        let added = problem.families.iter().skip(self.families.len()).map(|f| family(f, self.bits));
-        self.families.extend(added);
-        self.table = RootTable::new(&self.families, self.bits, &mut self.budget).ok()?;
-        Some(())
+    fn add_forms(&mut self, problem: &Problem) -> Result<(), Rejection> {
+        for function in self.forms.len()..problem.factors.len() {
+            let (factors, derivatives) = (&problem.factors[function], problem.own_derivatives(function));
+            self.forms.push(ClosedForm::new(factors, &derivatives, &self.table, self.bits, 0, &mut self.budget)?);
+        }
+        Ok(())
     }
 
-    /// The closed form of a further function.
-    pub(crate) fn closed_form(
-        &mut self,
-        factors: &[Factor],
-        derivatives: &[Rational],
-    ) -> Result<ClosedForm, Rejection> {
-        ClosedForm::new(factors, derivatives, &self.table, self.bits, 0, &mut self.budget)
+    /// Takes in what was added to the problem since. Known roots keep their places, so the closed forms stay.
+    pub(crate) fn renew(&mut self, problem: &Problem) -> Option<()> {
+        let added = problem.families.iter().skip(self.families.len()).map(|f| family(f, self.bits));
+        let known = self.families.len();
+        self.families.extend(added);
+        if self.families.len() > known {
+            self.table = RootTable::new(&self.families, self.bits, &mut self.budget).ok()?;
+        }
+        self.add_forms(problem).ok()
     }
 
     /// Whether the closed forms lose no more than half of their digits to cancellation: at t = 0, where the values are known.
@@ -65,7 +64,7 @@ impl Enclosure {
     /// bound of its exponents.
     pub(crate) fn is_precise(&mut self, problem: &Problem) -> bool {
         let zero = Rational::from_integer(0.into());
-        (0..self.forms.len()).all(|i| {
+        (0..problem.traces()).all(|i| {
             if self.forms[i].terms.is_empty() {
                 return true;
             }
@@ -81,18 +80,7 @@ impl Enclosure {
         })
     }
 
-    /// Encloses a function on [from, to], with a number of Taylor terms that suits the stretch.
-    pub(crate) fn on_stretch(
-        &mut self,
-        form: &ClosedForm,
-        from: &Rational,
-        to: &Rational,
-        order: u32,
-    ) -> Option<Interval> {
-        on_stretch(form, from, to, order, self.bits, &mut self.budget)
-    }
-
-    /// Encloses a trace on [from, to].
+    /// Encloses a function on [from, to].
     pub(crate) fn trace_on_stretch(
         &mut self,
         index: usize,
@@ -120,20 +108,22 @@ impl Enclosure {
     pub(crate) fn judge(&mut self, problem: &Problem, from: &Rational, to: &Rational, first: &[usize]) -> Judgement {
         let order = self.order(from, to);
         let mut judgement = Judgement { signs: vec![None; self.forms.len()], truth: None, order };
-        let rest = (0..self.forms.len()).filter(|i| !first.contains(i));
-        let sequence: Vec<usize> = first.iter().copied().chain(rest).collect();
-        judgement.truth = problem.formula.truth(&judgement.signs);
+        let rest = (0..problem.traces()).filter(|i| !first.contains(i));
+        // Signs of auxiliary functions last: they are needed only where traces touch zero.
+        let auxiliary = (problem.traces()..self.forms.len()).filter(|i| !first.contains(i));
+        let sequence: Vec<usize> = first.iter().copied().chain(rest).chain(auxiliary).collect();
+        judgement.truth = problem.truth(&judgement.signs);
         for index in sequence {
             if judgement.truth.is_some() {
                 break;
             }
             judgement.signs[index] = self.sign(problem, index, from, to, order);
-            judgement.truth = problem.formula.truth(&judgement.signs);
+            judgement.truth = problem.truth(&judgement.signs);
         }
         judgement
     }
 
-    /// The sign of one trace on [from, to]; exact at t = 0.
+    /// The sign of one function on [from, to]; exact at t = 0.
     pub(crate) fn sign(
         &mut self,
         problem: &Problem,

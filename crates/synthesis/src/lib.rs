@@ -3,7 +3,7 @@
 //! Search is free: candidates come from guesses and enclosures, and are returned only after [`keepout_checker::check`] has
 //! verified them. What cannot be settled is reported as [`Outcome::Unsettled`] with the reason.
 //!
-//! Start at [`certify`].
+//! Start at [`certify`]; [`certify_eventually`] is about large times alone.
 
 mod certify;
 mod enclosure;
@@ -14,6 +14,6 @@ mod problem;
 mod search;
 mod strategy;
 
-pub use certify::certify;
+pub use certify::{certify, certify_eventually};
 pub use options::Options;
 pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};

@@ -91,7 +91,7 @@ fn instants(proof: &Proof) -> Vec<Rational> {
     let mut instants = vec![zone.from.clone()];
     if let Evidence::Never { cells, cone } = &proof.certificate().evidence {
         instants.extend(cells.iter().map(|c| c.to.clone()));
-        instants.extend(cone.iter().map(|c| c.from.clone()));
+        instants.extend(cone.iter().map(|c| c.far.from.clone()));
     }
     instants.extend(zone.until.clone());
     instants.retain(|t| *t >= zone.from);
@@ -129,7 +129,7 @@ fn proved(margin: &Rational, proof: &Proof, options: &Options) -> Attempt {
                     return Attempt::EnteredLater(to.clone());
                 }
             }
-            Finding::Open(_) => {}
+            Finding::Inseparable(_) | Finding::Open(_) => {}
         }
     }
     Attempt::Failed

@@ -73,6 +73,8 @@ pub enum Reason {
         /// The stretch of time from the window's start in which the zone is proved clear.
         clear_until: Rational,
     },
+    /// A claim about the trajectory cone needs a window without an end.
+    WindowEnds,
     /// A limit of the checker would be exceeded.
     Limit(Rejection),
 }
@@ -92,7 +94,17 @@ pub enum Outcome {
         /// The proof.
         proof: Box<Proof>,
     },
-    /// Neither is proved.
+    /// Not known to be entered, but each trajectory cone meets the zone: no o-minimal invariant keeps the trajectory clear of it.
+    Inseparable {
+        /// The proof.
+        proof: Box<Proof>,
+    },
+    /// From the start in the proof's claim on the trajectory cone avoids the zone. Only where that was asked for.
+    Eventually {
+        /// The proof.
+        proof: Box<Proof>,
+    },
+    /// None of these is proved.
     Unsettled {
         /// Why.
         reason: Reason,

@@ -1,24 +1,32 @@
-//! A statement's traces with the exact factors of their annihilators.
+//! A statement's traces with the exact factors of their annihilators; further functions and identities between them.
 
+use crate::strategy::identity;
 use keepout_checker::Limits;
-use keepout_checker::certificate::Factor;
+use keepout_checker::certificate::{Auxiliary, Factor, Identity, Sign};
 use keepout_checker::error::Rejection;
 use keepout_checker::formula::{IndexedFormula, claimed_formula};
 use keepout_checker::limits::Budget;
+use keepout_checker::number::Rational;
 use keepout_checker::sequence::{Flow, Sequence};
-use keepout_checker::statement::{Claim, Statement};
-use keepout_core::{IntegerPolynomial, factorize, minimal_annihilator};
+use keepout_checker::signs::{SignSet, narrow};
+use keepout_checker::statement::{Claim, Expression, Statement};
+use keepout_core::{ExponentialPolynomial, IntegerPolynomial, factorize, minimal_annihilator};
+use std::cmp::Ordering;
 
-/// Traces and the polynomials whose roots are their exponents.
+/// Functions, that is traces and then auxiliary ones, and the polynomials whose roots are their exponents.
 #[derive(Clone, Debug)]
 pub(crate) struct Problem {
     pub(crate) statement: Statement,
     pub(crate) formula: IndexedFormula,
     pub(crate) sequences: Vec<Sequence>,
-    /// The factors of each trace; the families are positions in `families`.
+    /// The factors of each function; the families are positions in `families`.
     pub(crate) factors: Vec<Vec<Factor>>,
     /// Pairwise coprime, square-free, primitive.
     pub(crate) families: Vec<IntegerPolynomial>,
+    /// In an order in which each narrows signs that later ones use.
+    pub(crate) identities: Vec<Identity>,
+    limits: Limits,
+    is_enriched: bool,
 }
 
 impl Problem {
@@ -39,13 +47,103 @@ impl Problem {
             sequences.push(sequence);
         }
         drop(flow);
-        let mut problem = Self { statement, formula, sequences, factors: Vec::new(), families: Vec::new() };
+        let mut problem = Self {
+            statement,
+            formula,
+            sequences,
+            factors: Vec::new(),
+            families: Vec::new(),
+            identities: Vec::new(),
+            limits: limits.clone(),
+            is_enriched: false,
+        };
         let parts: Vec<IntegerPolynomial> =
             annihilators.iter().flat_map(|m| factorize(m).factors).map(|f| f.polynomial).collect();
         problem.families = IntegerPolynomial::coprime_base(&parts);
         problem.families.retain(|f| f.degree() > 0);
         problem.factors = annihilators.iter().map(|m| multiplicities(m, &problem.families)).collect();
         Ok(problem)
+    }
+
+    /// The number of traces: the functions before the auxiliary ones.
+    pub(crate) fn traces(&self) -> usize {
+        self.formula.polynomials.len()
+    }
+
+    /// The auxiliary functions.
+    pub(crate) fn auxiliaries(&self) -> Vec<Auxiliary> {
+        let auxiliary = |i: usize| Auxiliary { factors: self.factors[i].clone(), derivatives: self.own_derivatives(i) };
+        (self.traces()..self.factors.len()).map(auxiliary).collect()
+    }
+
+    /// As many derivatives of a function as the degree of its annihilator.
+    pub(crate) fn own_derivatives(&self, function: usize) -> Vec<Rational> {
+        self.sequences[function].derivatives(self.degree(&self.factors[function]))
+    }
+
+    /// A function as an element of the ring of exponential polynomials.
+    pub(crate) fn function(&self, index: usize) -> Option<ExponentialPolynomial> {
+        let annihilator = self.factors[index]
+            .iter()
+            .fold(IntegerPolynomial::one(), |m, f| &m * &self.families[f.family].power(f.multiplicity as usize));
+        ExponentialPolynomial::new(&annihilator, &self.own_derivatives(index)).ok()
+    }
+
+    /// The position of a function that is not zero, added if it is new.
+    pub(crate) fn add(&mut self, function: &ExponentialPolynomial) -> Option<usize> {
+        let factors = self.factor_list(&function.annihilator())?;
+        let derivatives = function.derivatives(function.order());
+        self.add_auxiliary(Auxiliary { factors, derivatives })
+    }
+
+    /// The position of an auxiliary function, added if it is new.
+    pub(crate) fn add_auxiliary(&mut self, auxiliary: Auxiliary) -> Option<usize> {
+        if auxiliary.factors.is_empty() {
+            return None;
+        }
+        let known = (self.traces()..self.factors.len())
+            .find(|i| self.factors[*i] == auxiliary.factors && self.own_derivatives(*i) == auxiliary.derivatives);
+        Some(known.unwrap_or_else(|| {
+            self.factors.push(auxiliary.factors);
+            self.sequences.push(Sequence::from_rationals(&auxiliary.derivatives));
+            self.factors.len() - 1
+        }))
+    }
+
+    /// Adds identities from which signs of traces follow where these touch zero. Once; whether there are new ones.
+    pub(crate) fn enrich(&mut self) -> bool {
+        if std::mem::replace(&mut self.is_enriched, true) {
+            return false;
+        }
+        let known = self.identities.len();
+        for trace in 0..self.traces() {
+            identity::decompose_trace(trace, self);
+        }
+        self.identities.len() > known
+    }
+
+    /// The trace of a further polynomial, as a function.
+    pub(crate) fn trace_of(&self, polynomial: &Expression) -> Option<ExponentialPolynomial> {
+        let flow = Flow::new(&self.statement, &self.limits);
+        let (_, sequence) = flow.trace(polynomial, &mut Budget::new(&self.limits)).ok()?;
+        let annihilator = unscaled(&sequence)?;
+        ExponentialPolynomial::new(&annihilator, &sequence.derivatives(annihilator.degree())).ok()
+    }
+
+    /// The zone's truth where it follows from signs of functions.
+    pub(crate) fn truth(&self, signs: &[Option<Sign>]) -> Option<bool> {
+        let mut sets: Vec<SignSet> = signs.iter().map(|s| s.map_or(SignSet::ANY, SignSet::only)).collect();
+        narrow(&mut sets, &self.identities);
+        self.formula.truth(&sets)
+    }
+
+    /// The zone's truth where a function is negative, zero and positive.
+    pub(crate) fn truths(&self, signs: &[Option<Sign>], pivot: usize) -> [Option<bool>; 3] {
+        [Ordering::Less, Ordering::Equal, Ordering::Greater].map(|sign| {
+            let mut case = signs.to_vec();
+            case[pivot] = Some(sign);
+            self.truth(&case)
+        })
     }
 
     /// The position of a family, added if it is new. `None`: it has roots in common with another family.

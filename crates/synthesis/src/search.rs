@@ -1,22 +1,27 @@
 //! The search for one claim: cells and a cone for `never`, an instant for `enters`, at growing times and precisions.
 
-use crate::enclosure::Enclosure;
+use crate::enclosure::{Enclosure, approx_value};
 use crate::options::Options;
 use crate::outcome::Reason;
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, first_start};
 use crate::strategy::cover::{Cover, Entry, Step};
+use crate::strategy::inseparable::meeting;
+use crate::strategy::late;
 use keepout_checker::certificate::{Certificate, Cone, Evidence, Sum};
 use keepout_checker::error::{Obligation, Rejection, Rule};
 use keepout_checker::number::Rational;
 use keepout_checker::statement::{Claim, Statement};
+use num_traits::Zero;
 
-/// What became of a claim `never`.
+/// What became of a claim.
 pub(crate) enum Finding {
-    /// A certificate that it is true.
+    /// A certificate that the zone is never entered, or that the cone avoids it.
     Never(Certificate),
-    /// A certificate of the first entry.
+    /// A certificate of an entry, the first where that is not too late to tell.
     Enters(Certificate),
+    /// A certificate that each cone meets the zone.
+    Inseparable(Certificate),
     /// Nothing.
     Open(Reason),
 }
@@ -24,14 +29,36 @@ pub(crate) enum Finding {
 /// The first precision tried; each further one is twice as great.
 const FIRST_BITS: u32 = 96;
 
-/// An identity that holds for all time is looked for when no cone was found at the first so many starts.
-const TIMELESS_AFTER: u32 = 6;
+/// Identities, late entries and points of the cone in the zone are looked for when no cone was found at the first so many
+/// starts, and the latter two again each third start.
+const PATIENCE: u32 = 6;
+
+/// A first entry is looked for where the cover up to it takes no more than about so many cells.
+const MAX_CELLS_BEFORE: f64 = 2_000.0;
+
+/// Halvings between the last start without a cone and the first with one.
+const HALVINGS: u32 = 12;
 
 /// A cone's start is doubled at most so often.
 const MAX_DOUBLINGS: u32 = 60;
 
-/// Searches evidence for `never` with a margin, or of an entry.
+/// Searches evidence for `never` with a margin, or of an entry, or that each cone meets the zone.
 pub(crate) fn settle(statement: &Statement, margin: &Rational, options: &Options, effort: &mut u64) -> Finding {
+    at_rising_precision(statement, margin, options, effort, |attempt| attempt.run())
+}
+
+/// Searches the least start of a cone that avoids the zone, or evidence that each cone meets it.
+pub(crate) fn settle_eventually(statement: &Statement, options: &Options, effort: &mut u64) -> Finding {
+    at_rising_precision(statement, &Rational::zero(), options, effort, |attempt| attempt.run_eventually())
+}
+
+fn at_rising_precision(
+    statement: &Statement,
+    margin: &Rational,
+    options: &Options,
+    effort: &mut u64,
+    run: impl Fn(Attempt) -> Finding,
+) -> Finding {
     let problem = match Problem::new(statement, Claim::Never { margin: margin.clone() }, &options.limits) {
         Ok(problem) => problem,
         Err(rejection) => return Finding::Open(Reason::Limit(rejection)),
@@ -39,7 +66,7 @@ pub(crate) fn settle(statement: &Statement, margin: &Rational, options: &Options
     let mut bits = FIRST_BITS;
     let mut last = Reason::Effort { clear_until: statement.zone.from.clone() };
     while bits <= options.max_bits {
-        match Attempt::new(problem.clone(), bits, options, effort).map(Attempt::run) {
+        match Attempt::new(problem.clone(), bits, options, effort).map(&run) {
             Err(rejection @ Rejection::LimitExceeded { .. }) => return Finding::Open(Reason::Limit(rejection)),
             // The roots are not separated at this precision.
             Err(_) => {}
@@ -80,21 +107,24 @@ impl<'a> Attempt<'a> {
         let until = self.problem.statement.zone.until.clone();
         let mut t0 = first_start(&self.enclosure);
         for attempt in 0..MAX_DOUBLINGS {
-            if attempt == TIMELESS_AFTER
-                && let Some(cell) = self.cover.pivots.timeless(
-                    until.as_ref().unwrap_or(&self.cover.from),
-                    &mut self.problem,
-                    &mut self.enclosure,
-                )
-            {
-                let evidence = Evidence::Never { cells: vec![cell], cone: None };
-                return Finding::Never(self.certificate(self.problem.statement.clone(), Vec::new(), evidence));
+            if attempt == PATIENCE {
+                self.enrich();
             }
             if let Some(until) = until.as_ref().filter(|until| **until <= t0) {
                 return self.finish(&until.clone(), None);
             }
             if let Some(cone) = self.cone(&t0) {
                 return self.finish(&t0, Some(cone));
+            }
+            if until.is_none() && attempt >= PATIENCE && attempt % 3 == 0 {
+                if let Some(found) = self.late_entry(&t0) {
+                    return found;
+                }
+                if t0 > self.problem.statement.zone.from
+                    && let Some(found) = self.meeting(&t0, false)
+                {
+                    return found;
+                }
             }
             if t0 > self.problem.statement.zone.from
                 && let Some(end) = self.extend(&t0)
@@ -103,11 +133,98 @@ impl<'a> Attempt<'a> {
             }
             t0 *= Rational::from_integer(2.into());
         }
+        self.no_cone()
+    }
+
+    /// Looks for the least start of a cone, or a point of each cone in the zone.
+    fn run_eventually(mut self) -> Finding {
+        let mut t0 = first_start(&self.enclosure);
+        let mut without = Rational::zero();
+        self.enrich();
+        for attempt in 0..MAX_DOUBLINGS {
+            if let Some(cone) = self.cone(&t0) {
+                return self.earliest(without, cone);
+            }
+            if attempt >= PATIENCE
+                && attempt % 3 == 0
+                && let Some(found) = self.meeting(&t0, true)
+            {
+                return found;
+            }
+            without = t0.clone();
+            t0 *= Rational::from_integer(2.into());
+        }
+        self.no_cone()
+    }
+
+    /// The claim for the earliest cone between a start without one and a start with one.
+    fn earliest(mut self, mut without: Rational, mut cone: Cone) -> Finding {
+        let zone_from = self.problem.statement.zone.from.clone();
+        for _ in 0..HALVINGS {
+            if cone.far.from <= zone_from {
+                break;
+            }
+            let middle = (&without + &cone.far.from) / Rational::from_integer(2.into());
+            match self.cone(&middle) {
+                Some(earlier) => cone = earlier,
+                None => without = middle,
+            }
+        }
+        let claim = Claim::Eventually { from: cone.far.from.clone().max(zone_from) };
+        let statement = Statement { claim, ..self.problem.statement.clone() };
+        let sums = self.sums();
+        Finding::Never(self.certificate(statement, sums, Evidence::Never { cells: Vec::new(), cone: Some(cone) }))
+    }
+
+    fn no_cone(self) -> Finding {
         let unproved = self.plan.flatten().is_none_or(|p| p.unproved);
         Finding::Open(if unproved { Reason::EqualRates } else { Reason::TouchesInTheLimit })
     }
 
+    fn enrich(&mut self) {
+        if self.problem.enrich() {
+            let _ = self.enclosure.renew(&self.problem);
+        }
+    }
+
+    /// An entry at a late time where the phases come into the zone; the cover goes on where that time is near.
+    fn late_entry(&mut self, t0: &Rational) -> Option<Finding> {
+        let from = self.problem.statement.zone.from.clone().max(t0.clone());
+        let plan = self.plan.as_ref()?.as_ref()?;
+        let (early, late) = late::candidate(plan, &from, &self.problem, &self.enclosure, self.effort)?;
+        let reached = approx_value(&self.cover.reached).max(1e-300);
+        if self.cover.cells.len() as f64 * approx_value(&late) / reached <= MAX_CELLS_BEFORE {
+            return None;
+        }
+        let mut local = Cover::new(&early);
+        match local.extend(&late, &mut self.problem, &mut self.enclosure, self.effort) {
+            Step::Entered(Entry { from, cell, .. }) => {
+                let claim = Claim::Enters { from: from.clone(), to: cell.to.clone(), first: false };
+                let statement = Statement { claim, ..self.problem.statement.clone() };
+                let evidence = Evidence::Enters { before: Vec::new(), from, cell };
+                Some(Finding::Enters(self.certificate(statement, Vec::new(), evidence)))
+            }
+            Step::Done | Step::Stuck(..) | Step::Exhausted => None,
+        }
+    }
+
+    /// A point of each cone in the zone; `plain`: also where the zone is true on a whole box.
+    fn meeting(&mut self, t0: &Rational, plain: bool) -> Option<Finding> {
+        let plan = Plan::of_all(&mut self.problem, &mut self.enclosure)?;
+        let found = meeting(&plan, t0, plain, &self.problem, &self.enclosure, self.effort)?;
+        let statement = Statement { claim: Claim::Inseparable, ..self.problem.statement.clone() };
+        Some(Finding::Inseparable(self.certificate(statement, plan.sums, Evidence::Inseparable(found))))
+    }
+
+    fn sums(&self) -> Vec<Sum> {
+        self.plan.iter().flatten().flat_map(|plan| plan.sums.clone()).collect()
+    }
+
     fn cone(&mut self, t0: &Rational) -> Option<Cone> {
+        let functions = self.problem.factors.len();
+        if self.plan.as_ref().and_then(Option::as_ref).is_some_and(|plan| plan.leads.len() < functions) {
+            self.plan = None;
+        }
         let plan = self.plan.get_or_insert_with(|| Plan::new(&mut self.problem, &mut self.enclosure));
         plan.as_ref()?.cone(t0, &self.problem, &self.enclosure, self.effort)
     }
@@ -130,10 +247,7 @@ impl<'a> Attempt<'a> {
         {
             return end;
         }
-        let sums = match (&cone, &self.plan) {
-            (Some(_), Some(Some(plan))) => plan.sums.clone(),
-            _ => Vec::new(),
-        };
+        let sums = if cone.is_some() { self.sums() } else { Vec::new() };
         let cells = std::mem::take(&mut self.cover.cells);
         Finding::Never(self.certificate(self.problem.statement.clone(), sums, Evidence::Never { cells, cone }))
     }
@@ -152,9 +266,9 @@ impl<'a> Attempt<'a> {
             statement,
             bits: self.enclosure.bits,
             families: self.enclosure.families.clone(),
-            traces: self.problem.factors.clone(),
-            auxiliaries: self.cover.pivots.auxiliaries.clone(),
-            products: self.cover.pivots.products.clone(),
+            traces: self.problem.factors[..self.problem.traces()].to_vec(),
+            auxiliaries: self.problem.auxiliaries(),
+            identities: self.problem.identities.clone(),
             sums,
             evidence,
         }

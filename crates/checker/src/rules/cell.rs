@@ -1,33 +1,52 @@
-//! Signs of traces on a stretch of time: what the rules `cover` and `entry` share.
+//! Signs of functions on a stretch of time: what the rules `cover` and `entry` share.
 //!
-//! A cell lists signs that hold on all of it, and may name a pivot w: a function such that the signs of some traces follow
-//! from the sign of w. At each instant of the cell, w is negative, zero or positive: so a formula that is false in these three
-//! cases is false on the whole cell, whatever w is.
-//! - Pivot t, on a cell that starts at 0: at t = 0 all signs are exact. For t > 0, a trace with g^(j)(0) = 0 for j < k has the
+//! A cell lists signs that hold on all of it, and may name a pivot w. At each instant of the cell, w is negative, zero or
+//! positive: so a formula that is false in these three cases is false on the whole cell, whatever w is.
+//! - Pivot t, on a cell that starts at 0: at t = 0 all signs are exact. For t > 0, a function with g^(j)(0) = 0 for j < k has the
 //!   sign of g / t^k.
-//! - An auxiliary function w: g = w^k h has the sign of w^k times that of h.
+//! - Pivot a function: what follows from its sign follows by the certificate's identities.
 
 use crate::certificate::{Cell, Pivot, Sign};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::limits::Budget;
-use crate::model::Setting;
+use crate::model::{Function, Setting};
 use crate::number::{Interval, Rational};
-use crate::trace::{ClosedForm, Stretch};
+use crate::signs::SignSet;
+use crate::trace::Stretch;
 use num_traits::Zero;
 use std::cmp::Ordering;
 
-/// The signs of all traces in one case; `None`: not known.
-pub(crate) type Signs = Vec<Option<Sign>>;
+/// The possible signs of all functions in one case.
+pub(crate) type Signs = Vec<SignSet>;
 
 /// An enclosure; `None`: an argument is out of range.
 pub(crate) type Enclosed = Result<Option<Interval>, Rejection>;
 
-/// The signs of traces on a cell, case by case.
+/// The signs of functions, case by case.
 pub(crate) struct Cases {
-    /// The signs where the pivot is zero; `None`: the cell has no pivot.
+    /// The signs where the pivot is zero; `None`: there is no pivot.
     pub(crate) at_zero: Option<Signs>,
     /// The signs in the other cases, at least one.
     pub(crate) elsewhere: Vec<Signs>,
+}
+
+impl Cases {
+    /// The cases of a pivot that is a function.
+    pub(crate) fn of(signs: Signs, pivot: Option<usize>) -> Self {
+        let Some(pivot) = pivot else { return Self { at_zero: None, elsewhere: vec![signs] } };
+        let [negative, zero, positive] = [Ordering::Less, Ordering::Equal, Ordering::Greater].map(|sign| {
+            let mut case = signs.clone();
+            set(&mut case, pivot, sign);
+            case
+        });
+        Self { at_zero: Some(zero), elsewhere: vec![negative, positive] }
+    }
+
+    /// Requires that the zone is false in each case.
+    pub(crate) fn refute(self, duty: Duty, on: Setting) -> Checked {
+        let mut all = self.at_zero.into_iter().chain(self.elsewhere);
+        duty.ensure(all.all(|signs| on.truth(signs) == Some(false)))
+    }
 }
 
 /// Proves the signs that a cell lists, on [from, cell.to].
@@ -43,76 +62,62 @@ pub(crate) fn prove_signs(
 ) -> Result<Cases, Rejection> {
     let Setting { certificate, model, .. } = on;
     let on_cell = Duty::new(rule, Obligation::SignOnCell, position);
+    let function = |index: &usize| model.functions.get(*index).ok_or_else(|| on_cell.refuted());
     let half = Rational::new(1_i32.into(), 2_i32.into());
     let (centre, half_width) = ((from + &cell.to) * &half, (&cell.to - from) * &half);
     let stretch = Stretch { centre: &centre, half_width: &half_width, order: cell.order, bits: certificate.bits };
-    let mut signs: Signs = vec![None; model.traces.len()];
+    let mut signs = on.no_signs();
     for (index, sign) in &cell.signs {
-        let trace = model.traces.get(*index).ok_or_else(|| on_cell.refuted())?;
         if from.is_zero() && cell.to.is_zero() {
-            on_cell.ensure(trace.sequence.sign_at_zero() == *sign)?;
+            on_cell.ensure(function(index)?.sequence.sign_at_zero() == *sign)?;
         } else {
-            prove_sign(on_cell, &trace.form, *sign, stretch, budget)?;
+            prove_sign(on_cell, function(index)?, *sign, stretch, budget)?;
         }
         set(&mut signs, *index, *sign);
     }
     match &cell.pivot {
-        Pivot::None => Ok(Cases { at_zero: None, elsewhere: vec![signs] }),
+        Pivot::None => Ok(Cases::of(signs, None)),
+        Pivot::Function(pivot) => Ok(Cases::of(signs, Some(*pivot))),
         Pivot::Start(listed) => {
-            Duty::new(rule, Obligation::VanishesAtStart, position).ensure(from.is_zero())?;
-            let exact = model.traces.iter().map(|t| Some(t.sequence.sign_at_zero())).collect();
+            let vanishes = Duty::new(rule, Obligation::VanishesAtStart, position);
+            vanishes.ensure(from.is_zero())?;
+            let exact = model.functions.iter().map(|f| SignSet::only(f.sequence.sign_at_zero())).collect();
             for (index, power, sign) in listed {
-                let trace = model.traces.get(*index).ok_or_else(|| on_cell.refuted())?;
+                let Function { sequence, form, .. } = function(index)?;
                 let power = usize::try_from(*power).unwrap_or(usize::MAX);
-                let vanishes =
-                    trace.sequence.count() >= power && trace.sequence.values().iter().take(power).all(Zero::is_zero);
-                Duty::new(rule, Obligation::VanishesAtStart, position).ensure(vanishes)?;
+                vanishes
+                    .ensure(sequence.count() >= power && sequence.values().iter().take(power).all(Zero::is_zero))?;
                 let zero = Rational::zero();
                 let stretch = Stretch { centre: &zero, half_width: &cell.to, ..stretch };
-                let quotient = trace.form.quotient(power, stretch, budget)?.ok_or_else(|| on_cell.inconclusive())?;
+                let quotient = form.quotient(power, stretch, budget)?.ok_or_else(|| on_cell.inconclusive())?;
                 on_cell.sign(&quotient, *sign)?;
                 set(&mut signs, *index, *sign);
             }
             Ok(Cases { at_zero: Some(exact), elsewhere: vec![signs] })
-        }
-        Pivot::Auxiliary(pivot, listed) => {
-            let mut cases = [signs.clone(), signs.clone(), signs];
-            for (index, sign) in listed {
-                let product = certificate.products.get(*index).ok_or_else(|| on_cell.refuted())?;
-                on_cell.ensure(product.pivot == *pivot)?;
-                let cofactor = model.auxiliaries.get(product.cofactor).ok_or_else(|| on_cell.refuted())?;
-                prove_sign(on_cell, cofactor, *sign, stretch, budget)?;
-                let odd = product.power % 2 == 1;
-                let negative = if odd { sign.reverse() } else { *sign };
-                for (case, sign) in cases.iter_mut().zip([negative, Ordering::Equal, *sign]) {
-                    set(case, product.trace, sign);
-                }
-            }
-            let [negative, zero, positive] = cases;
-            Ok(Cases { at_zero: Some(zero), elsewhere: vec![negative, positive] })
         }
     }
 }
 
 pub(crate) fn set(signs: &mut Signs, index: usize, sign: Sign) {
     if let Some(slot) = signs.get_mut(index) {
-        *slot = Some(sign);
+        *slot = SignSet::only(sign);
     }
 }
 
 /// Proves that a function has this sign on a stretch; `Equal` only for the zero function.
-fn prove_sign(duty: Duty, form: &ClosedForm, sign: Sign, on: Stretch, budget: &mut Budget) -> Checked {
-    if form.terms.is_empty() {
+fn prove_sign(duty: Duty, function: &Function, sign: Sign, on: Stretch, budget: &mut Budget) -> Checked {
+    if function.form.terms.is_empty() {
         return duty.ensure(sign == Ordering::Equal);
     }
-    let value = form.enclose(on, budget)?.ok_or_else(|| duty.inconclusive())?;
+    let value = function.form.enclose(on, budget)?.ok_or_else(|| duty.inconclusive())?;
     duty.sign(&value, sign)
 }
 
-/// The enclosure of an auxiliary function at an instant.
-pub(crate) fn value_at(form: &ClosedForm, at: &Rational, on: Setting, budget: &mut Budget) -> Enclosed {
+/// The enclosure of a function at an instant.
+pub(crate) fn value_at(function: &Function, at: &Rational, on: Setting, budget: &mut Budget) -> Enclosed {
     // Enough terms for a stretch of length 0: one more than the greatest power of t.
-    let longest = form.terms.iter().map(|t| t.coefficients.len()).max().unwrap_or(1);
+    let longest = function.form.terms.iter().map(|t| t.coefficients.len()).max().unwrap_or(1);
     let order = u32::try_from(longest).unwrap_or(u32::MAX);
-    form.enclose(Stretch { centre: at, half_width: &Rational::zero(), order, bits: on.certificate.bits }, budget)
+    let stretch = Stretch { centre: at, half_width: &Rational::zero(), order, bits: on.certificate.bits };
+    function.form.enclose(stretch, budget)
 }

@@ -19,19 +19,19 @@ pub(crate) fn check(from: &Rational, cell: &Cell, on: Setting, budget: &mut Budg
     Duty::new(Rule::Entry, Obligation::InstantIsInWindow, 0).ensure(*from <= cell.to)?;
     let cases = prove_signs((Rule::Entry, 0), from, cell, on, budget)?;
     let proved = Duty::new(Rule::Entry, Obligation::ZoneIsProvedAtInstant, 0);
-    let inside = |signs: &Signs| on.model.formula.truth(signs) == Some(true);
-    match (&cell.pivot, &cases.at_zero) {
+    let inside = |signs: Signs| on.truth(signs) == Some(true);
+    match (&cell.pivot, cases.at_zero) {
         // At t = 0, or at every instant after it up to the cell's end (if there is one).
         (Pivot::Start(_), Some(at_zero)) => {
-            let after = *from < cell.to && cases.elsewhere.iter().all(inside);
+            let after = *from < cell.to && cases.elsewhere.into_iter().all(inside);
             proved.ensure(inside(at_zero) || after)
         }
-        (Pivot::Auxiliary(pivot, _), Some(at_zero)) => {
+        (Pivot::Function(pivot), Some(at_zero)) => {
             let changes = Duty::new(Rule::Entry, Obligation::PivotChangesSign, *pivot);
-            let form = on.model.auxiliaries.get(*pivot).ok_or_else(|| changes.refuted())?;
+            let function = on.model.functions.get(*pivot).ok_or_else(|| changes.refuted())?;
             let mut ends = Vec::new();
             for at in [from, &cell.to] {
-                let value = value_at(form, at, on, budget)?;
+                let value = value_at(function, at, on, budget)?;
                 let sign = value.and_then(|v| v.certain_sign()).ok_or_else(|| changes.inconclusive())?;
                 ends.push(sign);
             }
@@ -39,6 +39,8 @@ pub(crate) fn check(from: &Rational, cell: &Cell, on: Setting, budget: &mut Budg
             changes.ensure(opposite)?;
             proved.ensure(inside(at_zero))
         }
-        (Pivot::None | Pivot::Start(_) | Pivot::Auxiliary(..), _) => proved.ensure(cases.elsewhere.iter().all(inside)),
+        (Pivot::None | Pivot::Start(_) | Pivot::Function(_), _) => {
+            proved.ensure(cases.elsewhere.into_iter().all(inside))
+        }
     }
 }

@@ -5,3 +5,4 @@ pub(crate) mod cone;
 pub(crate) mod cover;
 pub(crate) mod entry;
 pub(crate) mod equality;
+pub(crate) mod inseparable;

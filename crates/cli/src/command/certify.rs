@@ -4,9 +4,9 @@ use super::progress::Progress;
 use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, loaded, print};
 use crate::diagnostic::nearest;
 use crate::model::{Model, Need};
-use crate::number::{for_people, to_decimal};
+use crate::number::{decimal, for_people, to_decimal};
 use keepout_checker::statement::{Claim, Formula, Rational, Statement, Variable};
-use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify};
+use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify, certify_eventually};
 use num_traits::{One, Signed, Zero};
 use rayon::prelude::*;
 use serde_json::{Map, Value, json};
@@ -28,6 +28,10 @@ pub struct Arguments {
     /// Print one JSON object instead of text
     #[arg(long)]
     pub json: bool,
+    /// Ask whether each zone is left for good: from which time on no phase of the oscillations leads into it, whatever
+    /// happens before
+    #[arg(long)]
+    pub eventually: bool,
     /// How much work to spend on each zone before giving up; a whole number, the same everywhere
     #[arg(long, value_name = "N", default_value_t = Options::default().effort)]
     pub effort: u64,
@@ -49,7 +53,7 @@ pub fn run(arguments: &Arguments) -> u8 {
         .into_par_iter()
         .map(|zone| {
             let statement = model.statement(zone);
-            let outcome = settle(&statement, &options);
+            let outcome = settle(&statement, &options, arguments.eventually);
             progress.one_done();
             Settled { statement, outcome }
         })
@@ -62,7 +66,7 @@ pub fn run(arguments: &Arguments) -> u8 {
         return WRONG;
     }
     let is = |word: &str| settled.iter().any(|s| s.verdict() == word);
-    let status = match (is("enters"), is("unsettled")) {
+    let status = match (is("enters"), is("unsettled") || is("inseparable")) {
         (true, _) => ENTERED,
         (false, true) => UNSETTLED,
         (false, false) => CLEAR,
@@ -75,8 +79,9 @@ pub fn run(arguments: &Arguments) -> u8 {
 }
 
 /// The outcome; a defect of the program leaves the zone unsettled and the others alone.
-fn settle(statement: &Statement, options: &Options) -> Result<Outcome, String> {
-    let attempt = std::panic::catch_unwind(AssertUnwindSafe(|| certify(statement, options)));
+fn settle(statement: &Statement, options: &Options, eventually: bool) -> Result<Outcome, String> {
+    let search = if eventually { certify_eventually } else { certify };
+    let attempt = std::panic::catch_unwind(AssertUnwindSafe(|| search(statement, options)));
     match attempt {
         Ok(outcome) => outcome.map_err(|e| e.to_string()),
         Err(_) => Err("a defect of this program stopped the search; please report the model".into()),
@@ -114,13 +119,20 @@ impl Settled {
         match &self.outcome {
             Ok(Outcome::Clear { .. }) => "clear",
             Ok(Outcome::Enters { .. }) => "enters",
+            Ok(Outcome::Eventually { .. }) => "left",
+            Ok(Outcome::Inseparable { .. }) => "inseparable",
             Ok(Outcome::Unsettled { .. }) | Err(_) => "unsettled",
         }
     }
 
     fn proof(&self) -> Option<&Proof> {
         match &self.outcome {
-            Ok(Outcome::Clear { proof, .. } | Outcome::Enters { proof }) => Some(proof),
+            Ok(
+                Outcome::Clear { proof, .. }
+                | Outcome::Enters { proof }
+                | Outcome::Eventually { proof }
+                | Outcome::Inseparable { proof },
+            ) => Some(proof),
             Ok(Outcome::Unsettled { .. }) | Err(_) => None,
         }
     }
@@ -148,7 +160,7 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
     let width = settled.iter().map(|s| s.statement.zone.name.len()).max().unwrap_or(0);
     for zone in settled {
         let name = &zone.statement.zone.name;
-        let _ = writeln!(text, "  {name:width$}  {:9}  {}", zone.verdict(), zone.in_words());
+        let _ = writeln!(text, "  {name:width$}  {:11}  {}", zone.verdict(), zone.in_words());
     }
     if let Some(folder) = out {
         let _ = writeln!(text, "evidence in {}; to re-check one zone:", folder.display());
@@ -182,11 +194,17 @@ impl Settled {
                 format!("{window}{}", margin.as_ref().map_or(String::new(), |m| format!("; {}", self.margin_words(m))))
             }
             Ok(Outcome::Enters { proof }) => match &proof.statement().claim {
-                Claim::Enters { from, to, first } => {
-                    format!("{}{}", if *first { "first " } else { "" }, bracket(from, to))
+                Claim::Enters { from, to, first: true } => format!("first {}", bracket(from, to)),
+                Claim::Enters { from, to, first: false } => {
+                    format!("{}; there may be an earlier entry", bracket(from, to))
                 }
-                Claim::Never { .. } => String::new(),
+                Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable => String::new(),
             },
+            Ok(Outcome::Eventually { proof }) => match &proof.statement().claim {
+                Claim::Eventually { from } => format!("for good from t = {} on, at the latest", rounded_up(from)),
+                Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable => String::new(),
+            },
+            Ok(Outcome::Inseparable { .. }) => INSEPARABLE.into(),
             Ok(Outcome::Unsettled { reason, .. }) => format!("{}; {}", reason_words(reason), help_words(reason)),
         }
     }
@@ -208,6 +226,17 @@ impl Settled {
             Some(_) | None => format!("margin 0, {place}"),
         }
     }
+}
+
+/// What it means, and what it does not.
+const INSEPARABLE: &str = "no entry is known, but phases that the oscillations come arbitrarily close to lead into the zone at \
+    every late time: no invariant of the class can keep the trajectory clear of it. This does not say that the zone is \
+    entered, nor that it is not; a zone moved away by any margin can be settled";
+
+/// A decimal of seven digits, not below the number, which is not negative.
+fn rounded_up(x: &Rational) -> String {
+    let cut = to_decimal(x, 7);
+    if decimal(&cut).is_ok_and(|cut| cut == *x) { cut } else { to_decimal(&(x * Rational::new(10_000_002.into(), 10_000_000.into())), 7) }
 }
 
 fn bracket(from: &Rational, to: &Rational) -> String {
@@ -254,6 +283,7 @@ fn reason_words(reason: &Reason) -> String {
         Reason::Effort { clear_until } => {
             format!("the work allowed was used up; the zone is not entered before t = {}", to_decimal(clear_until, 6))
         }
+        Reason::WindowEnds => "a window with `until` has no large times".into(),
         Reason::Limit(rejection) => rejection.to_string(),
     }
 }
@@ -263,6 +293,7 @@ fn help_words(reason: &Reason) -> &'static str {
         Reason::Touches { .. } | Reason::TouchesInTheLimit => "what would help: a slightly wider or narrower zone",
         Reason::EqualRates => "what would help: a window with `until`",
         Reason::Effort { .. } => "what would help: a greater --effort, or a window with `until`",
+        Reason::WindowEnds => "what would help: a zone without `until`",
         Reason::Limit(_) => "what would help: a smaller model, or a zone of a lower degree",
     }
 }
@@ -312,6 +343,13 @@ impl Settled {
                     fields.insert("time".into(), time);
                 }
             }
+            Ok(Outcome::Eventually { proof }) => {
+                if let Claim::Eventually { from } = &proof.statement().claim {
+                    let time = json!({ "from": from.to_string(), "from_decimal": decimal_value(from) });
+                    fields.insert("time".into(), time);
+                }
+            }
+            Ok(Outcome::Inseparable { .. }) => drop(fields.insert("meaning".into(), json!(INSEPARABLE))),
             Ok(Outcome::Unsettled { reason, tried }) => {
                 fields.insert("reason".into(), json!(reason_words(reason)));
                 fields.insert("tried".into(), json!(tried));

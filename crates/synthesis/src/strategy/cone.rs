@@ -2,10 +2,10 @@
 
 use crate::enclosure::{Enclosure, approx_value};
 use crate::problem::Problem;
-use crate::strategy::entry::needed;
+use crate::strategy::entry::{needed, needed_in_cases};
 use crate::strategy::equality::{OpenSum, value};
 use crate::strategy::pivot::simplest_between;
-use keepout_checker::certificate::{Angle, Cone, Lead, Node, RealPart, RootRef, Sum};
+use keepout_checker::certificate::{Angle, Cone, FarField, Lead, Node, RealPart, RootRef, Sign, Sum};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
 use keepout_core::ToRational;
@@ -14,7 +14,7 @@ use num_integer::Integer;
 use num_traits::{ToPrimitive, Zero};
 use std::collections::BTreeMap;
 
-/// The leading roots of all traces with their equalities and angles: all of a cone but its start and its leaves.
+/// The leading roots of functions with their equalities and angles: all of a far field but its start.
 #[derive(Clone, Debug)]
 pub(crate) struct Plan {
     pub(crate) base: Vec<usize>,
@@ -30,28 +30,43 @@ const MAX_RATIO: i64 = 48;
 const MAX_MULTIPLE: i64 = 6;
 
 impl Plan {
-    /// Plans the cones of a problem; families may be added to it, and the enclosure is renewed with them.
+    /// Plans the cones of a problem, for all functions but those of which only even powers matter; families may be added to the
+    /// problem, and the enclosure is renewed with them.
     pub(crate) fn new(problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
+        let is_odd = |f: &usize| {
+            problem.identities.iter().flat_map(|i| i.summands.iter().flatten()).any(|(g, k)| g == f && k % 2 == 1)
+        };
+        let functions = (0..problem.factors.len()).filter(|f| *f < problem.traces() || is_odd(f)).collect::<Vec<_>>();
+        Self::for_functions(&functions, problem, enclosure)
+    }
+
+    /// Plans the far field of all functions.
+    pub(crate) fn of_all(problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
+        let all: Vec<usize> = (0..problem.factors.len()).collect();
+        Self::for_functions(&all, problem, enclosure)
+    }
+
+    fn for_functions(functions: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
         let mut plan =
             Self { base: Vec::new(), angles: Vec::new(), leads: Vec::new(), sums: Vec::new(), unproved: false };
-        for index in 0..problem.sequences.len() {
-            let lead = plan.lead(index, problem, enclosure)?;
+        for index in 0..problem.factors.len() {
+            let lead = if functions.contains(&index) { plan.lead(index, problem, enclosure)? } else { None };
             plan.leads.push(lead);
         }
         plan.find_angles(problem, enclosure)?;
         Some(plan)
     }
 
-    /// The leading roots of one trace.
+    /// The leading roots of one function.
     fn lead(&mut self, index: usize, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Option<Lead>> {
         let terms = &enclosure.forms[index].terms;
         let Some(top) = terms.iter().map(|t| t.exponent.re.lo().clone()).max() else { return Some(None) };
         let roots: Vec<usize> = terms.iter().filter(|t| *t.exponent.re.hi() >= top).map(|t| t.root).collect();
         if roots.len() == 1 {
-            return Some(Some(Lead { roots, real_part: RealPart::Single }));
+            return Some(Some(Lead { function: index, roots, real_part: RealPart::Single }));
         }
         if let Some(line) = common_line(&roots, problem, enclosure) {
-            return Some(Some(Lead { roots, real_part: RealPart::Line(line) }));
+            return Some(Some(Lead { function: index, roots, real_part: RealPart::Line(line) }));
         }
         let mut doubled = Vec::new();
         for root in &roots {
@@ -63,7 +78,7 @@ impl Plan {
             doubled.push(sum);
         }
         if doubled.windows(2).all(|w| self.sums[w[0]].root.index == self.sums[w[1]].root.index) {
-            return Some(Some(Lead { roots, real_part: RealPart::Doubled(doubled) }));
+            return Some(Some(Lead { function: index, roots, real_part: RealPart::Doubled(doubled) }));
         }
         self.unproved = true;
         Some(None)
@@ -175,14 +190,18 @@ impl Plan {
             }
             *effort -= 1;
             let signs = signs_on(&angles, &forms, problem, enclosure);
-            match problem.formula.truth(&signs) {
-                Some(false) => nodes.push(Node::Leaf(needed(problem, signs, false))),
+            match problem.truth(&signs) {
+                Some(false) => nodes.push(Node::Leaf(needed(problem, signs, false), None)),
                 Some(true) => return None,
                 None => {
                     // Halving brings nothing where the centre alone is not decided.
                     let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
-                    if problem.formula.truth(&signs_on(&centre, &forms, problem, enclosure)) != Some(false) {
-                        return None;
+                    if problem.truth(&signs_on(&centre, &forms, problem, enclosure)) != Some(false) {
+                        let pivot = (0..signs.len())
+                            .filter(|f| forms[*f].is_some() && signs[*f].is_none())
+                            .find(|f| problem.truths(&signs, *f) == [Some(false); 3])?;
+                        nodes.push(Node::Leaf(needed_in_cases(problem, signs, pivot), Some(pivot)));
+                        continue;
                     }
                     let axis = widest(&angles)?;
                     let (lower, upper) = halves(&angles, axis)?;
@@ -192,12 +211,17 @@ impl Plan {
                 }
             }
         }
-        let leads =
-            self.leads.iter().zip(&forms).map(|(lead, form)| form.is_some().then(|| lead.clone()).flatten()).collect();
-        Some(Cone { from: t0.clone(), base: self.base.clone(), angles: self.angles.clone(), leads, nodes })
+        Some(Cone { far: self.far_field(t0, &forms), nodes })
     }
 
-    /// The leading part of each trace from t0 on, where it can be enclosed.
+    /// The far field from t0 on of the functions that have a leading part there.
+    pub(crate) fn far_field(&self, t0: &Rational, forms: &[Option<LeadForm>]) -> FarField {
+        let leads =
+            self.leads.iter().zip(forms).filter(|(_, form)| form.is_some()).filter_map(|(lead, _)| lead.clone());
+        FarField { from: t0.clone(), base: self.base.clone(), angles: self.angles.clone(), leads: leads.collect() }
+    }
+
+    /// The leading part of each function from t0 on, where it can be enclosed.
     pub(crate) fn forms(&self, t0: &Rational, enclosure: &Enclosure) -> Vec<Option<LeadForm>> {
         let form = |(index, lead): (usize, &Option<Lead>)| {
             lead.as_ref().and_then(|lead| {
@@ -216,19 +240,24 @@ impl Plan {
     }
 }
 
-/// The signs of all traces on a box of the torus.
+/// The signs on a box of the torus: of traces, and where these do not decide, of the other functions too.
 pub(crate) fn signs_on(
     angles: &AngleBox,
     forms: &[Option<LeadForm>],
     problem: &Problem,
     enclosure: &Enclosure,
-) -> Vec<Option<std::cmp::Ordering>> {
-    (0..problem.sequences.len())
-        .map(|i| match &forms[i] {
+) -> Vec<Option<Sign>> {
+    let mut signs = vec![None; forms.len()];
+    for (i, form) in forms.iter().enumerate() {
+        if i >= problem.traces() && problem.truth(&signs).is_some() {
+            break;
+        }
+        signs[i] = match form {
             None => enclosure.forms[i].terms.is_empty().then_some(std::cmp::Ordering::Equal),
-            Some(form) => form.enclose(angles)?.certain_sign(),
-        })
-        .collect()
+            Some(form) => form.enclose(angles).and_then(|value| value.certain_sign()),
+        };
+    }
+    signs
 }
 
 /// The axis along which a box is longest.
@@ -301,7 +330,7 @@ fn relations(root: usize, known: &[usize], enclosure: &Enclosure) -> Vec<Vec<(i6
     found
 }
 
-fn approx_frequency(root: usize, enclosure: &Enclosure) -> f64 {
+pub(crate) fn approx_frequency(root: usize, enclosure: &Enclosure) -> f64 {
     approx_dyadic(frequency(root, enclosure).lo())
 }
 

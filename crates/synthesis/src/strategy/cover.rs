@@ -3,7 +3,7 @@
 use crate::enclosure::{Enclosure, Judgement, approx_value};
 use crate::problem::Problem;
 use crate::strategy::entry::{instant, needed};
-use crate::strategy::pivot::{self, Pivots};
+use crate::strategy::pivot;
 use keepout_checker::certificate::{Cell, Pivot};
 use keepout_checker::number::Rational;
 use num_traits::Zero;
@@ -37,7 +37,6 @@ pub(crate) struct Cover {
     pub(crate) from: Rational,
     pub(crate) reached: Rational,
     pub(crate) cells: Vec<Cell>,
-    pub(crate) pivots: Pivots,
     hint: Vec<usize>,
 }
 
@@ -46,13 +45,7 @@ const BRACKET: i32 = -34;
 
 impl Cover {
     pub(crate) fn new(from: &Rational) -> Self {
-        Self {
-            from: from.clone(),
-            reached: from.clone(),
-            cells: Vec::new(),
-            pivots: Pivots::default(),
-            hint: Vec::new(),
-        }
+        Self { from: from.clone(), reached: from.clone(), cells: Vec::new(), hint: Vec::new() }
     }
 
     /// Extends the cover to an instant.
@@ -88,6 +81,7 @@ impl Cover {
                         open.push((a, middle));
                     }
                     Undecided::Covered => {}
+                    Undecided::Again => open.push((a, b)),
                     Undecided::Step(step) => return *step,
                 },
             }
@@ -147,17 +141,17 @@ impl Cover {
         if let Some(cell) = instant(b, problem, enclosure) {
             return Undecided::Step(Box::new(self.entered(a, b, Some(cell))));
         }
-        if let Some(cell) = self.pivots.crossing(a, b, problem, enclosure) {
-            return Undecided::Step(Box::new(self.entered(a, a, Some(cell))));
+        if problem.enrich() && enclosure.renew(problem).is_some() {
+            return Undecided::Again;
         }
-        match self.pivots.touch(a, b, problem, enclosure) {
-            pivot::Touch::None => {}
-            pivot::Touch::Clear(cell) => {
+        match pivot::touch(a, b, problem, enclosure) {
+            None | Some(pivot::Touch::None) => {}
+            Some(pivot::Touch::Clear(cell)) => {
                 self.reached = cell.to.clone();
                 self.cells.push(cell);
                 return Undecided::Covered;
             }
-            pivot::Touch::Entered(cell) => return Undecided::Step(Box::new(self.entered(a, a, Some(cell)))),
+            Some(pivot::Touch::Entered(cell)) => return Undecided::Step(Box::new(self.entered(a, a, Some(cell)))),
         }
         if width > 2.0_f64.powf(-0.45 * f64::from(enclosure.bits)) {
             return Undecided::Split;
@@ -169,6 +163,7 @@ impl Cover {
 enum Undecided {
     Split,
     Covered,
+    Again,
     Step(Box<Step>),
 }
 

@@ -17,10 +17,19 @@ pub(crate) fn instant(at: &Rational, problem: &Problem, enclosure: &mut Enclosur
 }
 
 /// The signs without those that the zone's truth does not need.
-pub(crate) fn needed(problem: &Problem, mut signs: Vec<Option<Sign>>, truth: bool) -> Vec<(usize, Sign)> {
+pub(crate) fn needed(problem: &Problem, signs: Vec<Option<Sign>>, truth: bool) -> Vec<(usize, Sign)> {
+    reduced(signs, |signs| problem.truth(signs) == Some(truth))
+}
+
+/// The signs without those that the zone's falsehood in each case of a pivot does not need.
+pub(crate) fn needed_in_cases(problem: &Problem, signs: Vec<Option<Sign>>, pivot: usize) -> Vec<(usize, Sign)> {
+    reduced(signs, |signs| problem.truths(signs, pivot) == [Some(false); 3])
+}
+
+fn reduced(mut signs: Vec<Option<Sign>>, is_enough: impl Fn(&[Option<Sign>]) -> bool) -> Vec<(usize, Sign)> {
     for i in 0..signs.len() {
         let sign = signs[i].take();
-        if problem.formula.truth(&signs) != Some(truth) {
+        if sign.is_some() && !is_enough(&signs) {
             signs[i] = sign;
         }
     }

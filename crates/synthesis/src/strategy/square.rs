@@ -5,20 +5,17 @@
 //! recurrence is looked for, and what is found is proved by the checker's product rule. Half exponents come out by themselves:
 //! 1 - sin t = (cos(t/2) - sin(t/2))^2.
 
-use crate::problem::Problem;
 use crate::strategy::taylor::{derivatives, taylor};
-use keepout_checker::certificate::Auxiliary;
 use keepout_checker::number::Rational;
 use keepout_checker::sequence::Sequence;
-use keepout_core::minimal_annihilator;
+use keepout_core::{ExponentialPolynomial, minimal_annihilator};
 use num_bigint::BigInt;
 use num_traits::{One, Zero};
 
-/// The constant kappa and the function h for one trace. Families may be added to the problem.
-pub(crate) fn square_root(index: usize, problem: &mut Problem) -> Option<(Rational, Auxiliary)> {
-    let degree = problem.degree(&problem.factors[index]);
-    let count = problem.sequences[index].count().min(degree + 7);
-    let taylor = taylor(&problem.sequences[index].derivatives(count));
+/// The constant kappa and the function h of a function kappa h^2.
+pub(crate) fn square_root(function: &ExponentialPolynomial) -> Option<(Rational, ExponentialPolynomial)> {
+    // An odd number of terms: a sequence without a recurrence then shows at the first prime.
+    let taylor = taylor(&function.derivatives((function.order() + 7) | 1));
     let first = taylor.iter().position(|c| !c.is_zero())?;
     if first % 2 == 1 {
         return None;
@@ -27,15 +24,12 @@ pub(crate) fn square_root(index: usize, problem: &mut Problem) -> Option<(Ration
     let root = series_root(&taylor[first..], &kappa);
     let mut h = vec![Rational::zero(); first / 2];
     h.extend(root);
-    // An odd number of terms: a sequence without a recurrence then shows at the first prime.
     h.truncate(if h.len() % 2 == 0 { h.len() - 1 } else { h.len() });
-    let derivatives = derivatives(&h);
-    // Half exponents, in the time in which those of the trace are algebraic integers: twice its rate.
-    let rate = Rational::from_integer(problem.sequences[index].rate() * BigInt::from(2));
-    let m = minimal_annihilator(&scaled(&derivatives, &rate))?;
-    let factors = problem.factor_list(&m.dilate_up(rate.numer()).primitive_part())?;
-    let size = problem.degree(&factors);
-    Some((kappa, Auxiliary { factors, derivatives: derivatives.get(..size)?.to_vec() }))
+    // Half exponents.
+    let rate = function.annihilator().leading() * BigInt::from(2);
+    let root = from_derivatives(&derivatives(&h), &rate)?;
+    let square = &(&root * &root) * &ExponentialPolynomial::constant(kappa.clone());
+    (square == *function).then_some((kappa, root))
 }
 
 /// The square root with constant term 1 of a power series divided by its constant term.
@@ -49,9 +43,12 @@ fn series_root(series: &[Rational], first: &Rational) -> Vec<Rational> {
     root
 }
 
-/// The integers y_k rate^k times a common denominator.
-fn scaled(derivatives: &[Rational], rate: &Rational) -> Vec<BigInt> {
-    let powers = std::iter::successors(Some(Rational::one()), |power| Some(power * rate));
-    let scaled: Vec<Rational> = derivatives.iter().zip(powers).map(|(y, power)| y * power).collect();
-    Sequence::from_rationals(&scaled).values().to_vec()
+/// The function whose derivatives begin with these, if few enough of them determine the others; its exponents times `rate` are
+/// algebraic integers.
+fn from_derivatives(list: &[Rational], rate: &BigInt) -> Option<ExponentialPolynomial> {
+    let factor = Rational::from_integer(rate.clone());
+    let powers = std::iter::successors(Some(Rational::one()), |power| Some(power * &factor));
+    let scaled: Vec<Rational> = list.iter().zip(powers).map(|(y, power)| y * power).collect();
+    let m = minimal_annihilator(Sequence::from_rationals(&scaled).values())?.dilate_up(rate).primitive_part();
+    ExponentialPolynomial::new(&m, list.get(..m.degree())?).ok()
 }
