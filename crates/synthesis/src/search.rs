@@ -191,7 +191,7 @@ impl<'a> Attempt<'a> {
     fn late_entry(&mut self, t0: &Rational) -> Option<Finding> {
         let from = self.problem.statement.zone.from.clone().max(t0.clone());
         let plan = self.plan.as_ref()?.as_ref()?;
-        let (early, late) = late::candidate(plan, &from, &self.problem, &self.enclosure, self.effort)?;
+        let (early, late) = late::candidate(plan, &from, &self.problem, &self.enclosure)?;
         let reached = approx_value(&self.cover.reached).max(1e-300);
         if self.cover.cells.len() as f64 * approx_value(&late) / reached <= MAX_CELLS_BEFORE {
             return None;

@@ -236,7 +236,11 @@ const INSEPARABLE: &str = "no entry is known, but phases that the oscillations c
 /// A decimal of seven digits, not below the number, which is not negative.
 fn rounded_up(x: &Rational) -> String {
     let cut = to_decimal(x, 7);
-    if decimal(&cut).is_ok_and(|cut| cut == *x) { cut } else { to_decimal(&(x * Rational::new(10_000_002.into(), 10_000_000.into())), 7) }
+    if decimal(&cut).is_ok_and(|cut| cut == *x) {
+        cut
+    } else {
+        to_decimal(&(x * Rational::new(10_000_002.into(), 10_000_000.into())), 7)
+    }
 }
 
 fn bracket(from: &Rational, to: &Rational) -> String {

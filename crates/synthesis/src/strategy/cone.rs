@@ -5,6 +5,7 @@ use crate::problem::Problem;
 use crate::strategy::entry::{needed, needed_in_cases};
 use crate::strategy::equality::{OpenSum, value};
 use crate::strategy::pivot::simplest_between;
+use crate::strategy::proposal::{Proposals, approx_box};
 use keepout_checker::certificate::{Angle, Cone, FarField, Lead, Node, RealPart, RootRef, Sign, Sum};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
@@ -182,35 +183,11 @@ impl Plan {
         effort: &mut u64,
     ) -> Option<Cone> {
         let forms = self.forms(t0, enclosure);
-        let mut nodes = Vec::new();
-        let mut open = vec![(whole_torus(self.base.len()), 0_u64)];
-        while let Some((angles, depth)) = open.pop() {
-            if *effort == 0 || depth >= enclosure.limits().depth {
-                return None;
-            }
-            *effort -= 1;
-            let signs = signs_on(&angles, &forms, problem, enclosure);
-            match problem.truth(&signs) {
-                Some(false) => nodes.push(Node::Leaf(needed(problem, signs, false), None)),
-                Some(true) => return None,
-                None => {
-                    // Halving brings nothing where the centre alone is not decided.
-                    let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
-                    if problem.truth(&signs_on(&centre, &forms, problem, enclosure)) != Some(false) {
-                        let pivot = (0..signs.len())
-                            .filter(|f| forms[*f].is_some() && signs[*f].is_none())
-                            .find(|f| problem.truths(&signs, *f) == [Some(false); 3])?;
-                        nodes.push(Node::Leaf(needed_in_cases(problem, signs, pivot), Some(pivot)));
-                        continue;
-                    }
-                    let axis = widest(&angles)?;
-                    let (lower, upper) = halves(&angles, axis)?;
-                    nodes.push(Node::Split(axis));
-                    open.push((upper, depth + 1));
-                    open.push((lower, depth + 1));
-                }
-            }
-        }
+        let proposals = Proposals::new(self, &forms, enclosure);
+        let torus = Torus { dimension: self.base.len(), forms: &forms, proposals, problem, enclosure };
+        // First whether it will do, by floating point where that decides; then for certain.
+        torus.bisected(false, effort)?;
+        let nodes = torus.bisected(true, effort)?;
         Some(Cone { far: self.far_field(t0, &forms), nodes })
     }
 
@@ -234,9 +211,67 @@ impl Plan {
         self.leads.iter().enumerate().map(form).collect()
     }
 
-    fn turns(&self, root: usize) -> Vec<i64> {
+    pub(crate) fn turns(&self, root: usize) -> Vec<i64> {
         let known = self.angles.iter().find(|a| a.root == root);
         known.map_or_else(|| vec![0; self.base.len()], |a| a.turns.clone())
+    }
+}
+
+/// A torus that is to be cut into boxes on which the zone is false.
+struct Torus<'a> {
+    dimension: usize,
+    forms: &'a [Option<LeadForm>],
+    proposals: Proposals,
+    problem: &'a Problem,
+    enclosure: &'a Enclosure,
+}
+
+impl Torus<'_> {
+    /// The bisection; `None` where a box is found that will not do.
+    fn bisected(&self, for_certain: bool, effort: &mut u64) -> Option<Vec<Node>> {
+        let mut nodes = Vec::new();
+        let mut open = vec![(whole_torus(self.dimension), 0_u64)];
+        while let Some((angles, depth)) = open.pop() {
+            if *effort == 0 || depth >= self.enclosure.limits().depth {
+                return None;
+            }
+            *effort -= u64::from(for_certain);
+            let node = self.node(&angles, for_certain)?;
+            if let Node::Split(axis) = node {
+                let (lower, upper) = halves(&angles, axis)?;
+                open.push((upper, depth + 1));
+                open.push((lower, depth + 1));
+            }
+            nodes.push(node);
+        }
+        Some(nodes)
+    }
+
+    fn node(&self, angles: &AngleBox, for_certain: bool) -> Option<Node> {
+        let problem = self.problem;
+        let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
+        let probable = self.proposals.truth(&approx_box(angles), problem);
+        if probable == Some(false) && !for_certain {
+            return Some(Node::Leaf(Vec::new(), None));
+        }
+        if probable.is_none() && self.proposals.truth(&approx_box(&centre), problem) == Some(false) {
+            return widest(angles).map(Node::Split);
+        }
+        let signs = signs_on(angles, self.forms, problem, self.enclosure);
+        match problem.truth(&signs) {
+            Some(false) => Some(Node::Leaf(needed(problem, signs, false), None)),
+            Some(true) => None,
+            // Halving brings nothing where the centre alone is not decided.
+            None if problem.truth(&signs_on(&centre, self.forms, problem, self.enclosure)) == Some(false) => {
+                widest(angles).map(Node::Split)
+            }
+            None => {
+                let pivot = (0..signs.len())
+                    .filter(|f| self.forms[*f].is_some() && signs[*f].is_none())
+                    .find(|f| problem.truths(&signs, *f) == [Some(false); 3])?;
+                Some(Node::Leaf(needed_in_cases(problem, signs, pivot), Some(pivot)))
+            }
+        }
     }
 }
 

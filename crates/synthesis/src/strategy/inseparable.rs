@@ -4,6 +4,7 @@ use crate::enclosure::Enclosure;
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, widest};
 use crate::strategy::late;
+use crate::strategy::proposal::{Proposals, approx_box};
 use keepout_checker::certificate::{Meeting, Sign};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::Rational;
@@ -27,6 +28,7 @@ pub(crate) fn meeting(
     effort: &mut u64,
 ) -> Option<Meeting> {
     let forms = plan.forms(t0, enclosure);
+    let proposals = Proposals::new(plan, &forms, enclosure);
     let dimension = plan.base.len();
     let evidence = |zeros: Vec<(usize, usize)>, angles: AngleBox| {
         let sign = |form: &Option<LeadForm>| form.as_ref()?.enclose(&angles)?.certain_sign();
@@ -34,7 +36,7 @@ pub(crate) fn meeting(
         let signs: Vec<(usize, Sign)> = others.filter_map(|(i, form)| Some((i, sign(form)?))).collect();
         Meeting { far: plan.far_field(t0, &forms), angles, zeros, signs }
     };
-    if plain && let Some(angles) = late::targets(plan, t0, 1, problem, enclosure, effort).pop() {
+    if plain && let Some(angles) = late::targets(plan, t0, 1, problem, enclosure).pop() {
         return Some(evidence(Vec::new(), angles));
     }
     sets_of_zeros(problem, dimension).into_iter().find_map(|zeros| {
@@ -44,7 +46,11 @@ pub(crate) fn meeting(
             };
             problem.truth(&forms.iter().enumerate().map(sign).collect::<Vec<_>>())
         };
-        let (angles, axes) = common_zero(&zeros, &forms, dimension, &truth, effort)?;
+        let may_vanish = |angles: &AngleBox| {
+            let angles = approx_box(angles);
+            zeros.iter().all(|f| proposals.sign(*f, &angles).is_none())
+        };
+        let (angles, axes) = common_zero(&zeros, &forms, dimension, (&may_vanish, &truth), effort)?;
         Some(evidence(zeros.into_iter().zip(axes).collect(), angles))
     })
 }
@@ -72,7 +78,7 @@ fn common_zero(
     zeros: &[usize],
     forms: &[Option<LeadForm>],
     dimension: usize,
-    truth: &dyn Fn(&AngleBox) -> Option<bool>,
+    (may_vanish, truth): (&dyn Fn(&AngleBox) -> bool, &dyn Fn(&AngleBox) -> Option<bool>),
     effort: &mut u64,
 ) -> Option<(AngleBox, Vec<usize>)> {
     let functions: Vec<&LeadForm> = zeros.iter().map(|f| forms[*f].as_ref()).collect::<Option<_>>()?;
@@ -80,11 +86,14 @@ fn common_zero(
     for _ in 0..MAX_BOXES {
         let (angles, depth) = open.pop()?;
         *effort = effort.checked_sub(1)?;
-        let may_vanish = |f: &&LeadForm| f.enclose(&angles).is_some_and(|v| v.certain_sign().is_none());
-        if !functions.iter().all(may_vanish) || truth(&angles) == Some(false) {
+        if !may_vanish(&angles) {
             continue;
         }
-        if truth(&angles) == Some(true)
+        let here = truth(&angles);
+        if here == Some(false) {
+            continue;
+        }
+        if here == Some(true)
             && let Some(axes) = own_axes(&functions, &angles)
         {
             return Some((angles, axes));

@@ -8,6 +8,8 @@
 use crate::enclosure::{Enclosure, approx_value};
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, approx_frequency, signs_on, widest};
+use crate::strategy::proposal::Proposals;
+use crate::strategy::proposal::approx_box;
 use keepout_checker::lead::{AngleBox, halves, whole_torus};
 use keepout_checker::number::Rational;
 use num_bigint::BigInt;
@@ -15,7 +17,7 @@ use std::collections::VecDeque;
 use std::f64::consts::TAU;
 
 /// Boxes that are looked at.
-const MAX_BOXES: u32 = 3_000;
+const MAX_BOXES: u32 = 20_000;
 
 /// Boxes in the zone that are tried.
 const MAX_TARGETS: usize = 256;
@@ -29,18 +31,16 @@ pub(crate) fn candidate(
     from: &Rational,
     problem: &Problem,
     enclosure: &Enclosure,
-    effort: &mut u64,
 ) -> Option<(Rational, Rational)> {
     let frequencies: Vec<f64> = plan.base.iter().map(|root| approx_frequency(*root, enclosure)).collect();
     if frequencies.len() < 2 {
         return None;
     }
     let start = approx_value(from);
-    let plain = |angles: AngleBox| angles.iter().map(|(c, r)| (approx_value(c), approx_value(r))).collect();
-    let hits = targets(plan, from, MAX_TARGETS, problem, enclosure, effort)
+    let hits = targets(plan, from, MAX_TARGETS, problem, enclosure)
         .into_iter()
-        .map(plain)
-        .filter_map(|target: Vec<(f64, f64)>| first_visit(&target, &frequencies, start).map(|time| (time, target)));
+        .map(|angles| approx_box(&angles))
+        .filter_map(|target| first_visit(&target, &frequencies, start).map(|time| (time, target)));
     let (time, target) = hits.min_by(|a, b| a.0.total_cmp(&b.0))?;
     let reach = target.iter().zip(&frequencies).map(|((_, radius), w)| radius / w).fold(f64::MAX, f64::min);
     let low = rational((time - reach).max(start))?.max(from.clone());
@@ -55,19 +55,21 @@ pub(crate) fn targets(
     count: usize,
     problem: &Problem,
     enclosure: &Enclosure,
-    effort: &mut u64,
 ) -> Vec<AngleBox> {
     let forms = plan.forms(t0, enclosure);
+    let proposals = Proposals::new(plan, &forms, enclosure);
     let mut found = Vec::new();
     let mut open: VecDeque<AngleBox> = VecDeque::from([whole_torus(plan.base.len())]);
     for _ in 0..MAX_BOXES {
         let Some(angles) = open.pop_front() else { break };
-        if *effort == 0 || found.len() == count {
+        if found.len() == count {
             break;
         }
-        *effort -= 1;
-        match problem.truth(&signs_on(&angles, &forms, problem, enclosure)) {
-            Some(true) => found.push(angles),
+        match proposals.truth(&approx_box(&angles), problem) {
+            Some(true) if problem.truth(&signs_on(&angles, &forms, problem, enclosure)) == Some(true) => {
+                found.push(angles)
+            }
+            Some(true) => {}
             Some(false) => {}
             None => open
                 .extend(widest(&angles).and_then(|axis| halves(&angles, axis)).into_iter().flat_map(|(l, u)| [l, u])),

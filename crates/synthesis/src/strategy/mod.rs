@@ -11,6 +11,7 @@ pub(crate) mod late;
 pub(crate) mod linear;
 pub(crate) mod periodic;
 pub(crate) mod pivot;
+pub(crate) mod proposal;
 pub(crate) mod root;
 pub(crate) mod square;
 pub(crate) mod taylor;
