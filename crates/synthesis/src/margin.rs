@@ -9,7 +9,8 @@ use crate::options::Options;
 use crate::outcome::{Margin, Place, Proof};
 use crate::problem::Problem;
 use crate::search::{Finding, settle};
-use crate::strategy::cone::{Plan, widest};
+use crate::strategy::cone::{Plan, approx_dyadic, widest};
+use crate::strategy::proposal::{Proposals, approx_box};
 use keepout_checker::certificate::{Evidence, RealPart};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
@@ -24,8 +25,11 @@ use std::collections::BinaryHeap;
 /// The margin is looked for with at least this precision, and with more bits than the proof needed.
 const MIN_BITS: u32 = 128;
 
-/// Steps of one branch and bound.
+/// Steps of one branch and bound in time.
 const MAX_STEPS: u32 = 3_000;
+
+/// Steps of one branch and bound on the torus.
+const MAX_TORUS_STEPS: u32 = 100_000;
 
 /// How often the stretch that is searched for the supremum is made four times longer.
 const MAX_EXTENSIONS: u32 = 6;
@@ -44,6 +48,11 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
         Relation::NonZero => return None,
     };
     let window = &proof.statement().zone;
+    if !proof.certificate().identities.is_empty() {
+        // Plain signs did not tell the trajectory from the border: no margin is to be had.
+        let place = Place::Near(window.from.clone());
+        return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: None, place }));
+    }
     let touches_at_start = window.from.is_zero() && problem.sequences[0].sign_at_zero() == Ordering::Equal;
     if touches_at_start || enclosure.forms[0].terms.is_empty() {
         let place = Place::Near(window.from.clone());
@@ -200,10 +209,10 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     }
     let mut t0 = Rational::from_integer(1.into());
     for _ in 0..60 {
-        if let Some(form) = plan.forms(&t0, enclosure).first()?.as_ref()
-            && form.rest().top() < -100
+        let forms = plan.forms(&t0, enclosure);
+        if forms.first()?.as_ref().is_some_and(|form| form.rest().top() < -100)
         {
-            let supremum = torus_supremum(form, plan.base.len(), upward)?;
+            let supremum = torus_supremum(&plan, &forms, enclosure, upward)?;
             return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
         }
         t0 *= Rational::from_integer(2.into());
@@ -294,28 +303,38 @@ fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> O
     None
 }
 
-/// The supremum over the torus.
-fn torus_supremum(form: &LeadForm, dimension: usize, upward: bool) -> Option<Interval> {
-    let mut best: Option<Dyadic> = None;
+/// The supremum over the torus: a lower bound, and in floating point a probable upper bound.
+fn torus_supremum(plan: &Plan, forms: &[Option<LeadForm>], enclosure: &Enclosure, upward: bool) -> Option<Interval> {
+    let proposals = Proposals::new(plan, forms, enclosure);
+    let sign = if upward { 1.0 } else { -1.0 };
+    let mut best: Option<(f64, AngleBox)> = None;
     let mut open = BinaryHeap::new();
-    let mut pending = vec![whole_torus(dimension)];
-    let mut scale = 0.0_f64;
-    for _ in 0..MAX_STEPS {
+    let mut pending = vec![whole_torus(plan.base.len())];
+    let mut high = f64::MAX;
+    for _ in 0..MAX_TORUS_STEPS {
         for angles in pending.drain(..) {
-            let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
-            let low = oriented(form.enclose(&centre)?, upward).lo().clone();
-            scale = scale.max(low.to_rational().map_or(0.0, |x| approx_value(&x.abs())));
-            let high = oriented(form.enclose(&angles)?, upward).hi().clone();
-            best = Some(best.map_or(low.clone(), |b| b.max(low)));
-            open.push(Open { high, part: angles });
+            let (value, radius) = proposals.value(0, &approx_box(&angles))?;
+            if best.as_ref().is_none_or(|(low, _)| sign * value > *low) {
+                best = Some((sign * value, angles.clone()));
+            }
+            open.push(Open { high: approx_to_dyadic(sign * value + radius)?, part: angles });
         }
-        let top = open.pop()?;
-        let low = best.clone()?;
-        if dimension == 0 || narrow(&low, &top.high, scale) {
-            return Some(Interval::hull(low.clone(), top.high.max(low)));
+        let top: Open<AngleBox> = open.pop()?;
+        high = approx_dyadic(&top.high);
+        if plan.base.is_empty() || high - best.as_ref()?.0 <= 1e-9 * high.abs() {
+            break;
         }
         let (lower, upper) = halves(&top.part, widest(&top.part)?)?;
         pending.extend([lower, upper]);
     }
-    None
+    let (_, angles) = best?;
+    let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
+    let low = oriented(forms[0].as_ref()?.enclose(&centre)?, upward).lo().clone();
+    Some(Interval::hull(low.clone(), approx_to_dyadic(high)?.max(low)))
+}
+
+fn approx_to_dyadic(x: f64) -> Option<Dyadic> {
+    let scaled = (x.abs() > 0.0).then(|| x.abs().log2().floor() as i32 - 52);
+    let Some(exponent) = scaled else { return Some(Dyadic::zero()) };
+    x.is_finite().then(|| Dyadic::new(BigInt::from((x / 2.0_f64.powi(exponent)) as i64), i64::from(exponent)))
 }

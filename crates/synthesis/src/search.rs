@@ -10,6 +10,7 @@ use crate::strategy::inseparable::meeting;
 use crate::strategy::late;
 use keepout_checker::certificate::{Certificate, Cone, Evidence, Sum};
 use keepout_checker::error::{Obligation, Rejection, Rule};
+use keepout_checker::lead::AngleBox;
 use keepout_checker::number::Rational;
 use keepout_checker::statement::{Claim, Statement};
 use num_traits::Zero;
@@ -84,6 +85,8 @@ struct Attempt<'a> {
     enclosure: Enclosure,
     /// Made when it is first needed; then `None` if no cone can be planned.
     plan: Option<Option<Plan>>,
+    /// A box of the torus that stood in the way of the last cone.
+    obstacle: Option<AngleBox>,
     cover: Cover,
     effort: &'a mut u64,
 }
@@ -99,7 +102,7 @@ impl<'a> Attempt<'a> {
             });
         }
         let cover = Cover::new(&problem.statement.zone.from);
-        Ok(Self { problem, enclosure, plan: None, cover, effort })
+        Ok(Self { problem, enclosure, plan: None, obstacle: None, cover, effort })
     }
 
     /// Looks for a cone at doubling starts, and extends the cover to each of them, until one of the two settles the zone.
@@ -226,7 +229,7 @@ impl<'a> Attempt<'a> {
             self.plan = None;
         }
         let plan = self.plan.get_or_insert_with(|| Plan::new(&mut self.problem, &mut self.enclosure));
-        plan.as_ref()?.cone(t0, &self.problem, &self.enclosure, self.effort)
+        plan.as_ref()?.cone(t0, &mut self.obstacle, &self.problem, &self.enclosure, self.effort)
     }
 
     /// Extends the cover; what it finds, if it does not just get there.

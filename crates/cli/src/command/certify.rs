@@ -223,7 +223,8 @@ impl Settled {
             Some(at_most) if at_most.is_positive() => {
                 format!("no margin certified (at most {}{unit}, {place})", to_decimal(at_most, 6))
             }
-            Some(_) | None => format!("margin 0, {place}"),
+            Some(_) => format!("margin 0, {place}"),
+            None => "no margin certified: the border is touched, or nearly".into(),
         }
     }
 }

@@ -174,10 +174,11 @@ impl Plan {
         Some(())
     }
 
-    /// The cone from t0, if the zone is false on all leaves of a bisection.
+    /// The cone from t0, if the zone is false on all leaves of a bisection. `obstacle`: a box that would not do for another start.
     pub(crate) fn cone(
         &self,
         t0: &Rational,
+        obstacle: &mut Option<AngleBox>,
         problem: &Problem,
         enclosure: &Enclosure,
         effort: &mut u64,
@@ -185,9 +186,12 @@ impl Plan {
         let forms = self.forms(t0, enclosure);
         let proposals = Proposals::new(self, &forms, enclosure);
         let torus = Torus { dimension: self.base.len(), forms: &forms, proposals, problem, enclosure };
+        if let Some(angles) = obstacle.as_ref().filter(|angles| angles.len() == self.base.len()) {
+            torus.node(angles, true)?;
+        }
         // First whether it will do, by floating point where that decides; then for certain.
-        torus.bisected(false, effort)?;
-        let nodes = torus.bisected(true, effort)?;
+        torus.bisected(false, obstacle, effort)?;
+        let nodes = torus.bisected(true, obstacle, effort)?;
         Some(Cone { far: self.far_field(t0, &forms), nodes })
     }
 
@@ -227,16 +231,20 @@ struct Torus<'a> {
 }
 
 impl Torus<'_> {
-    /// The bisection; `None` where a box is found that will not do.
-    fn bisected(&self, for_certain: bool, effort: &mut u64) -> Option<Vec<Node>> {
+    /// The bisection; `None` where a box is found that will not do, which is the obstacle.
+    fn bisected(&self, for_certain: bool, obstacle: &mut Option<AngleBox>, effort: &mut u64) -> Option<Vec<Node>> {
         let mut nodes = Vec::new();
         let mut open = vec![(whole_torus(self.dimension), 0_u64)];
         while let Some((angles, depth)) = open.pop() {
-            if *effort == 0 || depth >= self.enclosure.limits().depth {
+            let limits = self.enclosure.limits();
+            if *effort == 0 || depth >= limits.depth || nodes.len() as u64 >= limits.nodes {
                 return None;
             }
             *effort -= u64::from(for_certain);
-            let node = self.node(&angles, for_certain)?;
+            let Some(node) = self.node(&angles, for_certain) else {
+                *obstacle = Some(angles);
+                return None;
+            };
             if let Node::Split(axis) = node {
                 let (lower, upper) = halves(&angles, axis)?;
                 open.push((upper, depth + 1));
