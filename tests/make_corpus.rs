@@ -3,10 +3,10 @@
 //! Run with `cargo run -p keepout-tests --bin make_corpus`. Each case is checked against its expected answer before it is written;
 //! the corpus that is committed changes only where search or format do.
 
-use keepout_checker::certificate::{Angle, Cell, Certificate, Cone, Evidence, Node, Pivot, RealPart};
+use keepout_checker::certificate::{Angle, Cell, Certificate, Cone, Evidence, Meeting, Node, Pivot, RealPart, Sign};
 use keepout_checker::number::Dyadic;
 use keepout_checker::statement::{Claim, Formula, Relation, Statement};
-use keepout_synthesis::{Options, Outcome, certify};
+use keepout_synthesis::{Options, Outcome, certify, certify_eventually};
 use keepout_tests::case::{answer, corpus};
 use keepout_tests::system::{System, atom, rational};
 use std::fs;
@@ -31,6 +31,7 @@ fn main() {
     reject_covers(&base);
     reject_cones(&base);
     reject_entries(&base);
+    reject_inseparable(&base);
 }
 
 fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Certificate) {
@@ -52,8 +53,19 @@ fn reject(rule: &str, name: &str, expected: &str, mut certificate: Certificate, 
 
 fn proved(statement: &Statement) -> Certificate {
     let options = Options { margin: false, ..Options::default() };
-    match certify(statement, &options).expect("an outcome") {
-        Outcome::Clear { proof, .. } | Outcome::Enters { proof } => proof.certificate().clone(),
+    certificate(certify(statement, &options).expect("an outcome"))
+}
+
+fn proved_eventually(statement: &Statement) -> Certificate {
+    certificate(certify_eventually(statement, &Options::default()).expect("an outcome"))
+}
+
+fn certificate(outcome: Outcome) -> Certificate {
+    match outcome {
+        Outcome::Clear { proof, .. }
+        | Outcome::Enters { proof }
+        | Outcome::Inseparable { proof }
+        | Outcome::Eventually { proof } => proof.certificate().clone(),
         Outcome::Unsettled { reason, .. } => panic!("not settled: {reason:?}"),
     }
 }
@@ -71,6 +83,11 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
     let ramp = System::new("0 1; 0 0", "0 0", "0 1");
     let lag = System::new("-1 1; 0 -1", "0 0", "0 1");
     let nearby = System::new("0 1 0 0; -2 -2 0 0; 0 0 0 1; 0 0 -5 -2", "0 0 0 0", "1 0 1 0");
+    // cos(t + a) + cos(sqrt(2) t + b) with amplitudes 1, and the same with a decaying term.
+    let tones = System::new("0 1 0 0; -1 0 0 0; 0 0 0 1; 0 0 -2 0", "0 0 0 0", "3/5 4/5 1/3 4/3");
+    // Frequencies that are roots of an irreducible polynomial: z^4 + 4 z^2 + 2.
+    let coupled = System::new("0 1 0 0; 0 0 1 0; 0 0 0 1; -2 0 -4 0", "0 0 0 0", "1 0 -1 0");
+    let fading = System::new("0 1 0; -1 0 0; 0 0 -1", "0 0 0", "0 1 1");
     let x: &[u32] = &[1];
     let y: &[u32] = &[0, 1];
     let z: &[u32] = &[0, 0, 1];
@@ -156,7 +173,40 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
         (
             "cover",
             "square_for_all_time",
-            proved(&rotation.statement(atom(&[("1", y), ("-1", &[])], Relation::Positive))),
+            proved(&rotation.statement(atom(&[("1", x), ("-1", &[])], Relation::Positive))),
+        ),
+        (
+            "cone",
+            "squares_of_waves",
+            proved(&tones.statement(atom(&[("1", x), ("1", z), ("-2", &[])], Relation::Positive))),
+        ),
+        (
+            "cone",
+            "touching_lead_and_decay",
+            proved(&fading.statement(atom(&[("-1", x), ("1", &[]), ("1", z)], Relation::NonPositive))),
+        ),
+        (
+            "cone",
+            "common_zero",
+            proved(&rotation.statement(all(vec![
+                atom(&[("1", x)], Relation::Positive),
+                atom(&[("2", x), ("1", &[1, 1])], Relation::Negative),
+            ]))),
+        ),
+        (
+            "cone",
+            "eventually",
+            proved_eventually(&fading.statement(atom(&[("1", x), ("1", z), ("-101/100", &[])], Relation::NonNegative))),
+        ),
+        (
+            "inseparable",
+            "two_tones",
+            proved(&tones.statement(atom(&[("1", x), ("1", z), ("-2", &[])], Relation::NonNegative))),
+        ),
+        (
+            "inseparable",
+            "coupled_tones",
+            proved_eventually(&coupled.statement(atom(&[("1", x), ("-1/10", &[])], Relation::NonNegative))),
         ),
         (
             "entry",
@@ -178,26 +228,39 @@ fn cells(c: &mut Certificate) -> &mut Vec<Cell> {
     match &mut c.evidence {
         Evidence::Never { cells, .. } => cells,
         Evidence::Enters { before, .. } => before,
+        Evidence::Inseparable(_) => panic!("no cells"),
     }
 }
 
 fn cone(c: &mut Certificate) -> &mut Cone {
     match &mut c.evidence {
         Evidence::Never { cone: Some(cone), .. } => cone,
-        Evidence::Never { cone: None, .. } | Evidence::Enters { .. } => panic!("no cone"),
+        _ => panic!("no cone"),
     }
 }
 
 fn entry(c: &mut Certificate) -> (&mut keepout_checker::number::Rational, &mut Cell) {
     match &mut c.evidence {
         Evidence::Enters { from, cell, .. } => (from, cell),
-        Evidence::Never { .. } => panic!("no entry"),
+        _ => panic!("no entry"),
     }
 }
 
-fn first_leaf(cone: &mut Cone) -> &mut Vec<(usize, std::cmp::Ordering)> {
-    let leaf = cone.nodes.iter_mut().find_map(|n| if let Node::Leaf(signs) = n { Some(signs) } else { None });
+fn meeting(c: &mut Certificate) -> &mut Meeting {
+    match &mut c.evidence {
+        Evidence::Inseparable(meeting) => meeting,
+        _ => panic!("no meeting"),
+    }
+}
+
+fn first_leaf(cone: &mut Cone) -> &mut Vec<(usize, Sign)> {
+    let leaf = cone.nodes.iter_mut().find_map(|n| if let Node::Leaf(signs, _) = n { Some(signs) } else { None });
     leaf.expect("a leaf")
+}
+
+/// The factors of the first summand of the first identity.
+fn product(c: &mut Certificate) -> &mut Vec<(usize, u32)> {
+    &mut c.identities[0].summands[0]
 }
 
 fn reject_traces(base: &impl Fn(&str) -> Certificate) {
@@ -236,16 +299,28 @@ fn reject_traces(base: &impl Fn(&str) -> Certificate) {
     reject(rule, "derivative_missing", "refuted trace ClosedFormIsEnclosed", base("rational_time_touched"), |c| {
         c.auxiliaries[0].derivatives.pop();
     });
-    let product = "refuted trace ProductEqualsTrace";
-    reject(rule, "cofactor_changed", product, base("rational_time_touched"), |c| {
-        let position = c.products[0].cofactor;
-        c.auxiliaries[position].derivatives[0] += rational("1/1000000000000");
+    let identity = "refuted trace IdentityHolds";
+    for factor in [0, 1] {
+        let name = ["first_factor_changed", "second_factor_changed"][factor];
+        reject(rule, name, identity, base("rational_time_touched"), |c| {
+            let position = product(c)[factor].0 - c.traces.len();
+            c.auxiliaries[position].derivatives[0] += rational("1/1000000000000");
+        });
+    }
+    reject(rule, "power_changed", identity, base("rational_time_touched"), |c| product(c)[0].1 += 1);
+    reject(rule, "summand_missing", identity, base("squares_of_waves"), |c| drop(c.identities[0].summands.pop()));
+    reject(rule, "summand_twice", identity, base("squares_of_waves"), |c| {
+        let copy = product(c).clone();
+        c.identities[0].summands.push(copy);
     });
-    reject(rule, "pivot_changed", product, base("rational_time_touched"), |c| {
-        let position = c.products[0].pivot;
-        c.auxiliaries[position].derivatives[0] += rational("1/1000000000000");
+    reject(rule, "square_of_another_wave", identity, base("squares_of_waves"), |c| {
+        let position = product(c).iter().find(|(_, power)| *power == 2).expect("a square").0 - c.traces.len();
+        c.auxiliaries[position].derivatives[1] += rational("1/1000000000000");
     });
-    reject(rule, "power_changed", product, base("rational_time_touched"), |c| c.products[0].power += 1);
+    reject(rule, "identity_of_another_function", identity, base("touching_lead_and_decay"), |c| {
+        let last = c.identities.last_mut().expect("an identity");
+        last.target = last.summands[0][0].0;
+    });
 }
 
 fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
@@ -262,7 +337,7 @@ fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
         c.sums[0].root.conjugate = !c.sums[0].root.conjugate;
     });
     reject(rule, "line_moved", "refuted equality RootIsOnLine", base("torus"), |c| {
-        for lead in cone(c).leads.iter_mut().flatten() {
+        for lead in &mut cone(c).far.leads {
             lead.real_part = RealPart::Line(rational("1/1000000"));
         }
     });
@@ -270,16 +345,17 @@ fn reject_equalities(base: &impl Fn(&str) -> Certificate) {
 
 fn reject_covers(base: &impl Fn(&str) -> Certificate) {
     let rule = "cover";
-    let fits = "refuted cover EvidenceFitsClaim";
-    reject(rule, "timeless_cell_lists_a_sign", fits, base("square_for_all_time"), |c| {
-        cells(c)[0].signs.push((0, std::cmp::Ordering::Less));
+    let refuted = "refuted cover ZoneIsRefutedOnCell";
+    reject(rule, "sign_of_the_constant_missing", refuted, base("square_for_all_time"), |c| {
+        cells(c).iter_mut().for_each(|cell| cell.signs.clear());
     });
-    reject(rule, "timeless_cell_with_another_annihilator", fits, base("square_for_all_time"), |c| {
-        let position = c.products[0].cofactor;
-        c.auxiliaries[position].factors[0].multiplicity += 1;
-        c.auxiliaries[position].derivatives.push(rational("0"));
+    reject(rule, "square_in_a_closed_zone", refuted, base("square_for_all_time"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.relation = Relation::NonNegative;
+        }
+        cells(c).iter_mut().for_each(|cell| cell.pivot = Pivot::None);
     });
-    reject(rule, "start_pivot_for_all_time", fits, base("start_touched"), |c| {
+    reject(rule, "no_end_and_no_cone", "refuted cover EvidenceFitsClaim", base("start_touched"), |c| {
         if let Evidence::Never { cone, .. } = &mut c.evidence {
             *cone = None;
         }
@@ -347,46 +423,46 @@ fn reject_covers(base: &impl Fn(&str) -> Certificate) {
 
 fn reject_cones(base: &impl Fn(&str) -> Certificate) {
     let rule = "cone";
-    reject(rule, "starts_at_zero", "refuted cone CellsCoverWindow", base("limit"), |c| {
-        cone(c).from = rational("0");
+    reject(rule, "starts_at_zero", "refuted cone FarFieldStartsLate", base("limit"), |c| {
+        cone(c).far.from = rational("0");
         cells(c).clear();
     });
     reject(rule, "starts_too_early", "inconclusive cone SignOnLeaf", base("step_response"), |c| {
         let keep = cells(c)[0].clone();
-        cone(c).from = keep.to.clone();
+        cone(c).far.from = keep.to.clone();
         *cells(c) = vec![keep];
     });
     reject(rule, "lower_term_still_rising", "inconclusive cone LowerTermDecreases", base("defective"), |c| {
         let keep = Cell { to: rational("1/100"), ..cells(c)[0].clone() };
-        cone(c).from = keep.to.clone();
+        cone(c).far.from = keep.to.clone();
         *cells(c) = vec![keep];
     });
     reject(rule, "leading_root_left_out", "inconclusive cone LowerRealPartIsLess", base("torus"), |c| {
-        cone(c).leads.iter_mut().flatten().for_each(|lead| {
+        cone(c).far.leads.iter_mut().for_each(|lead| {
             lead.roots.pop();
         });
     });
     reject(rule, "no_reason_for_equal_rates", "refuted cone RealPartsAreEqual", base("torus"), |c| {
-        cone(c).leads.iter_mut().flatten().for_each(|lead| lead.real_part = RealPart::Single);
+        cone(c).far.leads.iter_mut().for_each(|lead| lead.real_part = RealPart::Single);
     });
     reject(rule, "root_without_an_angle_leads", "refuted cone AngleIsCombination", base("step_response"), |c| {
-        let lead = cone(c).leads[0].as_mut().expect("a lead");
+        let lead = &mut cone(c).far.leads[0];
         lead.roots[0] = 1 - lead.roots[0];
     });
     let combination = "refuted cone AngleIsCombination";
-    reject(rule, "turns_changed", combination, base("torus"), |c| cone(c).angles[0].turns[0] += 1);
+    reject(rule, "turns_changed", combination, base("torus"), |c| cone(c).far.angles[0].turns[0] += 1);
     reject(rule, "turns_of_a_sum_changed", combination, base("double_frequency"), |c| {
-        let angle: &mut Angle = cone(c).angles.iter_mut().find(|a| a.sum.is_some()).expect("a sum");
+        let angle: &mut Angle = cone(c).far.angles.iter_mut().find(|a| a.sum.is_some()).expect("a sum");
         angle.turns[0] -= 1;
     });
-    reject(rule, "angle_missing", combination, base("torus"), |c| drop(cone(c).angles.pop()));
-    reject(rule, "base_swapped", combination, base("torus"), |c| cone(c).base.swap(0, 1));
+    reject(rule, "angle_missing", combination, base("torus"), |c| drop(cone(c).far.angles.pop()));
+    reject(rule, "base_swapped", combination, base("torus"), |c| cone(c).far.base.swap(0, 1));
     reject(rule, "sign_flipped", "refuted cone SignOnLeaf", base("torus"), |c| {
         let sign = &mut first_leaf(cone(c))[0].1;
         *sign = sign.reverse();
     });
     reject(rule, "torus_not_split", "inconclusive cone SignOnLeaf", base("torus"), |c| {
-        let leaf = Node::Leaf(first_leaf(cone(c)).clone());
+        let leaf = Node::Leaf(first_leaf(cone(c)).clone(), None);
         cone(c).nodes = vec![leaf];
     });
     reject(rule, "signs_do_not_refute", "refuted cone ZoneIsRefutedOnLeaf", base("torus"), |c| {
@@ -394,10 +470,47 @@ fn reject_cones(base: &impl Fn(&str) -> Certificate) {
     });
     reject(rule, "last_leaf_missing", "refuted cone LeavesCoverTorus", base("torus"), |c| drop(cone(c).nodes.pop()));
     reject(rule, "a_leaf_too_many", "refuted cone LeavesCoverTorus", base("torus"), |c| {
-        let leaf = Node::Leaf(first_leaf(cone(c)).clone());
+        let leaf = Node::Leaf(first_leaf(cone(c)).clone(), None);
         cone(c).nodes.push(leaf);
     });
-    reject(rule, "sign_without_a_lead", "refuted cone SignOnLeaf", base("circle"), |c| cone(c).leads[0] = None);
+    reject(rule, "sign_without_a_lead", "refuted cone SignOnLeaf", base("circle"), |c| {
+        cone(c).far.leads.clear();
+    });
+    reject(
+        rule,
+        "sign_of_the_rest_missing",
+        "refuted cone ZoneIsRefutedOnLeaf",
+        base("touching_lead_and_decay"),
+        |c| {
+            cone(c).nodes.iter_mut().for_each(|n| {
+                if let Node::Leaf(signs, _) = n {
+                    signs.truncate(1)
+                }
+            });
+        },
+    );
+    reject(rule, "pivot_missing", "refuted cone ZoneIsRefutedOnLeaf", base("common_zero"), |c| {
+        cone(c).nodes.iter_mut().for_each(|n| {
+            if let Node::Leaf(_, pivot) = n {
+                *pivot = None
+            }
+        });
+    });
+    let fits = "refuted cover EvidenceFitsClaim";
+    reject(rule, "cone_later_than_claimed", fits, base("eventually"), |c| {
+        let from = cone(c).far.from.clone() * rational("9/10");
+        c.statement.claim = Claim::Eventually { from };
+    });
+    reject(rule, "eventually_in_a_window_that_ends", fits, base("eventually"), |c| {
+        c.statement.zone.until = Some(rational("1000"));
+    });
+    reject(rule, "claim_before_the_window", fits, base("eventually"), |c| c.statement.zone.from = rational("1000"));
+    reject(rule, "cells_for_a_cone", fits, base("eventually"), |c| {
+        cells(c).push(Cell { to: rational("1"), order: 2, signs: Vec::new(), pivot: Pivot::None });
+    });
+    reject(rule, "cone_too_early", "inconclusive cone SignOnLeaf", base("eventually"), |c| {
+        cone(c).far.from *= rational("1/2");
+    });
     reject(rule, "zone_nearer", "inconclusive cover SignOnCell", base("torus"), |c| {
         if let Formula::Atom(atom) = &mut c.statement.zone.inside {
             atom.polynomial.terms[2].coefficient = rational("-2");
@@ -407,8 +520,8 @@ fn reject_cones(base: &impl Fn(&str) -> Certificate) {
 
 fn reject_entries(base: &impl Fn(&str) -> Certificate) {
     let rule = "entry";
-    reject(rule, "root_of_another_square", "refuted trace ProductEqualsTrace", base("transcendental_time"), |c| {
-        let position = c.products[0].pivot;
+    reject(rule, "root_of_another_square", "refuted trace IdentityHolds", base("transcendental_time"), |c| {
+        let position = product(c).iter().find(|(_, power)| *power == 2).expect("a square").0 - c.traces.len();
         c.auxiliaries[position].derivatives[0] = rational("2");
     });
     reject(
@@ -456,11 +569,19 @@ fn reject_entries(base: &impl Fn(&str) -> Certificate) {
     reject(rule, "signs_do_not_prove", "refuted entry ZoneIsProvedAtInstant", base("instant@entry"), |c| {
         entry(c).1.signs.clear()
     });
-    reject(rule, "crossing_without_its_product", "refuted entry ZoneIsProvedAtInstant", base("crossing"), |c| {
-        if let Pivot::Auxiliary(_, listed) = &mut entry(c).1.pivot {
-            listed.clear();
-        }
-    });
+    reject(
+        rule,
+        "touch_without_its_identity",
+        "refuted entry ZoneIsProvedAtInstant",
+        base("transcendental_time"),
+        |c| {
+            c.identities.clear();
+            cells(c).clear();
+            if let Claim::Enters { first, .. } = &mut c.statement.claim {
+                *first = false;
+            }
+        },
+    );
     reject(rule, "open_zone_touched_only", "refuted entry ZoneIsProvedAtInstant", base("rational_time"), |c| {
         if let Formula::Atom(atom) = &mut c.statement.zone.inside {
             atom.relation = Relation::Negative;
@@ -477,5 +598,47 @@ fn reject_entries(base: &impl Fn(&str) -> Certificate) {
         if let Claim::Enters { first, .. } = &mut c.statement.claim {
             *first = false;
         }
+    });
+}
+
+fn reject_inseparable(base: &impl Fn(&str) -> Certificate) {
+    let rule = "inseparable";
+    let faces = "refuted inseparable FacesHaveOppositeSigns";
+    reject(rule, "box_moved", faces, base("two_tones"), |c| {
+        let (centre, radius) = &mut meeting(c).angles[0];
+        *centre += &*radius * rational("9/10");
+        *radius *= rational("1/1000");
+    });
+    reject(rule, "axes_swapped", "inconclusive inseparable FacesHaveOppositeSigns", base("two_tones"), |c| {
+        let zeros = &mut meeting(c).zeros;
+        (zeros[0].1, zeros[1].1) = (zeros[1].1, zeros[0].1);
+    });
+    reject(rule, "one_axis_for_two", faces, base("two_tones"), |c| {
+        let zeros = &mut meeting(c).zeros;
+        zeros[1] = zeros[0];
+    });
+    reject(rule, "an_axis_too_few", "refuted inseparable FrequenciesAreIndependent", base("two_tones"), |c| {
+        meeting(c).angles.pop();
+    });
+    let proved = "refuted inseparable ZoneIsProvedOnTorus";
+    reject(rule, "zero_missing", proved, base("two_tones"), |c| meeting(c).zeros.truncate(1));
+    reject(rule, "open_zone", proved, base("two_tones"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.relation = Relation::Positive;
+        }
+    });
+    reject(rule, "identity_missing", proved, base("two_tones"), |c| c.identities.clear());
+    reject(rule, "sign_flipped", "refuted inseparable SignOnLeaf", base("coupled_tones"), |c| {
+        let sign = &mut meeting(c).signs[0].1;
+        *sign = sign.reverse();
+    });
+    reject(rule, "window_ends", "refuted cover EvidenceFitsClaim", base("two_tones"), |c| {
+        c.statement.zone.until = Some(rational("1000"));
+    });
+    reject(rule, "said_to_be_entered", "refuted cover EvidenceFitsClaim", base("two_tones"), |c| {
+        c.statement.claim = Claim::Enters { from: rational("0"), to: rational("1000"), first: false };
+    });
+    reject(rule, "starts_at_zero", "refuted inseparable FarFieldStartsLate", base("two_tones"), |c| {
+        meeting(c).far.from = rational("0");
     });
 }

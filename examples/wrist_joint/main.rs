@@ -11,7 +11,9 @@ fn main() -> Result<(), Box<dyn std::error::Error>> {
         match certify(&model.statement(zone), &Options::default())? {
             Outcome::Clear { margin: Some(margin), .. } => println!("{name}: clear by {}", margin.certified),
             Outcome::Clear { margin: None, .. } => println!("{name}: clear"),
-            Outcome::Enters { proof } => println!("{name}: entered\n{}", proof.statement().words()),
+            Outcome::Enters { proof } | Outcome::Inseparable { proof } | Outcome::Eventually { proof } => {
+                println!("{name}: not clear\n{}", proof.statement().words());
+            }
             Outcome::Unsettled { reason, .. } => println!("{name}: not settled: {reason:?}"),
         }
     }

@@ -36,7 +36,8 @@ impl SignSet {
         if both == Self::NONE { self } else { both }
     }
 
-    fn or(self, other: Self) -> Self {
+    /// The members of either.
+    pub fn or(self, other: Self) -> Self {
         Self {
             negative: self.negative || other.negative,
             zero: self.zero || other.zero,

@@ -91,7 +91,7 @@ fn a_decay_touched_at_its_start_is_refused_where_one_thing_is_wrong() {
         (cell, r#"{"sign": "0:-", "power": "2"}"#, refuted(Rule::Cover, VanishesAtStart)),
         (cell, "", refuted(Rule::Cover, ZoneIsRefutedOnCell)),
         (r#"{"to": "1/2""#, r#"{"to": "1/3""#, refuted(Rule::Cover, CellsCoverWindow)),
-        (r#""cone": {"from": "1/2""#, r#""cone": {"from": "2/3""#, refuted(Rule::Cover, CellsCoverWindow)),
+        (r#""far": {"from": "1/2""#, r#""far": {"from": "2/3""#, refuted(Rule::Cover, CellsCoverWindow)),
         (
             r#""from": "0"
     }"#,
@@ -99,13 +99,17 @@ fn a_decay_touched_at_its_start_is_refused_where_one_thing_is_wrong() {
     }"#,
             refuted(Rule::Cover, EvidenceFitsClaim),
         ),
-        (r#"[{"roots": ["0"]}]"#, r#"[{"roots": ["1"]}]"#, inconclusive(Rule::Cone, LowerRealPartIsLess)),
-        (r#"[{"roots": ["0"]}]"#, r#"[{"roots": ["0", "1"]}]"#, refuted(Rule::Cone, RealPartsAreEqual)),
-        (r#"[{"roots": ["0"]}]"#, "[false]", refuted(Rule::Cone, SignOnLeaf)),
-        (r#"[["0:-"]]"#, r#"[["0:+"]]"#, refuted(Rule::Cone, SignOnLeaf)),
-        (r#"[["0:-"]]"#, "[[]]", refuted(Rule::Cone, ZoneIsRefutedOnLeaf)),
-        (r#"[["0:-"]]"#, "[]", refuted(Rule::Cone, LeavesCoverTorus)),
-        (r#"[["0:-"]]"#, r#"[["0:-"], ["0:-"]]"#, refuted(Rule::Cone, LeavesCoverTorus)),
+        (r#""roots": ["0"]"#, r#""roots": ["1"]"#, inconclusive(Rule::Cone, LowerRealPartIsLess)),
+        (r#""roots": ["0"]"#, r#""roots": ["0", "1"]"#, refuted(Rule::Cone, RealPartsAreEqual)),
+        (r#"{"function": "0", "roots": ["0"]}"#, "", refuted(Rule::Cone, SignOnLeaf)),
+        (r#"[{"signs": ["0:-"]}]"#, r#"[{"signs": ["0:+"]}]"#, refuted(Rule::Cone, SignOnLeaf)),
+        (r#"[{"signs": ["0:-"]}]"#, r#"[{"signs": []}]"#, refuted(Rule::Cone, ZoneIsRefutedOnLeaf)),
+        (r#"[{"signs": ["0:-"]}]"#, "[]", refuted(Rule::Cone, LeavesCoverTorus)),
+        (
+            r#"[{"signs": ["0:-"]}]"#,
+            r#"[{"signs": ["0:-"]}, {"signs": ["0:-"]}]"#,
+            refuted(Rule::Cone, LeavesCoverTorus),
+        ),
         (r#"{"re": "0", "im": "0"}"#, r#"{"re": "-1", "im": "0"}"#, inconclusive(Rule::Trace, RootsAreSeparated)),
         (
             r#"[[{"family": "0", "multiplicity": "1"}, {"family": "1", "multiplicity": "1"}]]"#,
@@ -145,9 +149,8 @@ fn a_rotation_is_refused_where_one_thing_is_wrong() {
         RootIsOnLine, SignOnCell, SignOnLeaf,
     };
     let angle = r#"{"root": "1", "turns": ["1"]}"#;
-    let nodes = r#"[{"split": "0"}, {"split": "0"}, ["0:-"], ["0:-"], {"split": "0"}, ["0:-"], ["0:-"]]"#;
-    let halves = r#"[{"split": "0"}, ["0:-"], ["0:-"]]"#;
-    let missing = r#"[{"split": "0"}, {"split": "0"}, ["0:-"], ["0:-"], {"split": "0"}, ["0:-"]]"#;
+    let last = r#"{"split": "0"}, {"signs": ["0:-"]}, {"signs": ["0:-"]}
+      ]"#;
     let cases = [
         (r#""title": "rotation""#, r#""title": "faster""#, None),
         (r#"{"times": "-2", "of": []}"#, r#"{"times": "-1/2", "of": []}"#, Some(refuted(Rule::Cover, SignOnCell))),
@@ -164,13 +167,13 @@ fn a_rotation_is_refused_where_one_thing_is_wrong() {
         (angle, "", Some(refuted(Rule::Cone, AngleIsCombination))),
         (r#""line": "0""#, r#""line": "1/1000""#, Some(refuted(Rule::Equality, RootIsOnLine))),
         (r#", "line": "0""#, "", Some(refuted(Rule::Cone, RealPartsAreEqual))),
-        (nodes, halves, Some(inconclusive(Rule::Cone, SignOnLeaf))),
-        (nodes, missing, Some(refuted(Rule::Cone, LeavesCoverTorus))),
+        (last, r#"{"signs": ["0:-"]}]"#, Some(inconclusive(Rule::Cone, SignOnLeaf))),
+        (last, r#"{"split": "0"}, {"signs": ["0:-"]}]"#, Some(refuted(Rule::Cone, LeavesCoverTorus))),
         (
-            r#""cone": {
-      "from": "1/2""#,
-            r#""cone": {
-      "from": "1""#,
+            r#""far": {
+        "from": "1/2""#,
+            r#""far": {
+        "from": "1""#,
             Some(refuted(Rule::Cover, CellsCoverWindow)),
         ),
         (r#"{"to": "1/2", "order": "8", "signs": ["0:-"]}"#, r#"{"to": "1/2", "order": "1", "signs": ["0:-"]}"#, None),
@@ -218,18 +221,21 @@ fn an_entry_at_the_start_is_refused_where_one_thing_is_wrong() {
 
 #[test]
 fn a_square_of_a_pivot_is_refused_where_one_thing_is_wrong() {
-    use Obligation::{CellsCoverWindow, EvidenceFitsClaim, ProductEqualsTrace, SignOnCell, ZoneIsRefutedOnCell};
+    use Obligation::{CellsCoverWindow, EvidenceFitsClaim, IdentityHolds, SignOnCell, ZoneIsRefutedOnCell};
     let cases = [
         (r#""traces": ["#, r#""traces": [[], "#, refuted(Rule::Trace, EvidenceFitsClaim)),
         (r#""is": "< 0""#, r#""is": "<= 0""#, refuted(Rule::Cover, ZoneIsRefutedOnCell)),
-        (r#""power": "2""#, r#""power": "1""#, refuted(Rule::Trace, ProductEqualsTrace)),
-        (r#""power": "2""#, r#""power": "3""#, refuted(Rule::Trace, ProductEqualsTrace)),
-        (r#""derivatives": ["-1", "1"]"#, r#""derivatives": ["-1", "2"]"#, refuted(Rule::Trace, ProductEqualsTrace)),
-        (r#""derivatives": ["1"]"#, r#""derivatives": ["2"]"#, refuted(Rule::Trace, ProductEqualsTrace)),
-        (r#""start": "-2""#, r#""start": "-2000001/1000000""#, refuted(Rule::Trace, ProductEqualsTrace)),
-        (r#""cofactors": ["0:+"]"#, r#""cofactors": ["0:-"]"#, refuted(Rule::Cover, SignOnCell)),
-        (r#""cofactors": ["0:+"]"#, r#""cofactors": []"#, refuted(Rule::Cover, ZoneIsRefutedOnCell)),
-        (r#""pivot": "0", "cofactors""#, r#""pivot": "1", "cofactors""#, refuted(Rule::Cover, SignOnCell)),
+        (r#""1^2""#, r#""1^1""#, refuted(Rule::Trace, IdentityHolds)),
+        (r#""1^2""#, r#""1^3""#, refuted(Rule::Trace, IdentityHolds)),
+        (r#", "2^1""#, r#", "2^1", "1^1""#, refuted(Rule::Trace, IdentityHolds)),
+        (r#"["1^2", "2^1"]"#, r#"["1^2"], ["2^1"]"#, refuted(Rule::Trace, IdentityHolds)),
+        (r#"["1^2", "2^1"]"#, "", refuted(Rule::Trace, IdentityHolds)),
+        (r#""derivatives": ["-1", "1"]"#, r#""derivatives": ["-1", "2"]"#, refuted(Rule::Trace, IdentityHolds)),
+        (r#""derivatives": ["1"]"#, r#""derivatives": ["2"]"#, refuted(Rule::Trace, IdentityHolds)),
+        (r#""start": "-2""#, r#""start": "-2000001/1000000""#, refuted(Rule::Trace, IdentityHolds)),
+        (r#""signs": ["2:+"]"#, r#""signs": ["2:-"]"#, refuted(Rule::Cover, SignOnCell)),
+        (r#""signs": ["2:+"]"#, r#""signs": []"#, refuted(Rule::Cover, ZoneIsRefutedOnCell)),
+        (r#""signs": ["2:+"]"#, r#""signs": ["1:+"]"#, inconclusive(Rule::Cover, SignOnCell)),
         (r#"{"to": "2""#, r#"{"to": "1""#, refuted(Rule::Cover, CellsCoverWindow)),
         (r#""until": "2""#, r#""until": "3""#, refuted(Rule::Cover, CellsCoverWindow)),
     ];
@@ -247,9 +253,8 @@ fn a_touch_is_an_entry_where_the_pivot_changes_its_sign() {
             r#"{"enters": {"from": "1/2", "to": "3/2", "first": true}}"#,
         );
         let text = changed(&text, r#""is": "< 0""#, r#""is": "<= 0""#);
-        let old =
-            r#"{"never": {"cells": [{"to": "2", "order": "4", "signs": [], "pivot": "0", "cofactors": ["0:+"]}]}}"#;
-        let cell = format!(r#"{{"to": "{to}", "order": "4", "signs": [], "pivot": "0", "cofactors": ["0:+"]}}"#);
+        let old = r#"{"never": {"cells": [{"to": "2", "order": "4", "signs": ["2:+"], "pivot": "1"}]}}"#;
+        let cell = format!(r#"{{"to": "{to}", "order": "4", "signs": ["2:+"], "pivot": "1"}}"#);
         let before = r#"[{"to": "1/2", "order": "4", "signs": ["0:+"]}]"#;
         changed(&text, old, &format!(r#"{{"enters": {{"before": {before}, "from": "{from}", "cell": {cell}}}}}"#))
     };

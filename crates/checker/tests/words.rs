@@ -135,8 +135,8 @@ fn every_obligation_has_its_message() {
     let rows = [
         (Rule::Trace, Obligation::RootsAreSeparated, "the roots of polynomial 3 lie one each in disjoint discs"),
         (Rule::Trace, Obligation::FactorsAnnihilateTrace, "the listed factors annihilate trace 3"),
-        (Rule::Trace, Obligation::ClosedFormIsEnclosed, "the closed form of trace 3 can be enclosed"),
-        (Rule::Trace, Obligation::ProductEqualsTrace, "product 3 equals its trace"),
+        (Rule::Trace, Obligation::ClosedFormIsEnclosed, "the closed form of function 3 can be enclosed"),
+        (Rule::Trace, Obligation::IdentityHolds, "identity 3 holds"),
         (
             Rule::Equality,
             Obligation::SumsAreRoots,
@@ -144,17 +144,17 @@ fn every_obligation_has_its_message() {
         ),
         (Rule::Equality, Obligation::SumIsIdentified, "sum 3 meets the disc of the named root alone"),
         (Rule::Equality, Obligation::RootIsOnLine, "root 3 lies on the named vertical line"),
-        (Rule::Cone, Obligation::RealPartsAreEqual, "the leading roots of trace 3 have equal real parts"),
+        (Rule::Cone, Obligation::RealPartsAreEqual, "the leading roots of function 3 have equal real parts"),
         (
             Rule::Cone,
             Obligation::LowerRealPartIsLess,
-            "the other roots of trace 3 have smaller real parts than the leading ones",
+            "the other roots of function 3 have smaller real parts than the leading ones",
         ),
         (Rule::Cone, Obligation::AngleIsCombination, "the angle of root 3 is the listed combination"),
         (
             Rule::Cone,
             Obligation::LowerTermDecreases,
-            "the lower terms of trace 3 decrease from the start of the cone on",
+            "the lower terms of function 3 decrease from the start of the cone on",
         ),
         (Rule::Cover, Obligation::SignOnCell, "the listed signs hold on cell 3"),
         (Rule::Cover, Obligation::VanishesAtStart, "the listed derivatives vanish at t = 0 on cell 3"),
@@ -162,6 +162,18 @@ fn every_obligation_has_its_message() {
         (Rule::Cover, Obligation::ZoneIsRefutedOnCell, "the signs refute the zone on cell 3"),
         (Rule::Cone, Obligation::ZoneIsRefutedOnLeaf, "the signs refute the zone on leaf 3"),
         (Rule::Cover, Obligation::CellsCoverWindow, "the cells increase and cover the window (cell 3)"),
+        (Rule::Cone, Obligation::FarFieldStartsLate, "the far field starts after t = 0"),
+        (
+            Rule::Inseparable,
+            Obligation::FrequenciesAreIndependent,
+            "the base frequencies are independent over the rationals",
+        ),
+        (
+            Rule::Inseparable,
+            Obligation::FacesHaveOppositeSigns,
+            "function 3 of the box has opposite signs on the two faces across its own axis",
+        ),
+        (Rule::Inseparable, Obligation::ZoneIsProvedOnTorus, "the signs prove the zone on the box of angles"),
         (Rule::Cone, Obligation::LeavesCoverTorus, "the bisection of the torus is complete (node 3)"),
         (Rule::Entry, Obligation::InstantIsInWindow, "the instant lies in the window and in the claimed bracket"),
         (Rule::Entry, Obligation::PivotChangesSign, "pivot 3 has opposite signs at the ends"),
@@ -217,8 +229,8 @@ fn the_program_prints_the_statement_and_that_it_is_verified() {
 #[test]
 fn the_program_tells_the_verdicts_apart() {
     let cases = [
-        ("refuted", r#"[["0:-"]]"#, r#"[["0:+"]]"#, 1, "\nREFUTED, says "),
-        ("undecided", r#"[{"roots": ["0"]}]"#, r#"[{"roots": ["1"]}]"#, 2, "\nINCONCLUSIVE, says "),
+        ("refuted", r#"[{"signs": ["0:-"]}]"#, r#"[{"signs": ["0:+"]}]"#, 1, "\nREFUTED, says "),
+        ("undecided", r#""roots": ["0"]"#, r#""roots": ["1"]"#, 2, "\nINCONCLUSIVE, says "),
         ("limit", r#""bits": "64""#, r#""bits": "20001""#, 2, "\nINCONCLUSIVE, says "),
         ("malformed", r#""bits": "64""#, r#""bits": 64"#, 3, "\nMALFORMED, says "),
         ("other", r#""title": "decay""#, r#""title": "other""#, 3, "\nFOR ANOTHER STATEMENT, says "),
@@ -237,7 +249,7 @@ fn the_program_tells_the_verdicts_apart() {
 #[test]
 fn the_program_prints_one_json_object_on_demand() {
     let (claim, evidence) = files("json", DECAY);
-    std::fs::write(&evidence, changed(DECAY, r#"[["0:-"]]"#, r#"[["0:+"]]"#)).unwrap();
+    std::fs::write(&evidence, changed(DECAY, r#"[{"signs": ["0:-"]}]"#, r#"[{"signs": ["0:+"]}]"#)).unwrap();
     let (status, out, err) = run(&[&claim, &evidence, Path::new("--json")]);
     assert_eq!((status, err.as_str()), (1, ""));
     let keepout_checker::json::Value::Object(fields) =

@@ -210,8 +210,7 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     let mut t0 = Rational::from_integer(1.into());
     for _ in 0..60 {
         let forms = plan.forms(&t0, enclosure);
-        if forms.first()?.as_ref().is_some_and(|form| form.rest().top() < -100)
-        {
+        if forms.first()?.as_ref().is_some_and(|form| form.rest().top() < -100) {
             let supremum = torus_supremum(&plan, &forms, enclosure, upward)?;
             return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
         }

@@ -7,7 +7,7 @@ use keepout_checker::Limits;
 pub struct Options {
     /// Cells and torus leaves that may be looked at for one claim, over all precisions. Default 60,000.
     pub effort: u64,
-    /// The greatest precision, in mantissa bits. Default 1,024.
+    /// The greatest precision, in mantissa bits. Default 2,048.
     pub max_bits: u32,
     /// Whether the margin of a clear single-inequality zone is looked for. Default true.
     pub margin: bool,
@@ -17,6 +17,6 @@ pub struct Options {
 
 impl Default for Options {
     fn default() -> Self {
-        Self { effort: 60_000, max_bits: 1_024, margin: true, limits: Limits::default() }
+        Self { effort: 60_000, max_bits: 2_048, margin: true, limits: Limits::default() }
     }
 }

@@ -8,10 +8,11 @@ use crate::strategy::cone::{Plan, first_start};
 use crate::strategy::cover::{Cover, Entry, Step};
 use crate::strategy::inseparable::meeting;
 use crate::strategy::late;
-use keepout_checker::certificate::{Certificate, Cone, Evidence, Sum};
+use keepout_checker::certificate::{Cell, Certificate, Cone, Evidence, Node, Pivot, Sign, Sum};
 use keepout_checker::error::{Obligation, Rejection, Rule};
 use keepout_checker::lead::AngleBox;
 use keepout_checker::number::Rational;
+use keepout_checker::signs::SignSet;
 use keepout_checker::statement::{Claim, Statement};
 use num_traits::Zero;
 
@@ -265,15 +266,43 @@ impl<'a> Attempt<'a> {
     }
 
     fn certificate(&self, statement: Statement, sums: Vec<Sum>, evidence: Evidence) -> Certificate {
+        let is_plain = self.is_plain(&evidence);
+        let (auxiliaries, identities) = match is_plain {
+            true => (Vec::new(), Vec::new()),
+            false => (self.problem.auxiliaries(), self.problem.identities.clone()),
+        };
         Certificate {
             statement,
             bits: self.enclosure.bits,
             families: self.enclosure.families.clone(),
             traces: self.problem.factors[..self.problem.traces()].to_vec(),
-            auxiliaries: self.problem.auxiliaries(),
-            identities: self.problem.identities.clone(),
+            auxiliaries,
+            identities,
             sums,
             evidence,
         }
+    }
+
+    /// Whether evidence that the zone is never entered needs no function but traces.
+    fn is_plain(&self, evidence: &Evidence) -> bool {
+        let Evidence::Never { cells, cone } = evidence else { return false };
+        let refuted = |signs: &[(usize, Sign)]| {
+            let mut sets = vec![SignSet::ANY; self.problem.factors.len()];
+            signs.iter().for_each(|(f, sign)| sets[*f] = SignSet::only(*sign));
+            self.problem.formula.truth(&sets) == Some(false)
+        };
+        let is_plain_cell = |cell: &Cell| match &cell.pivot {
+            Pivot::None => refuted(&cell.signs),
+            Pivot::Start(_) => cell.signs.iter().all(|(f, _)| *f < self.problem.traces()),
+            Pivot::Function(_) => false,
+        };
+        let is_plain_node = |node: &Node| match node {
+            Node::Split(_) => true,
+            Node::Leaf(signs, pivot) => pivot.is_none() && refuted(signs),
+        };
+        let mut leads = cone.iter().flat_map(|cone| &cone.far.leads);
+        cells.iter().all(is_plain_cell)
+            && cone.iter().flat_map(|cone| &cone.nodes).all(is_plain_node)
+            && leads.all(|lead| lead.function < self.problem.traces())
     }
 }

@@ -116,10 +116,13 @@ pub(crate) const DECAY: &str = r#"{
     {"polynomial": ["1", "1"], "centres": [{"re": "-1", "im": "0"}]}
   ],
   "traces": [[{"family": "0", "multiplicity": "1"}, {"family": "1", "multiplicity": "1"}]],
-  "auxiliaries": [], "products": [], "sums": [],
+  "auxiliaries": [], "identities": [], "sums": [],
   "evidence": {"never": {
     "cells": [{"to": "1/2", "order": "8", "signs": [], "start": [{"sign": "0:-", "power": "1"}]}],
-    "cone": {"from": "1/2", "base": [], "angles": [], "leads": [{"roots": ["0"]}], "nodes": [["0:-"]]}
+    "cone": {
+      "far": {"from": "1/2", "base": [], "angles": [], "leads": [{"function": "0", "roots": ["0"]}]},
+      "nodes": [{"signs": ["0:-"]}]
+    }
   }}
 }"#;
 
@@ -146,13 +149,18 @@ pub(crate) const ROTATION: &str = r#"{
     {"polynomial": ["1", "0", "1"], "centres": [{"re": "0", "im": "1"}]}
   ],
   "traces": [[{"family": "0", "multiplicity": "1"}, {"family": "1", "multiplicity": "1"}]],
-  "auxiliaries": [], "products": [], "sums": [],
+  "auxiliaries": [], "identities": [], "sums": [],
   "evidence": {"never": {
     "cells": [{"to": "1/2", "order": "8", "signs": ["0:-"]}],
     "cone": {
-      "from": "1/2", "base": ["1"], "angles": [{"root": "1", "turns": ["1"]}],
-      "leads": [{"roots": ["0", "1"], "line": "0"}],
-      "nodes": [{"split": "0"}, {"split": "0"}, ["0:-"], ["0:-"], {"split": "0"}, ["0:-"], ["0:-"]]
+      "far": {
+        "from": "1/2", "base": ["1"], "angles": [{"root": "1", "turns": ["1"]}],
+        "leads": [{"function": "0", "roots": ["0", "1"], "line": "0"}]
+      },
+      "nodes": [
+        {"split": "0"}, {"split": "0"}, {"signs": ["0:-"]}, {"signs": ["0:-"]},
+        {"split": "0"}, {"signs": ["0:-"]}, {"signs": ["0:-"]}
+      ]
     }
   }}
 }"#;
@@ -177,11 +185,11 @@ pub(crate) const START: &str = r#"{
     {"polynomial": ["1", "1"], "centres": [{"re": "-1", "im": "0"}]}
   ],
   "traces": [[{"family": "0", "multiplicity": "1"}, {"family": "1", "multiplicity": "1"}]],
-  "auxiliaries": [], "products": [], "sums": [],
+  "auxiliaries": [], "identities": [], "sums": [],
   "evidence": {"enters": {"before": [], "from": "0", "cell": {"to": "0", "order": "1", "signs": ["0:0"]}}}
 }"#;
 
-/// x = (t - 1)^2 is never negative on [0, 2]: it is the square of the pivot t - 1.
+/// x = (t - 1)^2 is never negative on [0, 2]: it is the square of the function t - 1, times 1.
 pub(crate) const SQUARE: &str = r#"{
   "format": "keepout-certificate/1",
   "statement": {
@@ -204,9 +212,9 @@ pub(crate) const SQUARE: &str = r#"{
     {"factors": [{"family": "0", "multiplicity": "2"}], "derivatives": ["-1", "1"]},
     {"factors": [{"family": "0", "multiplicity": "1"}], "derivatives": ["1"]}
   ],
-  "products": [{"trace": "0", "pivot": "0", "power": "2", "cofactor": "1"}],
+  "identities": [{"target": "0", "summands": [["1^2", "2^1"]]}],
   "sums": [],
-  "evidence": {"never": {"cells": [{"to": "2", "order": "4", "signs": [], "pivot": "0", "cofactors": ["0:+"]}]}}
+  "evidence": {"never": {"cells": [{"to": "2", "order": "4", "signs": ["2:+"], "pivot": "1"}]}}
 }"#;
 
 /// The statement in a text.

@@ -158,9 +158,10 @@ impl Settled {
 fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String {
     let mut text = format!("{}\n", model.title);
     let width = settled.iter().map(|s| s.statement.zone.name.len()).max().unwrap_or(0);
+    let verdict_width = settled.iter().map(|s| s.verdict().len()).max().unwrap_or(0).max("unsettled".len());
     for zone in settled {
         let name = &zone.statement.zone.name;
-        let _ = writeln!(text, "  {name:width$}  {:11}  {}", zone.verdict(), zone.in_words());
+        let _ = writeln!(text, "  {name:width$}  {:verdict_width$}  {}", zone.verdict(), zone.in_words());
     }
     if let Some(folder) = out {
         let _ = writeln!(text, "evidence in {}; to re-check one zone:", folder.display());

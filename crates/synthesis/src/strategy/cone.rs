@@ -192,7 +192,12 @@ impl Plan {
         // First whether it will do, by floating point where that decides; then for certain.
         torus.bisected(false, obstacle, effort)?;
         let nodes = torus.bisected(true, obstacle, effort)?;
-        Some(Cone { far: self.far_field(t0, &forms), nodes })
+        let mut far = self.far_field(t0, &forms);
+        let is_used = |lead: &Lead| {
+            nodes.iter().any(|n| matches!(n, Node::Leaf(signs, _) if signs.iter().any(|(f, _)| *f == lead.function)))
+        };
+        far.leads.retain(is_used);
+        Some(Cone { far, nodes })
     }
 
     /// The far field from t0 on of the functions that have a leading part there.

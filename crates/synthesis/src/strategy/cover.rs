@@ -43,6 +43,9 @@ pub(crate) struct Cover {
 /// An entry is bracketed to this relative width, as a power of two: 2^-34 < 1e-10.
 const BRACKET: i32 = -34;
 
+/// Pivots are dear: they are tried at this width, and after so many further halvings each.
+const TOUCH_EVERY: i32 = 16;
+
 impl Cover {
     pub(crate) fn new(from: &Rational) -> Self {
         Self { from: from.clone(), reached: from.clone(), cells: Vec::new(), hint: Vec::new() }
@@ -144,7 +147,12 @@ impl Cover {
         if problem.enrich() && enclosure.renew(problem).is_some() {
             return Undecided::Again;
         }
-        match pivot::touch(a, b, problem, enclosure) {
+        let is_last = width <= 2.0_f64.powf(-0.45 * f64::from(enclosure.bits));
+        let touch = match is_last || width.log2().floor() as i32 % TOUCH_EVERY == BRACKET % TOUCH_EVERY - 1 {
+            true => pivot::touch(a, b, problem, enclosure),
+            false => None,
+        };
+        match touch {
             None | Some(pivot::Touch::None) => {}
             Some(pivot::Touch::Clear(cell)) => {
                 self.reached = cell.to.clone();
@@ -153,7 +161,7 @@ impl Cover {
             }
             Some(pivot::Touch::Entered(cell)) => return Undecided::Step(Box::new(self.entered(a, a, Some(cell)))),
         }
-        if width > 2.0_f64.powf(-0.45 * f64::from(enclosure.bits)) {
+        if !is_last {
             return Undecided::Split;
         }
         Undecided::Step(Box::new(Step::Stuck(a.clone(), b.clone())))
