@@ -6,10 +6,11 @@
 //! search ends, would follow from Schanuel's conjecture; no result rests on it.
 
 use crate::problem::Problem;
+use crate::strategy::amplitude::squares_of_waves;
 use crate::strategy::factor::factors_of;
 use crate::strategy::periodic::periodic_factors;
 use crate::strategy::square::square_root;
-use crate::strategy::wave::{squares_of_waves, top_and_rest};
+use crate::strategy::wave::top_and_rest;
 use keepout_checker::certificate::Identity;
 use keepout_core::ExponentialPolynomial;
 use num_traits::One;

@@ -32,3 +32,11 @@ pub(crate) fn weights(nodes: &[Rational], moments: &[Rational]) -> Option<Vec<Ra
     }
     solve(&rows, moments.get(..nodes.len())?)
 }
+
+/// The inverse of a matrix. `None`: it is singular.
+pub(crate) fn inverse(rows: &[Vec<Rational>]) -> Option<Vec<Vec<Rational>>> {
+    let n = rows.len();
+    let unit = |k: usize| (0..n).map(|i| if i == k { Rational::one() } else { Rational::zero() }).collect::<Vec<_>>();
+    let columns: Vec<Vec<Rational>> = (0..n).map(|k| solve(rows, &unit(k))).collect::<Option<_>>()?;
+    Some((0..n).map(|i| columns.iter().map(|c| c[i].clone()).collect()).collect())
+}

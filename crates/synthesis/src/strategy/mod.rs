@@ -1,5 +1,6 @@
 //! One file for each kind of evidence, named as the checker's rule.
 
+pub(crate) mod amplitude;
 pub(crate) mod cone;
 pub(crate) mod cover;
 pub(crate) mod entry;

@@ -1,12 +1,11 @@
-//! Functions as sums of waves with rational data, and the classes of growth of a function.
+//! Functions as sums of waves with rational data, and parts of functions.
 
 use crate::enclosure::approx_value;
-use crate::strategy::identity::SumOfProducts;
 use crate::strategy::linear::{solve, weights};
 use keepout_checker::number::Rational;
 use keepout_core::{ExponentialPolynomial, IntegerPolynomial, ToRational, enclose_roots, factorize};
 use num_bigint::BigInt;
-use num_traits::{One, Signed, Zero};
+use num_traits::{Signed, Zero};
 
 /// The function exp(rate t) (constant + sum of waves).
 pub(crate) struct Waves {
@@ -26,11 +25,6 @@ impl Wave {
     /// (a, b) with a cos(w t) + b sin(w t) / w.
     pub(crate) fn parts(&self) -> (&Rational, &Rational) {
         (&self.cosine, &self.slope)
-    }
-
-    /// The amplitude, if it is rational.
-    fn amplitude(&self) -> Option<Rational> {
-        square_root_of(&(&self.cosine * &self.cosine + &self.slope * &self.slope / &self.square))
     }
 }
 
@@ -71,37 +65,6 @@ pub(crate) fn waves(function: &ExponentialPolynomial) -> Option<Waves> {
     Some(Waves { rate, constant, waves })
 }
 
-/// A function as a sum of constants of one sign times squares, where the amplitudes of its waves add up to the constant.
-///
-/// a cos(w t) + (b/w) sin(w t) - A = k (cos(w t/2) + (b / (k w)) sin(w t/2))^2 for k = a - A, A^2 = a^2 + b^2 / w^2; where k = 0,
-/// it is -2 A sin(w t/2)^2. With -A in place of A: the same from below.
-pub(crate) fn squares_of_waves(function: &ExponentialPolynomial) -> Option<SumOfProducts> {
-    let Waves { rate, constant, waves } = waves(function)?;
-    let amplitudes: Vec<Rational> = waves.iter().map(Wave::amplitude).collect::<Option<_>>()?;
-    if waves.is_empty() || amplitudes.iter().sum::<Rational>() != constant.abs() {
-        return None;
-    }
-    let growth = ExponentialPolynomial::exponential(&rate);
-    let (half, quarter) = (Rational::new(1.into(), 2.into()), Rational::new(1.into(), 4.into()));
-    let mut sum = Vec::new();
-    for (wave, amplitude) in waves.iter().zip(amplitudes) {
-        // The wave plus this is a constant times a square.
-        let shift = if constant.is_negative() { -amplitude } else { amplitude };
-        let kappa = &wave.cosine + &shift;
-        let (kappa, start, slope) = if kappa.is_zero() {
-            (&shift * Rational::from_integer(2.into()) * &wave.square, Rational::zero(), half.clone())
-        } else {
-            let slope = &wave.slope * &half / &kappa;
-            (kappa, Rational::one(), slope)
-        };
-        let square = &wave.square * &quarter;
-        let m = IntegerPolynomial::from_rationals(&[square, Rational::zero(), Rational::one()]);
-        let root = ExponentialPolynomial::new(&m, &[start, slope]).ok()?;
-        sum.push(vec![(growth.scaled(&kappa), 1), (root, 2)]);
-    }
-    Some(sum)
-}
-
 /// The part of a function with the greatest real part of exponents, and the rest, if rational annihilators separate them.
 pub(crate) fn top_and_rest(function: &ExponentialPolynomial) -> Option<(ExponentialPolynomial, ExponentialPolynomial)> {
     let mut parts = Vec::new();
@@ -126,7 +89,7 @@ pub(crate) fn top_and_rest(function: &ExponentialPolynomial) -> Option<(Exponent
 }
 
 /// The part of a function that `own` annihilates; `own * other` annihilates the function, both are coprime.
-fn projected(
+pub(crate) fn projected(
     function: &ExponentialPolynomial,
     own: &IntegerPolynomial,
     other: &IntegerPolynomial,
