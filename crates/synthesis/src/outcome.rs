@@ -65,7 +65,10 @@ pub enum Reason {
         to: Rational,
     },
     /// The leading terms for large times touch the zone's border, or come too close to tell.
-    TouchesInTheLimit,
+    TouchesInTheLimit {
+        /// The last start of a cone that was tried.
+        tried: Rational,
+    },
     /// Leading growth rates seem to be equal, but this was not proved.
     EqualRates,
     /// The work allowed was used up.

@@ -38,6 +38,9 @@ const PATIENCE: u32 = 6;
 /// A first entry is looked for where the cover up to it takes no more than about so many cells.
 const MAX_CELLS_BEFORE: f64 = 2_000.0;
 
+/// The power of two below which the terms that do not lead are negligible.
+const NEGLIGIBLE: i64 = -60;
+
 /// Halvings between the last start without a cone and the first with one.
 const HALVINGS: u32 = 12;
 
@@ -68,7 +71,12 @@ fn at_rising_precision(
     let mut bits = FIRST_BITS;
     let mut last = Reason::Effort { clear_until: statement.zone.from.clone() };
     while bits <= options.max_bits {
-        match Attempt::new(problem.clone(), bits, options, effort).map(&run) {
+        let hopeless = match &last {
+            Reason::TouchesInTheLimit { tried } => Some(tried.clone()),
+            _ => None,
+        };
+        let attempt = Attempt::new(problem.clone(), bits, options, effort);
+        match attempt.map(|attempt| attempt.unless_hopeless(hopeless.as_ref(), &run)) {
             Err(rejection @ Rejection::LimitExceeded { .. }) => return Finding::Open(Reason::Limit(rejection)),
             // The roots are not separated at this precision.
             Err(_) => {}
@@ -106,6 +114,13 @@ impl<'a> Attempt<'a> {
         Ok(Self { problem, enclosure, plan: None, obstacle: None, cover, effort })
     }
 
+    /// Runs, unless even this precision brings no cone where none was found before.
+    fn unless_hopeless(mut self, tried: Option<&Rational>, run: &impl Fn(Attempt) -> Finding) -> Finding {
+        let Some(t0) = tried else { return run(self) };
+        self.enrich();
+        if self.cone(t0).is_some() { run(self) } else { self.no_cone(t0) }
+    }
+
     /// Looks for a cone at doubling starts, and extends the cover to each of them, until one of the two settles the zone.
     fn run(mut self) -> Finding {
         let until = self.problem.statement.zone.until.clone();
@@ -129,6 +144,9 @@ impl<'a> Attempt<'a> {
                 {
                     return found;
                 }
+                if attempt > PATIENCE && self.is_settled_far_field(&t0) {
+                    break;
+                }
             }
             if t0 > self.problem.statement.zone.from
                 && let Some(end) = self.extend(&t0)
@@ -137,7 +155,7 @@ impl<'a> Attempt<'a> {
             }
             t0 *= Rational::from_integer(2.into());
         }
-        self.no_cone()
+        self.no_cone(&t0)
     }
 
     /// Looks for the least start of a cone, or a point of each cone in the zone.
@@ -158,7 +176,7 @@ impl<'a> Attempt<'a> {
             without = t0.clone();
             t0 *= Rational::from_integer(2.into());
         }
-        self.no_cone()
+        self.no_cone(&t0)
     }
 
     /// The claim for the earliest cone between a start without one and a start with one.
@@ -180,9 +198,19 @@ impl<'a> Attempt<'a> {
         Finding::Never(self.certificate(statement, sums, Evidence::Never { cells: Vec::new(), cone: Some(cone) }))
     }
 
-    fn no_cone(self) -> Finding {
+    /// Whether the leading terms on a torus of dimension 2 or more are all that is left: later starts show nothing new.
+    fn is_settled_far_field(&self, t0: &Rational) -> bool {
+        let Some(Some(plan)) = &self.plan else { return false };
+        let forms = plan.forms(t0, &self.enclosure);
+        plan.base.len() > 1 && forms.iter().flatten().all(|form| form.rest().top() < NEGLIGIBLE)
+    }
+
+    fn no_cone(self, tried: &Rational) -> Finding {
         let unproved = self.plan.flatten().is_none_or(|p| p.unproved);
-        Finding::Open(if unproved { Reason::EqualRates } else { Reason::TouchesInTheLimit })
+        Finding::Open(match unproved {
+            true => Reason::EqualRates,
+            false => Reason::TouchesInTheLimit { tried: tried.clone() },
+        })
     }
 
     fn enrich(&mut self) {

@@ -231,7 +231,7 @@ impl Settled {
 }
 
 /// What it means, and what it does not.
-const INSEPARABLE: &str = "no entry is known, but phases that the oscillations come arbitrarily close to lead into the zone at \
+const INSEPARABLE: &str = "phases that the oscillations come arbitrarily close to lead into the zone at \
     every late time: no invariant of the class can keep the trajectory clear of it. This does not say that the zone is \
     entered, nor that it is not; a zone moved away by any margin can be settled";
 
@@ -278,13 +278,17 @@ fn margin_unit(statement: &Statement) -> Option<&str> {
 
 fn reason_words(reason: &Reason) -> String {
     match reason {
-        Reason::Touches { from, to } => {
-            let near = to_decimal(&((from + to) / Rational::from_integer(2.into())), 9);
-            format!("touches near t = {near}: whether the trajectory reaches the border or only comes very close is not decided")
-        }
-        Reason::TouchesInTheLimit => {
-            "touches in the limit: for large times the trajectory comes as close to the border as one likes, or too close to tell".into()
-        }
+        Reason::Touches { from, to } => format!(
+            "between t = {} and t = {} the trajectory touches the border or comes too close to tell: no factor that vanishes \
+             there was found (to decide such zeros in general is an open problem)",
+            to_decimal(from, 12),
+            to_decimal(to, 12)
+        ),
+        Reason::TouchesInTheLimit { tried } => format!(
+            "the leading terms for large times touch the border, or come too close to tell: no identity that shows it was \
+             found (starts of a cone up to t = {} were tried)",
+            to_decimal(tried, 3)
+        ),
         Reason::EqualRates => "leading growth rates seem to be equal, which could not be proved".into(),
         Reason::Effort { clear_until } => {
             format!("the work allowed was used up; the zone is not entered before t = {}", to_decimal(clear_until, 6))
@@ -296,7 +300,7 @@ fn reason_words(reason: &Reason) -> String {
 
 fn help_words(reason: &Reason) -> &'static str {
     match reason {
-        Reason::Touches { .. } | Reason::TouchesInTheLimit => "what would help: a slightly wider or narrower zone",
+        Reason::Touches { .. } | Reason::TouchesInTheLimit { .. } => "what would help: a slightly wider or narrower zone",
         Reason::EqualRates => "what would help: a window with `until`",
         Reason::Effort { .. } => "what would help: a greater --effort, or a window with `until`",
         Reason::WindowEnds => "what would help: a zone without `until`",

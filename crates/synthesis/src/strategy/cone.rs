@@ -10,6 +10,7 @@ use keepout_checker::certificate::{Angle, Cone, FarField, Lead, Node, RealPart, 
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
 use keepout_core::ToRational;
+use keepout_core::lattice::approx_integer_relations;
 use num_bigint::BigInt;
 use num_integer::Integer;
 use num_traits::{ToPrimitive, Zero};
@@ -25,6 +26,9 @@ pub(crate) struct Plan {
     /// Whether equal real parts were suspected and not proved for some trace.
     pub(crate) unproved: bool,
 }
+
+/// A sum of roots and its position.
+type Step = (Vec<(i64, RootRef)>, usize);
 
 /// The widest ratio of frequencies and the greatest multiple that relations are looked for with.
 const MAX_RATIO: i64 = 48;
@@ -127,15 +131,23 @@ impl Plan {
                     break;
                 }
             }
-            let combination = match &found {
-                None => {
-                    self.base.push(root);
-                    vec![(self.base.len() - 1, 1)]
-                }
-                Some((parts, sum)) => combined(parts, self.sums[*sum].root.conjugate, &turns),
+            let steps = match found {
+                Some(step) => Some(vec![step]),
+                None => self.long_relation(root, problem, enclosure)?,
             };
-            turns.insert(root, combination);
-            shown.push((root, found.map(|(_, sum)| sum)));
+            for (parts, sum) in steps.iter().flatten() {
+                let named = self.sums[*sum].root;
+                if turns.contains_key(&named.index) {
+                    continue;
+                }
+                turns.insert(named.index, combined(parts, named.conjugate, &turns));
+                shown.push((named.index, Some(*sum)));
+            }
+            if steps.is_none() {
+                self.base.push(root);
+                turns.insert(root, vec![(self.base.len() - 1, 1)]);
+                shown.push((root, None));
+            }
         }
         let dimension = self.base.len();
         for (root, sum) in shown {
@@ -146,6 +158,40 @@ impl Plan {
             self.angles.push(Angle { root, turns: row, sum });
         }
         Some(())
+    }
+
+    /// Sums, one after the other, that show a root as an integer combination of three or more base roots: proposed by lattice
+    /// reduction. `Some(None)`: there is none.
+    fn long_relation(
+        &mut self,
+        root: usize,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Option<Option<Vec<Step>>> {
+        if self.base.len() < 3 {
+            return Some(None);
+        }
+        let scale = Rational::from_integer(BigInt::from(1) << (enclosure.bits - enclosure.bits / 4));
+        let scaled = |root: &usize| Some((frequency(*root, enclosure).lo().to_rational()? * &scale).to_integer());
+        let Some(numbers) = std::iter::once(&root).chain(&self.base).map(scaled).collect::<Option<Vec<_>>>() else {
+            return Some(None);
+        };
+        let proposal = approx_integer_relations(&numbers, MAX_MULTIPLE as u32).into_iter().find_map(|relation| {
+            let own = relation.first()?.to_i64().filter(|n| n.abs() == 1)?;
+            relation[1..].iter().map(|n| n.to_i64().map(|n| -n * own)).collect::<Option<Vec<i64>>>()
+        });
+        let Some(multiples) = proposal else { return Some(None) };
+        let mut terms = self.base.clone().into_iter().zip(multiples).filter(|(_, n)| *n != 0);
+        let Some((first, times)) = terms.next() else { return Some(None) };
+        let mut so_far = (times, RootRef { index: first, conjugate: false });
+        let mut steps = Vec::new();
+        for (base, n) in terms {
+            let parts = vec![so_far, (n, RootRef { index: base, conjugate: false })];
+            let Some(sum) = self.sum(&parts, problem, enclosure)? else { return Some(None) };
+            so_far = (1, self.sums[sum].root);
+            steps.push((parts, sum));
+        }
+        Some((so_far.1.index == root).then_some(steps))
     }
 
     /// A base root of which all commensurate frequencies are integer multiples, if the least of them is not one itself.
