@@ -60,6 +60,7 @@ impl System {
             states: states.map(|(i, s)| State { name: format!("x{i}"), unit: None, start: s.clone() }).collect(),
             drives: vec![],
             outputs: vec![],
+            exponentials: Vec::new(),
             phases: vec![Phase { rates: rates.collect() }],
             zone: Zone { name: "zone".into(), reference: None, inside, from: rational("0"), until: None },
             claim: Claim::Never { margin: rational("0") },

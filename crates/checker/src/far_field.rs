@@ -11,6 +11,7 @@ use crate::lead::{AngleBox, LeadForm};
 use crate::limits::Budget;
 use crate::model::Setting;
 use crate::number::Dyadic;
+use crate::range::{Growth, Range, sign_of_products};
 use num_traits::Signed;
 use std::cmp::Ordering;
 use std::collections::BTreeMap;
@@ -19,7 +20,10 @@ use std::collections::BTreeMap;
 type Turns = BTreeMap<usize, Vec<i64>>;
 
 /// The leading part of each function that has one in the certificate.
-pub(crate) struct Leads(BTreeMap<usize, LeadForm>);
+pub(crate) struct Leads {
+    forms: BTreeMap<usize, LeadForm>,
+    growths: BTreeMap<usize, Growth>,
+}
 
 impl Leads {
     /// Proves a far field. The certificate's sums have been checked.
@@ -27,7 +31,7 @@ impl Leads {
         let Setting { certificate, model, .. } = on;
         Duty::new(rule, Obligation::FarFieldStartsLate, 0).ensure(far.from.is_positive())?;
         let turns = check_angles(far, on)?;
-        let mut leads = BTreeMap::new();
+        let mut leads = Self { forms: BTreeMap::new(), growths: BTreeMap::new() };
         for lead in &far.leads {
             let known = Duty::new(Rule::Cone, Obligation::AngleIsCombination, lead.function);
             let function = model.functions.get(lead.function).ok_or_else(|| known.refuted())?;
@@ -43,9 +47,12 @@ impl Leads {
                 leading.push((*root, angle.ok_or_else(|| known.refuted())?));
             }
             let form = LeadForm::new(&function.form, &leading, &rho_lo, &far.from, lead.function, certificate.bits)?;
-            leads.insert(lead.function, form);
+            let (t0, bits) = (&far.from, certificate.bits);
+            let growth = Growth::new(form.clone(), lead, &function.form, &model.table, t0, bits);
+            leads.growths.extend(growth.map(|growth| (lead.function, growth)));
+            leads.forms.insert(lead.function, form);
         }
-        Ok(Self(leads))
+        Ok(leads)
     }
 
     /// Proves that a function has this sign on a box of angles; `Equal` only for the zero function.
@@ -71,10 +78,20 @@ impl Leads {
         budget: &mut Budget,
     ) -> Result<Sign, Rejection> {
         let known = on.model.functions.get(function).ok_or_else(|| duty.refuted())?;
-        if known.form.terms.is_empty() {
+        if known.is_zero() {
             return Ok(Ordering::Equal);
         }
-        let form = self.0.get(&function).ok_or_else(|| duty.refuted())?;
+        if !known.products.is_empty() {
+            let bits = on.certificate.bits;
+            budget.spend(known.products.len().saturating_mul(2_000), bits)?;
+            let range = |position: &usize| {
+                let zero = on.model.functions.get(*position).filter(|f| f.is_zero()).map(|_| Range::zero());
+                zero.or_else(|| self.growths.get(position)?.range(angles))
+            };
+            let pairs = known.products.iter().map(|(c, a)| Some((range(c)?, range(a)?)));
+            return sign_of_products(pairs, bits).ok_or_else(|| duty.inconclusive());
+        }
+        let form = self.forms.get(&function).ok_or_else(|| duty.refuted())?;
         budget.spend(200 * form.count(), on.certificate.bits)?;
         form.enclose(angles).and_then(|value| value.certain_sign()).ok_or_else(|| duty.inconclusive())
     }

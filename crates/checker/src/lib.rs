@@ -8,8 +8,8 @@
 //! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
 //! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
 //!
-//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `sequence`, `formula`,
-//! `signs`, `number/`;
+//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `range`, `sequence`,
+//! `formula`, `exponential`, `signs`, `number/`;
 //! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `field`, `json` read and write texts.
 
 pub use check::{Verified, check};
@@ -19,6 +19,7 @@ pub use limits::Limits;
 pub mod certificate;
 pub mod decimal;
 pub mod error;
+pub mod exponential;
 pub mod formula;
 pub mod json;
 pub mod lead;
@@ -26,6 +27,7 @@ pub mod limits;
 pub mod model;
 pub mod number;
 pub mod polynomial;
+pub mod range;
 pub mod root;
 pub mod sequence;
 pub mod signs;

@@ -4,6 +4,7 @@
 
 use crate::certificate::{Certificate, Factor, Identity};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
+use crate::exponential::products;
 use crate::formula::{IndexedFormula, claimed_formula};
 use crate::limits::{Budget, Limits, within};
 use crate::number::Rational;
@@ -23,6 +24,15 @@ pub struct Function {
     pub form: ClosedForm,
     /// The multiplicity of each family in its annihilator.
     pub factors: Vec<Factor>,
+    /// Where it is no exponential polynomial: the positions of c and a in sum of c exp(a). Then all of the above is empty.
+    pub products: Vec<(usize, usize)>,
+}
+
+impl Function {
+    /// Whether it is zero for all time.
+    pub(crate) fn is_zero(&self) -> bool {
+        self.form.terms.is_empty() && self.products.is_empty()
+    }
 }
 
 /// The claimed formula with the proved closed form of each of its traces.
@@ -32,7 +42,8 @@ pub struct Model {
     pub formula: IndexedFormula,
     /// The certified roots.
     pub table: RootTable,
-    /// One trace for each polynomial of the formula, then the auxiliary functions.
+    /// One trace for each polynomial of the formula; the coefficients and arguments of exponentials in them; then the auxiliary
+    /// functions.
     pub functions: Vec<Function>,
 }
 
@@ -66,12 +77,27 @@ impl Model {
         let fits = Duty::new(Rule::Trace, Obligation::EvidenceFitsClaim, 0);
         let formula = claimed_formula(&certificate.statement).ok_or_else(|| fits.refuted())?;
         let formula = IndexedFormula::new(&formula);
-        fits.ensure(formula.polynomials.len() == certificate.traces.len())?;
+        let exponentials = &certificate.statement.exponentials;
+        let split: Vec<_> = formula.polynomials.iter().map(|p| products(p, exponentials)).collect();
+        let atoms = formula.polynomials.len();
+        let parts: Vec<_> = split.iter().flatten().flat_map(|(c, a)| [c, a]).collect();
+        fits.ensure(atoms.saturating_add(parts.len()) == certificate.traces.len())?;
         let bits = certificate.bits;
         let table = RootTable::new(&certificate.families, bits, budget)?;
         let flow = Flow::new(&certificate.statement, limits);
         let mut functions = Vec::new();
-        for (position, (polynomial, factors)) in formula.polynomials.iter().zip(&certificate.traces).enumerate() {
+        let mut next = atoms;
+        let polynomials = formula.polynomials.iter().chain(parts);
+        for (position, (polynomial, factors)) in polynomials.zip(&certificate.traces).enumerate() {
+            let own = split.get(position).map_or(0, Vec::len);
+            if own > 0 {
+                fits.ensure(factors.is_empty())?;
+                let products = (0..own).map(|i| (next + 2 * i, next + 2 * i + 1)).collect();
+                next += 2 * own;
+                let (sequence, form) = (Sequence::from_rationals(&[]), ClosedForm { terms: Vec::new() });
+                functions.push(Function { sequence, form, factors: Vec::new(), products });
+                continue;
+            }
             check_degree(factors, &table, limits)?;
             let (order, sequence) = flow.trace(polynomial, budget)?;
             let m = table.product(factors).ok_or_else(|| fits.refuted())?;
@@ -80,7 +106,7 @@ impl Model {
             Duty::new(Rule::Trace, Obligation::FactorsAnnihilateTrace, position).ensure(annihilates)?;
             let derivatives = sequence.derivatives(m.degree());
             let form = ClosedForm::new(factors, &derivatives, &table, bits, position, budget)?;
-            functions.push(Function { sequence, form, factors: factors.clone() });
+            functions.push(Function { sequence, form, factors: factors.clone(), products: Vec::new() });
         }
         for auxiliary in &certificate.auxiliaries {
             let (position, factors) = (functions.len(), &auxiliary.factors);
@@ -89,7 +115,7 @@ impl Model {
             duty.ensure(auxiliary.derivatives.len() == degree && !factors.is_empty())?;
             let form = ClosedForm::new(factors, &auxiliary.derivatives, &table, bits, position, budget)?;
             let sequence = Sequence::from_rationals(&auxiliary.derivatives);
-            functions.push(Function { sequence, form, factors: factors.clone() });
+            functions.push(Function { sequence, form, factors: factors.clone(), products: Vec::new() });
         }
         let model = Self { formula, table, functions };
         for (position, identity) in certificate.identities.iter().enumerate() {
@@ -106,6 +132,9 @@ impl Model {
 
     /// The first `count` derivatives at 0 of a function, from as many as its annihilator's degree.
     fn extended(&self, function: &Function, count: usize) -> Option<Sequence> {
+        if !function.products.is_empty() {
+            return None;
+        }
         let m = self.table.product(&function.factors)?;
         let mut values = function.sequence.derivatives(m.degree());
         while values.len() < count {

@@ -182,7 +182,8 @@ impl<'a> Flow<'a> {
                 Variable::Output(i) => {
                     open.extend(self.statement.outputs.get(i).into_iter().flat_map(|o| variables(&o.value)));
                 }
-                Variable::Drive(_) | Variable::Time => {}
+                // An exponential is split off before; one that is left is not known to `evaluate`.
+                Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => {}
             }
         }
         support
@@ -191,7 +192,7 @@ impl<'a> Flow<'a> {
     fn degree(&self, expression: &Expression) -> usize {
         let weight = |variable: &Variable| match variable {
             Variable::Output(i) => self.statement.outputs.get(*i).map_or(0, |o| self.degree(&o.value)),
-            Variable::State(_) | Variable::Drive(_) | Variable::Time => 1,
+            Variable::State(_) | Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => 1,
         };
         let factor = |(v, k): &(Variable, u32)| weight(v).saturating_mul(usize::try_from(*k).unwrap_or(usize::MAX));
         let degree = |powers: &[(Variable, u32)]| powers.iter().map(factor).fold(0, usize::saturating_add);
@@ -221,7 +222,7 @@ impl<'a> Flow<'a> {
             match variable {
                 Variable::State(_) => dimension += 1,
                 Variable::Time => raise((&zero, None), 1),
-                Variable::Output(_) => {}
+                Variable::Output(_) | Variable::Exponential(_) => {}
                 Variable::Drive(i) => {
                     for term in self.statement.drives.get(i).into_iter().flat_map(|d| &d.signal) {
                         let frequency = match &term.wave {
@@ -303,7 +304,7 @@ impl<'a> Flow<'a> {
                     let drive = self.statement.drives.get(*i);
                     known.extend(drive.map(|d| (*variable, self.drive(d, length))));
                 }
-                Variable::State(_) | Variable::Output(_) => {}
+                Variable::State(_) | Variable::Output(_) | Variable::Exponential(_) => {}
             }
         }
         self.states(support, &mut known, length);

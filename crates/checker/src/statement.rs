@@ -19,6 +19,8 @@ pub enum Variable {
     Output(usize),
     /// Time, counted from 0.
     Time,
+    /// The exponential at this position; in zones alone.
+    Exponential(usize),
 }
 
 /// A state of the system.
@@ -85,6 +87,15 @@ pub struct Affine {
     pub terms: Vec<(Rational, Variable)>,
     /// The constant.
     pub offset: Rational,
+}
+
+/// exp of an affine expression in states, drives and time, for use in a zone.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Exponential {
+    /// Its name in the zone.
+    pub name: String,
+    /// What it is the exponential of.
+    pub argument: Affine,
 }
 
 /// A stretch of time with its own dynamics: one rate for each state, in the order of the states.
@@ -206,6 +217,8 @@ pub struct Statement {
     pub drives: Vec<Drive>,
     /// The named expressions.
     pub outputs: Vec<Output>,
+    /// The exponentials that the zone uses.
+    pub exponentials: Vec<Exponential>,
     /// The dynamics, phase after phase; exactly one today.
     pub phases: Vec<Phase>,
     /// The keep-out zone.

@@ -5,8 +5,8 @@ use crate::field::Field;
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::statement::{
-    Affine, Atom, Claim, Drive, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State, Statement,
-    Term, Variable, Wave, Zone,
+    Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State,
+    Statement, Term, Variable, Wave, Zone,
 };
 use num_traits::{Signed, Zero};
 
@@ -48,8 +48,8 @@ type Names = Vec<(String, Variable)>;
 
 pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     field.only(
-        &["format", "title", "states", "drives", "outputs", "phases", "zone", "claim"],
-        "a statement: format, title, states, drives, outputs, phases, zone, claim",
+        &["format", "title", "states", "drives", "outputs", "exponentials", "phases", "zone", "claim"],
+        "a statement: format, title, states, drives, outputs, exponentials, phases, zone, claim",
     )?;
     let format = field.get("format")?;
     if format.text()? != STATEMENT_FORMAT {
@@ -74,6 +74,13 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
         f.only(&["name", "unit", "value"], "an output: name, unit, value")?;
         Ok(Output { name, unit, value: read_expression(&f.get("value")?, &value_names)? })
     })?;
+    let exponentials = field.optional("exponentials").map(|list| {
+        declared(&list, &mut names, Variable::Exponential, |f, name, _| {
+            f.only(&["name", "terms", "offset"], "an exponential: name, terms, offset")?;
+            Ok(Exponential { name, argument: read_affine(f, &value_names)? })
+        })
+    });
+    let exponentials = exponentials.transpose()?.unwrap_or_default();
     let phases = entries(&field.get("phases")?)?;
     if phases.len() != 1 {
         return Err(field.get("phases")?.refuse("exactly one phase"));
@@ -81,7 +88,7 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     let phases = phases.iter().map(|f| read_phase(f, &states, &affine_names)).collect::<Result<_, _>>()?;
     let title = field.get("title")?.text()?.to_string();
     let (zone, claim) = (read_zone(&field.get("zone")?, &names)?, read_claim(&field.get("claim")?)?);
-    Ok(Statement { title, states, drives, outputs, phases, zone, claim })
+    Ok(Statement { title, states, drives, outputs, exponentials, phases, zone, claim })
 }
 
 /// Names with a meaning of their own in formulas.
@@ -184,7 +191,8 @@ fn read_expression(field: &Field, names: &Names) -> Result<Expression, Rejection
             };
             let increasing = powers.last().is_none_or(|(last, _)| *last < variable);
             if exponent == 0 || !increasing {
-                return Err(factor.refuse("powers >= 1 of states, drives, outputs, t in the order of declaration"));
+                return Err(factor
+                    .refuse("powers >= 1 of states, drives, outputs, t, exponentials in the order of declaration"));
             }
             within("degree", usize::try_from(exponent).unwrap_or(usize::MAX), field.limits().degree)?;
             powers.push((variable, exponent));
@@ -270,6 +278,7 @@ impl Statement {
             Variable::Drive(i) => self.drives.get(i).map_or("?", |d| &d.name),
             Variable::Output(i) => self.outputs.get(i).map_or("?", |o| &o.name),
             Variable::Time => "t",
+            Variable::Exponential(i) => self.exponentials.get(i).map_or("?", |e| &e.name),
         }
     }
 
@@ -297,16 +306,17 @@ impl Statement {
         }
     }
 
-    fn write_affine(&self, of: &str, affine: &Affine) -> Value {
+    fn write_affine(&self, key: &'static str, name: &str, affine: &Affine) -> Value {
         let term = |(factor, variable): &(Rational, Variable)| {
             object(vec![("times", text(factor)), ("of", text(self.name(*variable)))])
         };
         let terms = Value::List(affine.terms.iter().map(term).collect());
-        object(vec![("of", text(of)), ("terms", terms), ("offset", text(&affine.offset))])
+        object(vec![(key, text(name)), ("terms", terms), ("offset", text(&affine.offset))])
     }
 
     fn write_phase(&self, phase: &Phase) -> Value {
-        let rates = phase.rates.iter().zip(&self.states).map(|(rate, state)| self.write_affine(&state.name, rate));
+        let rates =
+            phase.rates.iter().zip(&self.states).map(|(rate, state)| self.write_affine("of", &state.name, rate));
         object(vec![("rates", Value::List(rates.collect()))])
     }
 }
@@ -343,7 +353,7 @@ fn write_statement(s: &Statement) -> Value {
         Claim::Eventually { from } => object(vec![("eventually", object(vec![("from", text(from))]))]),
         Claim::Inseparable => object(vec![("inseparable", object(Vec::new()))]),
     };
-    object(vec![
+    let mut fields = vec![
         ("format", text(STATEMENT_FORMAT)),
         ("title", text(&s.title)),
         ("states", Value::List(states.collect())),
@@ -352,5 +362,10 @@ fn write_statement(s: &Statement) -> Value {
         ("phases", Value::List(s.phases.iter().map(|p| s.write_phase(p)).collect())),
         ("zone", object(zone)),
         ("claim", claim),
-    ])
+    ];
+    if !s.exponentials.is_empty() {
+        let list = s.exponentials.iter().map(|e| s.write_affine("name", &e.name, &e.argument));
+        fields.insert(5, ("exponentials", Value::List(list.collect())));
+    }
+    object(fields)
 }

@@ -7,8 +7,8 @@
 use crate::decimal::fraction_and_decimal;
 use crate::formula::claimed_formula;
 use crate::statement::{
-    Affine, Atom, Claim, Drive, Expression, Formula, Output, Rational, Relation, SignalTerm, State, Statement,
-    Variable, Wave,
+    Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Rational, Relation, SignalTerm, State,
+    Statement, Variable, Wave,
 };
 use num_traits::{One, Signed, Zero};
 
@@ -69,6 +69,11 @@ impl Statement {
         }
         let line = |o: &Output| declared(&o.name, &self.expression_words(&o.value), o.unit.as_ref());
         lines.extend(self.outputs.iter().map(line));
+        if !self.exponentials.is_empty() {
+            section(lines, "Exponentials, by definition:");
+        }
+        let line = |e: &Exponential| declared(&e.name, &format!("exp({})", self.affine_words(&e.argument)), None);
+        lines.extend(self.exponentials.iter().map(line));
     }
 
     fn zone_lines(&self, lines: &mut Vec<String>) {

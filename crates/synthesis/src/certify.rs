@@ -35,6 +35,7 @@ use num_traits::Zero;
 ///     states: vec![State { name: "x".into(), unit: None, start: number(1) }],
 ///     drives: vec![],
 ///     outputs: vec![],
+///     exponentials: vec![],
 ///     phases: vec![Phase { rates: vec![Affine { terms: vec![(number(-1), Variable::State(0))], offset: number(0) }] }],
 ///     zone: Zone {
 ///         name: "two".into(),

@@ -5,7 +5,7 @@ use keepout_checker::Limits;
 use keepout_checker::certificate::{Factor, RootFamily, Sign};
 use keepout_checker::error::Rejection;
 use keepout_checker::limits::Budget;
-use keepout_checker::number::{Interval, Rational};
+use keepout_checker::number::{Complex, Interval, Rational};
 use keepout_checker::root::RootTable;
 use keepout_checker::trace::{ClosedForm, Stretch};
 use std::cmp::Ordering;
@@ -74,21 +74,32 @@ impl Enclosure {
             let sizes = derivatives.iter().enumerate().map(|(k, y)| approx_value(y).abs() / rate.powi(k as i32));
             let scale = sizes.fold(0.0, f64::max);
             let order = self.order(&zero, &zero);
-            let Some(value) = self.trace_on_stretch(i, &zero, &zero, order) else { return false };
+            let Some(value) = self.on_stretch(problem, i, &zero, &zero, order) else { return false };
             let width = value.hi().add(&value.lo().neg(), 64, keepout_checker::number::Direction::Up);
             width.top() as f64 <= scale.log2() - 0.5 * f64::from(self.bits)
         })
     }
 
-    /// Encloses a function on [from, to].
-    pub(crate) fn trace_on_stretch(
+    /// Encloses a function on [from, to], with a number of Taylor terms that suits the stretch.
+    pub(crate) fn on_stretch(
         &mut self,
-        index: usize,
+        problem: &Problem,
+        function: usize,
         from: &Rational,
         to: &Rational,
         order: u32,
     ) -> Option<Interval> {
-        on_stretch(&self.forms[index], from, to, order, self.bits, &mut self.budget)
+        if problem.products_of(function).is_empty() {
+            return on_stretch(&self.forms[function], from, to, order, self.bits, &mut self.budget);
+        }
+        let bits = self.bits;
+        let mut sum = Interval::integer(0);
+        for (coefficient, argument) in problem.products_of(function) {
+            let mut part = |f: &usize| on_stretch(&self.forms[*f], from, to, order, bits, &mut self.budget);
+            let (c, a) = (part(coefficient)?, part(argument)?);
+            sum = sum.add(&c.mul(&Complex::real(a).exp(bits)?.re, bits), bits);
+        }
+        Some(sum)
     }
 
     /// Encloses g / t^power on [0, to] for a trace that vanishes at 0 to that order.
@@ -108,7 +119,7 @@ impl Enclosure {
     pub(crate) fn judge(&mut self, problem: &Problem, from: &Rational, to: &Rational, first: &[usize]) -> Judgement {
         let order = self.order(from, to);
         let mut judgement = Judgement { signs: vec![None; self.forms.len()], truth: None, order };
-        let rest = (0..problem.traces()).filter(|i| !first.contains(i));
+        let rest = (0..problem.atoms()).filter(|i| !first.contains(i));
         // Signs of auxiliary functions last: they are needed only where traces touch zero.
         let auxiliary = (problem.traces()..self.forms.len()).filter(|i| !first.contains(i));
         let sequence: Vec<usize> = first.iter().copied().chain(rest).chain(auxiliary).collect();
@@ -133,13 +144,13 @@ impl Enclosure {
         order: u32,
     ) -> Option<Sign> {
         let zero = Rational::from_integer(0.into());
-        if *to == zero {
+        if *to == zero && problem.products_of(index).is_empty() {
             return Some(problem.sequences[index].sign_at_zero());
         }
-        if self.forms[index].terms.is_empty() {
+        if problem.is_zero(index) {
             return Some(Ordering::Equal);
         }
-        self.trace_on_stretch(index, from, to, order)?.certain_sign()
+        self.on_stretch(problem, index, from, to, order)?.certain_sign()
     }
 
     /// A number of Taylor terms: the remainder is then small against the terms kept, for exponents up to the largest.

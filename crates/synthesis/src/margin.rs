@@ -53,8 +53,13 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
         let place = Place::Near(window.from.clone());
         return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: None, place }));
     }
-    let touches_at_start = window.from.is_zero() && problem.sequences[0].sign_at_zero() == Ordering::Equal;
-    if touches_at_start || enclosure.forms[0].terms.is_empty() {
+    if !problem.products_of(0).is_empty() && window.until.is_none() {
+        return None;
+    }
+    let touches_at_start = problem.products_of(0).is_empty()
+        && window.from.is_zero()
+        && problem.sequences[0].sign_at_zero() == Ordering::Equal;
+    if touches_at_start || problem.is_zero(0) {
         let place = Place::Near(window.from.clone());
         return Some((proof.clone(), Margin { certified: Rational::zero(), at_most: Some(Rational::zero()), place }));
     }
@@ -65,7 +70,7 @@ pub(crate) fn margin(proof: &Proof, options: &Options) -> Option<(Proof, Margin)
     }
     let mut instants = instants(proof);
     for _ in 0..MAX_EXTENSIONS {
-        let peak = supremum(&instants, upward, &mut enclosure)?;
+        let peak = supremum(&instants, upward, &problem, &mut enclosure)?;
         let (low, high, place) = tail.joined(peak);
         let at_most = (-low.to_rational()?).max(Rational::zero());
         match proved(&-high.to_rational()?, proof, options) {
@@ -209,9 +214,9 @@ fn tail(problem: &mut Problem, enclosure: &mut Enclosure, upward: bool) -> Optio
     }
     let mut t0 = Rational::from_integer(1.into());
     for _ in 0..60 {
-        let forms = plan.forms(&t0, enclosure);
+        let forms = plan.leading(&t0, problem, enclosure).forms;
         if forms.first()?.as_ref().is_some_and(|form| form.rest().top() < -100) {
-            let supremum = torus_supremum(&plan, &forms, enclosure, upward)?;
+            let supremum = torus_supremum(&plan, &forms, problem, enclosure, upward)?;
             return Some(if plan.base.is_empty() { Tail::Limit(supremum) } else { Tail::Oscillates(supremum) });
         }
         t0 *= Rational::from_integer(2.into());
@@ -264,7 +269,7 @@ struct Peak {
 }
 
 /// The supremum of v between the first and the last instant.
-fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> Option<Peak> {
+fn supremum(instants: &[Rational], upward: bool, problem: &Problem, enclosure: &mut Enclosure) -> Option<Peak> {
     let mut best: Option<(Dyadic, Rational)> = None;
     let mut scale = 0.0_f64;
     let mut open = BinaryHeap::new();
@@ -278,14 +283,14 @@ fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> O
             let middle = crate::strategy::cover::simple_middle(&a, &b);
             for t in [&a, &middle, &b] {
                 let order = enclosure.order(t, t);
-                let value = oriented(enclosure.trace_on_stretch(0, t, t, order)?, upward);
+                let value = oriented(enclosure.on_stretch(problem, 0, t, t, order)?, upward);
                 scale = scale.max(value.lo().to_rational().map_or(0.0, |x| approx_value(&x.abs())));
                 if best.as_ref().is_none_or(|(low, _)| value.lo() > low) {
                     best = Some((value.lo().clone(), t.clone()));
                 }
             }
             let order = enclosure.order(&a, &b);
-            let high = oriented(enclosure.trace_on_stretch(0, &a, &b, order)?, upward).hi().clone();
+            let high = oriented(enclosure.on_stretch(problem, 0, &a, &b, order)?, upward).hi().clone();
             if best.as_ref().is_none_or(|(low, _)| high >= *low) {
                 open.push(Open { high, part: (a, b) });
             }
@@ -303,8 +308,14 @@ fn supremum(instants: &[Rational], upward: bool, enclosure: &mut Enclosure) -> O
 }
 
 /// The supremum over the torus: a lower bound, and in floating point a probable upper bound.
-fn torus_supremum(plan: &Plan, forms: &[Option<LeadForm>], enclosure: &Enclosure, upward: bool) -> Option<Interval> {
-    let proposals = Proposals::new(plan, forms, enclosure);
+fn torus_supremum(
+    plan: &Plan,
+    forms: &[Option<LeadForm>],
+    problem: &Problem,
+    enclosure: &Enclosure,
+    upward: bool,
+) -> Option<Interval> {
+    let proposals = Proposals::new(plan, forms, problem, enclosure);
     let sign = if upward { 1.0 } else { -1.0 };
     let mut best: Option<(f64, AngleBox)> = None;
     let mut open = BinaryHeap::new();

@@ -4,6 +4,7 @@ use crate::strategy::identity;
 use keepout_checker::Limits;
 use keepout_checker::certificate::{Auxiliary, Factor, Identity, Sign};
 use keepout_checker::error::Rejection;
+use keepout_checker::exponential::products;
 use keepout_checker::formula::{IndexedFormula, claimed_formula};
 use keepout_checker::limits::Budget;
 use keepout_checker::number::Rational;
@@ -23,6 +24,8 @@ pub(crate) struct Problem {
     pub(crate) factors: Vec<Vec<Factor>>,
     /// Pairwise coprime, square-free, primitive.
     pub(crate) families: Vec<IntegerPolynomial>,
+    /// For each polynomial of the formula with exponentials the positions of c and a in sum of c exp(a).
+    pub(crate) products: Vec<Vec<(usize, usize)>>,
     /// In an order in which each narrows signs that later ones use.
     pub(crate) identities: Vec<Identity>,
     limits: Limits,
@@ -37,9 +40,15 @@ impl Problem {
         let formula = IndexedFormula::new(&zone);
         let flow = Flow::new(&statement, limits);
         let mut budget = Budget::new(limits);
+        let (products, parts) = split(&formula, &statement);
         let mut sequences = Vec::new();
         let mut annihilators = Vec::new();
-        for polynomial in &formula.polynomials {
+        for (position, polynomial) in formula.polynomials.iter().chain(&parts).enumerate() {
+            if products.get(position).is_some_and(|p: &Vec<_>| !p.is_empty()) {
+                sequences.push(Sequence::from_rationals(&[]));
+                annihilators.push(IntegerPolynomial::one());
+                continue;
+            }
             let (order, sequence) = flow.trace(polynomial, &mut budget)?;
             let exceeded =
                 Rejection::LimitExceeded { limit: "derivatives", max: limits.derivatives, found: order as u64 };
@@ -53,6 +62,7 @@ impl Problem {
             sequences,
             factors: Vec::new(),
             families: Vec::new(),
+            products,
             identities: Vec::new(),
             limits: limits.clone(),
             is_enriched: false,
@@ -65,9 +75,29 @@ impl Problem {
         Ok(problem)
     }
 
+    /// The number of polynomials of the formula: the first functions.
+    pub(crate) fn atoms(&self) -> usize {
+        self.formula.polynomials.len()
+    }
+
     /// The number of traces: the functions before the auxiliary ones.
     pub(crate) fn traces(&self) -> usize {
-        self.formula.polynomials.len()
+        self.atoms() + 2 * self.products.iter().map(Vec::len).sum::<usize>()
+    }
+
+    /// The coefficients and arguments of a function with exponentials; none for others.
+    pub(crate) fn products_of(&self, function: usize) -> &[(usize, usize)] {
+        self.products.get(function).map_or(&[], Vec::as_slice)
+    }
+
+    /// Whether a function is a coefficient or an argument in a function with exponentials.
+    pub(crate) fn is_part(&self, function: usize) -> bool {
+        (self.atoms()..self.traces()).contains(&function)
+    }
+
+    /// Whether a function is zero for all time.
+    pub(crate) fn is_zero(&self, function: usize) -> bool {
+        self.factors[function].is_empty() && self.products_of(function).is_empty()
     }
 
     /// The auxiliary functions.
@@ -116,7 +146,7 @@ impl Problem {
             return false;
         }
         let known = self.identities.len();
-        for trace in 0..self.traces() {
+        for trace in 0..self.atoms() {
             identity::decompose_trace(trace, self);
         }
         self.identities.len() > known
@@ -168,6 +198,22 @@ impl Problem {
         }
         Some(list)
     }
+}
+
+/// The products in each polynomial of a formula, and the polynomials that their positions refer to.
+fn split(formula: &IndexedFormula, statement: &Statement) -> (Vec<Vec<(usize, usize)>>, Vec<Expression>) {
+    let mut parts = Vec::new();
+    let mut lists = Vec::new();
+    for polynomial in &formula.polynomials {
+        let mut list = Vec::new();
+        for (coefficient, argument) in products(polynomial, &statement.exponentials) {
+            let next = formula.polynomials.len() + parts.len();
+            list.push((next, next + 1));
+            parts.extend([coefficient, argument]);
+        }
+        lists.push(list);
+    }
+    (lists, parts)
 }
 
 /// The primitive annihilator in unscaled time: the sequence's integers have their own minimal recurrence.

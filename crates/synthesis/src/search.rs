@@ -201,8 +201,8 @@ impl<'a> Attempt<'a> {
     /// Whether the leading terms on a torus of dimension 2 or more are all that is left: later starts show nothing new.
     fn is_settled_far_field(&self, t0: &Rational) -> bool {
         let Some(Some(plan)) = &self.plan else { return false };
-        let forms = plan.forms(t0, &self.enclosure);
-        plan.base.len() > 1 && forms.iter().flatten().all(|form| form.rest().top() < NEGLIGIBLE)
+        let leading = plan.leading(t0, &self.problem, &self.enclosure);
+        plan.base.len() > 1 && leading.forms.iter().flatten().all(|form| form.rest().top() < NEGLIGIBLE)
     }
 
     fn no_cone(self, tried: &Rational) -> Finding {

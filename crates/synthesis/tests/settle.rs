@@ -36,6 +36,7 @@ fn statement(a: &[&[&str]], c: &[&str], x0: &[&str], p: &[(&str, &[u32])], relat
         states,
         drives: vec![],
         outputs: vec![],
+        exponentials: Vec::new(),
         phases: vec![Phase { rates }],
         zone: Zone {
             name: "zone".into(),

@@ -10,7 +10,7 @@ use crate::certificate::{Cell, Pivot, Sign};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::limits::Budget;
 use crate::model::{Function, Setting};
-use crate::number::{Interval, Rational};
+use crate::number::{Complex, Interval, Rational};
 use crate::signs::SignSet;
 use crate::trace::Stretch;
 use num_traits::Zero;
@@ -68,10 +68,10 @@ pub(crate) fn prove_signs(
     let stretch = Stretch { centre: &centre, half_width: &half_width, order: cell.order, bits: certificate.bits };
     let mut signs = on.no_signs();
     for (index, sign) in &cell.signs {
-        if from.is_zero() && cell.to.is_zero() {
+        if from.is_zero() && cell.to.is_zero() && function(index)?.products.is_empty() {
             on_cell.ensure(function(index)?.sequence.sign_at_zero() == *sign)?;
         } else {
-            prove_sign(on_cell, function(index)?, *sign, stretch, budget)?;
+            prove_sign(on_cell, function(index)?, *sign, stretch, on, budget)?;
         }
         set(&mut signs, *index, *sign);
     }
@@ -81,9 +81,13 @@ pub(crate) fn prove_signs(
         Pivot::Start(listed) => {
             let vanishes = Duty::new(rule, Obligation::VanishesAtStart, position);
             vanishes.ensure(from.is_zero())?;
-            let exact = model.functions.iter().map(|f| SignSet::only(f.sequence.sign_at_zero())).collect();
+            let at_zero = |f: &Function| {
+                if f.products.is_empty() { SignSet::only(f.sequence.sign_at_zero()) } else { SignSet::ANY }
+            };
+            let exact = model.functions.iter().map(at_zero).collect();
             for (index, power, sign) in listed {
-                let Function { sequence, form, .. } = function(index)?;
+                let Function { sequence, form, products, .. } = function(index)?;
+                on_cell.ensure(products.is_empty())?;
                 let power = usize::try_from(*power).unwrap_or(usize::MAX);
                 vanishes
                     .ensure(sequence.count() >= power && sequence.values().iter().take(power).all(Zero::is_zero))?;
@@ -105,19 +109,46 @@ pub(crate) fn set(signs: &mut Signs, index: usize, sign: Sign) {
 }
 
 /// Proves that a function has this sign on a stretch; `Equal` only for the zero function.
-fn prove_sign(duty: Duty, function: &Function, sign: Sign, on: Stretch, budget: &mut Budget) -> Checked {
-    if function.form.terms.is_empty() {
+fn prove_sign(
+    duty: Duty,
+    function: &Function,
+    sign: Sign,
+    stretch: Stretch,
+    on: Setting,
+    budget: &mut Budget,
+) -> Checked {
+    if function.is_zero() {
         return duty.ensure(sign == Ordering::Equal);
     }
-    let value = function.form.enclose(on, budget)?.ok_or_else(|| duty.inconclusive())?;
-    duty.sign(&value, sign)
+    duty.sign(&enclose(function, stretch, on, budget)?.ok_or_else(|| duty.inconclusive())?, sign)
+}
+
+/// Encloses a function on a stretch; with exponentials in it, term by term.
+fn enclose(function: &Function, stretch: Stretch, on: Setting, budget: &mut Budget) -> Enclosed {
+    if function.products.is_empty() {
+        return function.form.enclose(stretch, budget);
+    }
+    let bits = stretch.bits;
+    let mut sum = Interval::integer(0);
+    for (coefficient, argument) in &function.products {
+        budget.spend(usize::try_from(bits / 4).unwrap_or(0) + 64, bits)?;
+        let mut value = |position: &usize| match on.model.functions.get(*position) {
+            Some(part) => part.form.enclose(stretch, budget),
+            None => Ok(None),
+        };
+        let (Some(c), Some(a)) = (value(coefficient)?, value(argument)?) else { return Ok(None) };
+        let Some(e) = Complex::real(a).exp(bits) else { return Ok(None) };
+        sum = sum.add(&c.mul(&e.re, bits), bits);
+    }
+    Ok(Some(sum))
 }
 
 /// The enclosure of a function at an instant.
 pub(crate) fn value_at(function: &Function, at: &Rational, on: Setting, budget: &mut Budget) -> Enclosed {
     // Enough terms for a stretch of length 0: one more than the greatest power of t.
-    let longest = function.form.terms.iter().map(|t| t.coefficients.len()).max().unwrap_or(1);
+    let longest =
+        on.model.functions.iter().flat_map(|f| &f.form.terms).map(|t| t.coefficients.len()).max().unwrap_or(1);
     let order = u32::try_from(longest).unwrap_or(u32::MAX);
     let stretch = Stretch { centre: at, half_width: &Rational::zero(), order, bits: on.certificate.bits };
-    function.form.enclose(stretch, budget)
+    enclose(function, stretch, on, budget)
 }

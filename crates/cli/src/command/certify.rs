@@ -266,7 +266,7 @@ fn margin_unit(statement: &Statement) -> Option<&str> {
             Variable::State(i) => statement.states.get(*i)?.unit.as_deref(),
             Variable::Drive(i) => statement.drives.get(*i)?.unit.as_deref(),
             Variable::Output(i) => statement.outputs.get(*i)?.unit.as_deref(),
-            Variable::Time => None,
+            Variable::Time | Variable::Exponential(_) => None,
         }?;
         if !term.coefficient.abs().is_one() || unit.is_some_and(|u| u != own) {
             return None;
@@ -300,7 +300,9 @@ fn reason_words(reason: &Reason) -> String {
 
 fn help_words(reason: &Reason) -> &'static str {
     match reason {
-        Reason::Touches { .. } | Reason::TouchesInTheLimit { .. } => "what would help: a slightly wider or narrower zone",
+        Reason::Touches { .. } | Reason::TouchesInTheLimit { .. } => {
+            "what would help: a slightly wider or narrower zone"
+        }
         Reason::EqualRates => "what would help: a window with `until`",
         Reason::Effort { .. } => "what would help: a greater --effort, or a window with `until`",
         Reason::WindowEnds => "what would help: a zone without `until`",

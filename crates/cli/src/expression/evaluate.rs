@@ -48,6 +48,14 @@ pub trait Scope {
     fn splits(&self) -> bool {
         false
     }
+    /// The variable that stands for exp of an affine expression, outputs expanded; `None`: exp is not for this place.
+    fn exponential(&self, _argument: &Polynomial) -> Option<Variable> {
+        None
+    }
+    /// An expression with the outputs in it replaced by their values.
+    fn expanded(&self, value: &Polynomial) -> Polynomial {
+        value.clone()
+    }
     /// What a variable counts in a degree: the degree of what it stands for.
     fn degree(&self, _variable: Variable) -> u32 {
         1
@@ -86,6 +94,7 @@ pub fn evaluate(node: &Node, scope: &dyn Scope) -> Cases {
             evaluate(a, scope)?.into_iter().map(raise).collect()
         }
         NodeKind::Call(Function::Abs, a) => absolute(node, a, scope),
+        NodeKind::Call(Function::Exp, a) if scope.splits() => exponential(a, scope),
         NodeKind::Call(function, _) => {
             let (message, help) = scope.function_hint(*function);
             Err(Diagnostic::new(node.span.clone(), message).help(help))
@@ -259,6 +268,26 @@ pub(super) fn exponent(node: &Node, scope: &dyn Scope) -> Result<u32, Diagnostic
         )
         .help("write a reciprocal as a division; roots and variable exponents are not polynomial")
     })
+}
+
+/// exp of an affine expression, as a variable of its own.
+fn exponential(a: &Node, scope: &dyn Scope) -> Cases {
+    let affine = "the argument of exp is affine in states, drives, outputs and t";
+    let refused = || {
+        Diagnostic::new(a.span.clone(), affine).help("add a state for the argument, or describe the zone without exp")
+    };
+    let value = polynomial(a, scope).map_err(|_| refused())?;
+    let value = scope.expanded(&value);
+    if value.is_empty() {
+        return Ok(plain(Polynomial::constant(BigRational::one())));
+    }
+    let has_exponential =
+        value.terms().flat_map(|(powers, _)| powers).any(|(v, _)| matches!(v, Variable::Exponential(_)));
+    if value.degree() > 1 || has_exponential {
+        return Err(refused());
+    }
+    let variable = scope.exponential(&value).ok_or_else(refused)?;
+    Ok(plain(Polynomial::variable(variable)))
 }
 
 fn absolute(node: &Node, a: &Node, scope: &dyn Scope) -> Cases {

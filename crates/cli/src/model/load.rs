@@ -131,8 +131,10 @@ impl<'a> Loader<'a> {
         let (states, rates) = self.dynamics(&states, matrix.as_ref(), drives.len());
         let outputs = section::outputs(&outputs, &mut self.names, refusals);
         let zones = zones(self.root, need, &self.names, refusals);
-        let source = refusals.text.to_string();
-        Model { title: title.unwrap_or_default(), states, drives, outputs, phase: Phase { rates }, zones, source }
+        let (inputs, exponentials) = self.names.take_exponentials();
+        let drives = drives.into_iter().chain(inputs).collect();
+        let (title, phase, source) = (title.unwrap_or_default(), Phase { rates }, refusals.text.to_string());
+        Model { title, states, drives, outputs, exponentials, phase, zones, source }
     }
 
     fn named(&self, section: &str, keys: &[&str]) -> Vec<Entry<'a>> {

@@ -14,7 +14,9 @@ mod zone;
 
 pub use load::{MAX_BYTES, MAX_ENTRIES, Need, load, load_text};
 
-use keepout_checker::statement::{Claim, Drive, Output, Phase, Rational, State, Statement, Zone};
+use keepout_checker::statement::{
+    Claim, Drive, Exponential, Formula, Output, Phase, Rational, State, Statement, Variable, Zone,
+};
 use num_traits::Zero;
 
 /// A model without its zones' claims.
@@ -28,6 +30,8 @@ pub struct Model {
     pub drives: Vec<Drive>,
     /// The named expressions in the order of the file; no value refers to an output.
     pub outputs: Vec<Output>,
+    /// What exp stands for in zones.
+    pub exponentials: Vec<Exponential>,
     /// The dynamics.
     pub phase: Phase,
     /// The keep-out zones in the order of the file, names distinct ignoring case.
@@ -47,9 +51,24 @@ impl Model {
             states: self.states.clone(),
             drives: self.drives.clone(),
             outputs: self.outputs.clone(),
+            exponentials: if has_exponential(&self.zones[zone].inside) {
+                self.exponentials.clone()
+            } else {
+                Vec::new()
+            },
             phases: vec![self.phase.clone()],
             zone: self.zones[zone].clone(),
             claim: Claim::Never { margin: Rational::zero() },
+        }
+    }
+}
+
+fn has_exponential(formula: &Formula) -> bool {
+    match formula {
+        Formula::And(parts) | Formula::Or(parts) => parts.iter().any(has_exponential),
+        Formula::Atom(atom) => {
+            let mut variables = atom.polynomial.terms.iter().flat_map(|t| &t.powers);
+            variables.any(|(variable, _)| matches!(variable, Variable::Exponential(_)))
         }
     }
 }

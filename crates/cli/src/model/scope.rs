@@ -1,8 +1,10 @@
 //! The names of a model, and what they mean in numbers, rates, signals, outputs and zones.
 
 use crate::expression::{Function, Polynomial, Scope, Value};
-use keepout_checker::statement::Variable;
+use keepout_checker::statement::{Affine, Drive, Exponential, SignalTerm, Variable, Wave};
 use num_rational::BigRational;
+use num_traits::Zero;
+use std::cell::RefCell;
 use std::collections::HashMap;
 use std::ops::Range;
 
@@ -39,6 +41,17 @@ pub(super) struct Names {
     index: HashMap<String, usize>,
     /// The names of the outputs by their positions in the statement.
     outputs: HashMap<usize, String>,
+    /// The exponentials in zones: found while these are read.
+    exponentials: RefCell<Exponentials>,
+}
+
+/// What exp stands for in zones.
+#[derive(Default)]
+struct Exponentials {
+    /// Arguments rate * t: such an exponential is a known input.
+    rates: Vec<BigRational>,
+    /// Other arguments.
+    arguments: Vec<Affine>,
 }
 
 impl Names {
@@ -53,6 +66,33 @@ impl Names {
             self.outputs.insert(i, name.clone());
         }
         self.list.push((name, kind, span));
+    }
+
+    /// The number of declared drives.
+    fn drives(&self) -> usize {
+        self.list.iter().filter(|(_, kind, _)| matches!(kind, Kind::Drive(_))).count()
+    }
+
+    /// The value of an output.
+    fn output(&self, position: usize) -> Option<&Polynomial> {
+        match self.get(self.outputs.get(&position)?)? {
+            (_, Kind::Output(_, value), _) => value.as_ref(),
+            _ => None,
+        }
+    }
+
+    /// The known inputs and the exponentials that stand for exp in zones, with names that no other thing has.
+    pub(super) fn take_exponentials(&self) -> (Vec<Drive>, Vec<Exponential>) {
+        let Exponentials { rates, arguments } = self.exponentials.take();
+        let mut names = (1..).map(|k| format!("exp_{k}")).filter(|name| self.get(name).is_none());
+        let mut next = || names.next().unwrap_or_default();
+        let drives = rates.into_iter().map(|rate| {
+            let one = BigRational::from_integer(1.into());
+            let signal = vec![SignalTerm { coefficient: one, power: 0, rate, wave: Wave::One }];
+            Drive { name: next(), unit: None, signal }
+        });
+        let drives = drives.collect();
+        (drives, arguments.into_iter().map(|argument| Exponential { name: next(), argument }).collect())
     }
 
     /// Gives a declared name its value.
@@ -169,11 +209,7 @@ impl Scope for NameScope<'_> {
                 format!("{name} is not allowed in the argument of another function"),
                 "a signal is a sum of products of t^k, exp(r*t), sin(w*t), cos(w*t)".into(),
             ),
-            (Place::Zone, Function::Exp) => (
-                "exp in a zone is not supported yet".into(),
-                "declare a [drive] such as signal = \"exp(-2*t)\" and use its name".into(),
-            ),
-            (Place::Zone, Function::Sin | Function::Cos | Function::Abs) => (
+            (Place::Zone, Function::Exp | Function::Sin | Function::Cos | Function::Abs) => (
                 format!("{name} is not allowed in a zone"),
                 format!("declare a [drive] such as signal = \"{name}(2*t)\" and use its name"),
             ),
@@ -184,12 +220,44 @@ impl Scope for NameScope<'_> {
         self.place == Place::Zone
     }
 
+    fn exponential(&self, argument: &Polynomial) -> Option<Variable> {
+        let mut known = self.names.exponentials.borrow_mut();
+        let terms: Vec<(BigRational, Variable)> =
+            argument.terms().filter_map(|(powers, c)| Some((c.clone(), powers.first()?.0))).collect();
+        let offset = argument.terms().find(|(powers, _)| powers.is_empty());
+        let offset = offset.map_or_else(BigRational::zero, |(_, c)| c.clone());
+        if let ([(rate, Variable::Time)], true) = (terms.as_slice(), offset.is_zero()) {
+            let position = position_or_push(&mut known.rates, rate.clone());
+            return Some(Variable::Drive(self.names.drives() + position));
+        }
+        Some(Variable::Exponential(position_or_push(&mut known.arguments, Affine { terms, offset })))
+    }
+
+    fn expanded(&self, value: &Polynomial) -> Polynomial {
+        let mut sum = Polynomial::default();
+        for (powers, c) in value.terms() {
+            let mut product = Polynomial::constant(c.clone());
+            for (variable, power) in powers {
+                let factor = match variable {
+                    Variable::Output(i) => self.names.output(*i).cloned().unwrap_or_default(),
+                    _ => Polynomial::variable(*variable),
+                };
+                (0..*power).for_each(|_| product = product.mul(&factor));
+            }
+            sum.add_scaled(&product, &BigRational::from_integer(1.into()));
+        }
+        sum
+    }
+
     fn degree(&self, variable: Variable) -> u32 {
         let Variable::Output(position) = variable else { return 1 };
-        let of = self.names.outputs.get(&position).and_then(|name| self.names.get(name));
-        match of {
-            Some((_, Kind::Output(_, Some(value)), _)) => value.degree(),
-            _ => 1,
-        }
+        self.names.output(position).map_or(1, Polynomial::degree)
     }
+}
+
+fn position_or_push<T: PartialEq>(list: &mut Vec<T>, item: T) -> usize {
+    list.iter().position(|known| *known == item).unwrap_or_else(|| {
+        list.push(item);
+        list.len() - 1
+    })
 }

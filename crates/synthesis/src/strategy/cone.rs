@@ -9,12 +9,13 @@ use crate::strategy::proposal::{Proposals, approx_box};
 use keepout_checker::certificate::{Angle, Cone, FarField, Lead, Node, RealPart, RootRef, Sign, Sum};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::number::{Dyadic, Interval, Rational};
+use keepout_checker::range::{Growth, Range, sign_of_products};
 use keepout_core::ToRational;
 use keepout_core::lattice::approx_integer_relations;
 use num_bigint::BigInt;
 use num_integer::Integer;
 use num_traits::{ToPrimitive, Zero};
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// The leading roots of functions with their equalities and angles: all of a far field but its start.
 #[derive(Clone, Debug)]
@@ -229,41 +230,54 @@ impl Plan {
         enclosure: &Enclosure,
         effort: &mut u64,
     ) -> Option<Cone> {
-        let forms = self.forms(t0, enclosure);
-        let proposals = Proposals::new(self, &forms, enclosure);
-        let torus = Torus { dimension: self.base.len(), forms: &forms, proposals, problem, enclosure };
+        let leading = self.leading(t0, problem, enclosure);
+        let proposals = Proposals::new(self, &leading.forms, problem, enclosure);
+        let torus = Torus { dimension: self.base.len(), leading: &leading, proposals, problem, enclosure };
         if let Some(angles) = obstacle.as_ref().filter(|angles| angles.len() == self.base.len()) {
             torus.node(angles, true)?;
         }
         // First whether it will do, by floating point where that decides; then for certain.
         torus.bisected(false, obstacle, effort)?;
         let nodes = torus.bisected(true, obstacle, effort)?;
-        let mut far = self.far_field(t0, &forms);
-        let is_used = |lead: &Lead| {
-            nodes.iter().any(|n| matches!(n, Node::Leaf(signs, _) if signs.iter().any(|(f, _)| *f == lead.function)))
-        };
-        far.leads.retain(is_used);
+        let mut far = self.far_field(t0, &leading);
+        let leaves = nodes.iter().filter_map(|n| if let Node::Leaf(signs, _) = n { Some(signs) } else { None });
+        let mut used: BTreeSet<usize> = leaves.flatten().map(|(function, _)| *function).collect();
+        for function in used.clone() {
+            used.extend(problem.products_of(function).iter().flat_map(|(c, a)| [*c, *a]));
+        }
+        far.leads.retain(|lead| used.contains(&lead.function));
         Some(Cone { far, nodes })
     }
 
     /// The far field from t0 on of the functions that have a leading part there.
-    pub(crate) fn far_field(&self, t0: &Rational, forms: &[Option<LeadForm>]) -> FarField {
-        let leads =
-            self.leads.iter().zip(forms).filter(|(_, form)| form.is_some()).filter_map(|(lead, _)| lead.clone());
+    pub(crate) fn far_field(&self, t0: &Rational, leading: &Leading) -> FarField {
+        let leads = self
+            .leads
+            .iter()
+            .zip(&leading.forms)
+            .filter(|(_, form)| form.is_some())
+            .filter_map(|(lead, _)| lead.clone());
         FarField { from: t0.clone(), base: self.base.clone(), angles: self.angles.clone(), leads: leads.collect() }
     }
 
-    /// The leading part of each function from t0 on, where it can be enclosed.
-    pub(crate) fn forms(&self, t0: &Rational, enclosure: &Enclosure) -> Vec<Option<LeadForm>> {
-        let form = |(index, lead): (usize, &Option<Lead>)| {
-            lead.as_ref().and_then(|lead| {
-                let roots = enclosure.table.roots();
+    /// The leading parts from t0 on.
+    pub(crate) fn leading<'a>(&self, t0: &Rational, problem: &'a Problem, enclosure: &Enclosure) -> Leading<'a> {
+        let (roots, bits) = (enclosure.table.roots(), enclosure.bits);
+        let (mut forms, mut growths) = (Vec::new(), Vec::new());
+        for (index, lead) in self.leads.iter().enumerate() {
+            let form = lead.as_ref().and_then(|lead| {
                 let rho_lo = lead.roots.iter().map(|r| roots[*r].value.re.lo().clone()).max()?;
                 let leading: Vec<(usize, Vec<i64>)> = lead.roots.iter().map(|r| (*r, self.turns(*r))).collect();
-                LeadForm::new(&enclosure.forms[index], &leading, &rho_lo, t0, index, enclosure.bits).ok()
-            })
-        };
-        self.leads.iter().enumerate().map(form).collect()
+                LeadForm::new(&enclosure.forms[index], &leading, &rho_lo, t0, index, bits).ok()
+            });
+            let growth = lead
+                .as_ref()
+                .filter(|_| problem.is_part(index))
+                .and_then(|lead| Growth::new(form.clone()?, lead, &enclosure.forms[index], &enclosure.table, t0, bits));
+            forms.push(form);
+            growths.push(growth);
+        }
+        Leading { forms, growths, problem, bits }
     }
 
     pub(crate) fn turns(&self, root: usize) -> Vec<i64> {
@@ -275,7 +289,7 @@ impl Plan {
 /// A torus that is to be cut into boxes on which the zone is false.
 struct Torus<'a> {
     dimension: usize,
-    forms: &'a [Option<LeadForm>],
+    leading: &'a Leading<'a>,
     proposals: Proposals,
     problem: &'a Problem,
     enclosure: &'a Enclosure,
@@ -316,17 +330,15 @@ impl Torus<'_> {
         if probable.is_none() && self.proposals.truth(&approx_box(&centre), problem) == Some(false) {
             return widest(angles).map(Node::Split);
         }
-        let signs = signs_on(angles, self.forms, problem, self.enclosure);
+        let signs = self.leading.signs(angles);
         match problem.truth(&signs) {
             Some(false) => Some(Node::Leaf(needed(problem, signs, false), None)),
             Some(true) => None,
             // Halving brings nothing where the centre alone is not decided.
-            None if problem.truth(&signs_on(&centre, self.forms, problem, self.enclosure)) == Some(false) => {
-                widest(angles).map(Node::Split)
-            }
+            None if self.leading.truth(&centre) == Some(false) => widest(angles).map(Node::Split),
             None => {
                 let pivot = (0..signs.len())
-                    .filter(|f| self.forms[*f].is_some() && signs[*f].is_none())
+                    .filter(|f| self.leading.forms[*f].is_some() && signs[*f].is_none())
                     .find(|f| problem.truths(&signs, *f) == [Some(false); 3])?;
                 Some(Node::Leaf(needed_in_cases(problem, signs, pivot), Some(pivot)))
             }
@@ -334,24 +346,46 @@ impl Torus<'_> {
     }
 }
 
-/// The signs on a box of the torus: of traces, and where these do not decide, of the other functions too.
-pub(crate) fn signs_on(
-    angles: &AngleBox,
-    forms: &[Option<LeadForm>],
-    problem: &Problem,
-    enclosure: &Enclosure,
-) -> Vec<Option<Sign>> {
-    let mut signs = vec![None; forms.len()];
-    for (i, form) in forms.iter().enumerate() {
-        if i >= problem.traces() && problem.truth(&signs).is_some() {
-            break;
+/// The leading part of each function from one start on, where it can be enclosed.
+pub(crate) struct Leading<'a> {
+    pub(crate) forms: Vec<Option<LeadForm>>,
+    growths: Vec<Option<Growth>>,
+    problem: &'a Problem,
+    bits: u32,
+}
+
+impl Leading<'_> {
+    /// The sign of a function on a box of the torus.
+    pub(crate) fn sign(&self, function: usize, angles: &AngleBox) -> Option<Sign> {
+        if self.problem.is_zero(function) {
+            return Some(std::cmp::Ordering::Equal);
         }
-        signs[i] = match form {
-            None => enclosure.forms[i].terms.is_empty().then_some(std::cmp::Ordering::Equal),
-            Some(form) => form.enclose(angles).and_then(|value| value.certain_sign()),
+        let products = self.problem.products_of(function);
+        if products.is_empty() {
+            return self.forms[function].as_ref()?.enclose(angles)?.certain_sign();
+        }
+        let range = |f: usize| {
+            if self.problem.is_zero(f) { Some(Range::zero()) } else { self.growths[f].as_ref()?.range(angles) }
         };
+        sign_of_products(products.iter().map(|(c, a)| Some((range(*c)?, range(*a)?))), self.bits)
     }
-    signs
+
+    /// The signs on a box: of the formula's functions, and where these do not decide, of the auxiliary ones too.
+    pub(crate) fn signs(&self, angles: &AngleBox) -> Vec<Option<Sign>> {
+        let mut signs = vec![None; self.forms.len()];
+        for function in (0..self.problem.atoms()).chain(self.problem.traces()..self.forms.len()) {
+            if function >= self.problem.traces() && self.problem.truth(&signs).is_some() {
+                break;
+            }
+            signs[function] = self.sign(function, angles);
+        }
+        signs
+    }
+
+    /// The zone's truth on a box.
+    pub(crate) fn truth(&self, angles: &AngleBox) -> Option<bool> {
+        self.problem.truth(&self.signs(angles))
+    }
 }
 
 /// The axis along which a box is longest.

@@ -27,30 +27,28 @@ pub(crate) fn meeting(
     enclosure: &Enclosure,
     effort: &mut u64,
 ) -> Option<Meeting> {
-    let forms = plan.forms(t0, enclosure);
-    let proposals = Proposals::new(plan, &forms, enclosure);
+    let leading = plan.leading(t0, problem, enclosure);
+    let proposals = Proposals::new(plan, &leading.forms, problem, enclosure);
+    let functions = 0..leading.forms.len();
     let dimension = plan.base.len();
     let evidence = |zeros: Vec<(usize, usize)>, angles: AngleBox| {
-        let sign = |form: &Option<LeadForm>| form.as_ref()?.enclose(&angles)?.certain_sign();
-        let others = forms.iter().enumerate().filter(|(i, _)| zeros.iter().all(|(f, _)| f != i));
-        let signs: Vec<(usize, Sign)> = others.filter_map(|(i, form)| Some((i, sign(form)?))).collect();
-        Meeting { far: plan.far_field(t0, &forms), angles, zeros, signs }
+        let others = functions.clone().filter(|i| !problem.is_part(*i) && zeros.iter().all(|(f, _)| f != i));
+        let signs: Vec<(usize, Sign)> = others.filter_map(|i| Some((i, leading.sign(i, &angles)?))).collect();
+        Meeting { far: plan.far_field(t0, &leading), angles, zeros, signs }
     };
     if plain && let Some(angles) = late::targets(plan, t0, 1, problem, enclosure).pop() {
         return Some(evidence(Vec::new(), angles));
     }
     sets_of_zeros(problem, dimension).into_iter().find_map(|zeros| {
         let truth = |angles: &AngleBox| {
-            let sign = |(i, form): (usize, &Option<LeadForm>)| {
-                if zeros.contains(&i) { Some(Ordering::Equal) } else { form.as_ref()?.enclose(angles)?.certain_sign() }
-            };
-            problem.truth(&forms.iter().enumerate().map(sign).collect::<Vec<_>>())
+            let sign = |i: usize| if zeros.contains(&i) { Some(Ordering::Equal) } else { leading.sign(i, angles) };
+            problem.truth(&functions.clone().map(sign).collect::<Vec<_>>())
         };
         let may_vanish = |angles: &AngleBox| {
             let angles = approx_box(angles);
             zeros.iter().all(|f| proposals.sign(*f, &angles).is_none())
         };
-        let (angles, axes) = common_zero(&zeros, &forms, dimension, (&may_vanish, &truth), effort)?;
+        let (angles, axes) = common_zero(&zeros, &leading.forms, dimension, (&may_vanish, &truth), effort)?;
         Some(evidence(zeros.into_iter().zip(axes).collect(), angles))
     })
 }
@@ -62,7 +60,7 @@ fn sets_of_zeros(problem: &Problem, dimension: usize) -> Vec<Vec<usize>> {
     };
     let mut sets: Vec<Vec<usize>> = problem.identities.iter().map(squares).collect();
     sets.push(sets.concat());
-    sets.extend((0..problem.traces()).map(|trace| vec![trace]));
+    sets.extend((0..problem.atoms()).map(|trace| vec![trace]));
     for set in &mut sets {
         set.sort_unstable();
         set.dedup();

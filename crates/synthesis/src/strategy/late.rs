@@ -7,7 +7,7 @@
 
 use crate::enclosure::{Enclosure, approx_value};
 use crate::problem::Problem;
-use crate::strategy::cone::{Plan, approx_frequency, signs_on, widest};
+use crate::strategy::cone::{Plan, approx_frequency, widest};
 use crate::strategy::proposal::Proposals;
 use crate::strategy::proposal::approx_box;
 use keepout_checker::lead::{AngleBox, halves, whole_torus};
@@ -56,8 +56,8 @@ pub(crate) fn targets(
     problem: &Problem,
     enclosure: &Enclosure,
 ) -> Vec<AngleBox> {
-    let forms = plan.forms(t0, enclosure);
-    let proposals = Proposals::new(plan, &forms, enclosure);
+    let leading = plan.leading(t0, problem, enclosure);
+    let proposals = Proposals::new(plan, &leading.forms, problem, enclosure);
     let mut found = Vec::new();
     let mut open: VecDeque<AngleBox> = VecDeque::from([whole_torus(plan.base.len())]);
     for _ in 0..MAX_BOXES {
@@ -66,9 +66,7 @@ pub(crate) fn targets(
             break;
         }
         match proposals.truth(&approx_box(&angles), problem) {
-            Some(true) if problem.truth(&signs_on(&angles, &forms, problem, enclosure)) == Some(true) => {
-                found.push(angles)
-            }
+            Some(true) if leading.truth(&angles) == Some(true) => found.push(angles),
             Some(true) => {}
             Some(false) => {}
             None => open

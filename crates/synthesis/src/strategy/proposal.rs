@@ -28,7 +28,7 @@ pub(crate) fn approx_box(angles: &AngleBox) -> ApproxBox {
 }
 
 impl Proposals {
-    pub(crate) fn new(plan: &Plan, forms: &[Option<LeadForm>], enclosure: &Enclosure) -> Self {
+    pub(crate) fn new(plan: &Plan, forms: &[Option<LeadForm>], problem: &Problem, enclosure: &Enclosure) -> Self {
         let form = |index: usize| {
             let (lead, exact) = (plan.leads[index].as_ref()?, forms[index].as_ref()?);
             let leading = enclosure.forms[index].terms.iter().filter(|t| lead.roots.contains(&t.root));
@@ -44,7 +44,7 @@ impl Proposals {
             let slack = approx_dyadic(exact.rest()) + 1e-13 * size;
             (size.is_finite() && size < 1e200 && slack.is_finite()).then_some(Form { waves, slack })
         };
-        let vanishes = enclosure.forms.iter().map(|f| f.terms.is_empty()).collect();
+        let vanishes = (0..forms.len()).map(|f| problem.is_zero(f)).collect();
         Self { forms: (0..forms.len()).map(form).collect(), vanishes }
     }
 
@@ -86,7 +86,7 @@ impl Proposals {
     /// The probable truth of the zone on a box; signs of auxiliary functions only where those of traces do not decide.
     pub(crate) fn truth(&self, angles: &ApproxBox, problem: &Problem) -> Option<bool> {
         let mut signs = vec![None; self.forms.len()];
-        for function in 0..self.forms.len() {
+        for function in (0..problem.atoms()).chain(problem.traces()..self.forms.len()) {
             if function == problem.traces()
                 && let Some(truth) = problem.truth(&signs)
             {
