@@ -5,7 +5,7 @@
 
 use keepout_checker::certificate::{Angle, Cell, Certificate, Cone, Evidence, Meeting, Node, Pivot, RealPart, Sign};
 use keepout_checker::number::Dyadic;
-use keepout_checker::statement::{Claim, Formula, Relation, Statement};
+use keepout_checker::statement::{Affine, Claim, Exponential, Formula, Relation, Statement, Term, Variable};
 use keepout_synthesis::{Options, Outcome, certify, certify_eventually};
 use keepout_tests::case::{answer, corpus};
 use keepout_tests::system::{System, atom, rational};
@@ -32,6 +32,7 @@ fn main() {
     reject_cones(&base);
     reject_entries(&base);
     reject_inseparable(&base);
+    reject_exponentials(&base);
 }
 
 fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Certificate) {
@@ -198,6 +199,8 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
             "eventually",
             proved_eventually(&fading.statement(atom(&[("1", x), ("1", z), ("-101/100", &[])], Relation::NonNegative))),
         ),
+        ("exponential", "cooling", proved(&with_exponential(&decay, "-3"))),
+        ("exponential", "entered", proved(&with_exponential(&decay, "-2"))),
         (
             "inseparable",
             "two_tones",
@@ -222,6 +225,23 @@ fn bases() -> Vec<(&'static str, &'static str, Certificate)> {
             ),
         ),
     ]
+}
+
+/// x' = -x from 1 and a zone with exp(x) + x^2, which falls from e + 1 to 1: above 4 (limit -3), or below 2.
+fn with_exponential(system: &System, limit: &'static str) -> Statement {
+    let mut statement = system.statement(atom(&[("1", &[2]), (limit, &[])], Relation::NonPositive));
+    let argument = Affine { terms: vec![(rational("1"), Variable::State(0))], offset: rational("0") };
+    statement.exponentials = vec![Exponential { name: "e".into(), argument }];
+    if let Formula::Atom(atom) = &mut statement.zone.inside {
+        let powers = vec![(Variable::Exponential(0), 1)];
+        atom.polynomial.terms.push(Term { coefficient: rational("1"), powers });
+        if limit == "-3" {
+            // Never above e + 1.
+            atom.relation = Relation::NonNegative;
+            atom.polynomial.terms[1].coefficient = rational("-4");
+        }
+    }
+    statement
 }
 
 fn cells(c: &mut Certificate) -> &mut Vec<Cell> {
@@ -640,5 +660,41 @@ fn reject_inseparable(base: &impl Fn(&str) -> Certificate) {
     });
     reject(rule, "starts_at_zero", "refuted inseparable FarFieldStartsLate", base("two_tones"), |c| {
         meeting(c).far.from = rational("0");
+    });
+}
+
+fn reject_exponentials(base: &impl Fn(&str) -> Certificate) {
+    let rule = "exponential";
+    reject(rule, "a_list_too_many", "refuted trace EvidenceFitsClaim", base("cooling"), |c| {
+        c.traces.push(Vec::new());
+    });
+    reject(rule, "factors_for_a_sum_with_exponentials", "refuted trace EvidenceFitsClaim", base("cooling"), |c| {
+        let factors = c.traces[c.traces.len() - 1].clone();
+        c.traces[0] = factors;
+    });
+    reject(rule, "another_argument", "refuted trace FactorsAnnihilateTrace", base("cooling"), |c| {
+        c.statement.exponentials[0].argument.offset = rational("1/10");
+    });
+    reject(rule, "sign_flipped", "refuted cover SignOnCell", base("cooling"), |c| {
+        let sign = &mut cells(c)[0].signs[0].1;
+        *sign = sign.reverse();
+    });
+    reject(rule, "lead_of_the_argument_missing", "inconclusive cone SignOnLeaf", base("cooling"), |c| {
+        let argument = c.traces.len() - 1;
+        cone(c).far.leads.retain(|lead| lead.function != argument);
+    });
+    reject(rule, "nearer_zone", "inconclusive cover SignOnCell", base("cooling"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.polynomial.terms[1].coefficient = rational("-371829/100000");
+        }
+    });
+    reject(rule, "zone_is_not_entered_there", "refuted entry SignOnCell", base("entered@exponential"), |c| {
+        if let Formula::Atom(atom) = &mut c.statement.zone.inside {
+            atom.polynomial.terms[1].coefficient = rational("-19/10");
+        }
+        cells(c).clear();
+        if let Claim::Enters { first, .. } = &mut c.statement.claim {
+            *first = false;
+        }
     });
 }

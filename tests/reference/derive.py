@@ -19,6 +19,7 @@ if hasattr(sys, "set_int_max_str_digits"):
 
 import elementary
 import exponential
+import exponential_zone
 import integer_polynomial
 import quoted
 import random_trace
@@ -35,6 +36,7 @@ def derived():
         "step_responses": step_response.step_responses(),
         "late_peaks": step_response.late_peaks(),
         "exponentials": exponential.exponentials(),
+        "exponential_zones": exponential_zone.exponential_zones(),
         "functions": elementary.functions(),
         "relative_motion": relative_motion.relative_motion(),
         "traces": random_trace.traces(),

@@ -78,7 +78,7 @@ impl ClosedForm {
     }
 
     /// Encloses g / s^drop for the offsets s = t - centre of a stretch, where the first `drop` Taylor coefficients of g
-    /// at the centre are known to be 0 exactly. `drop` = 0: encloses g itself. `None`: an argument is out of range.
+    /// at the centre are known to be 0 exactly; where they are not, this is so for g without these terms. `drop` = 0: encloses g itself. `None`: an argument is out of range.
     ///
     /// Each term is sum_k c_k s^k with c_k = sum_i p_i b_(k-i), P(centre + s) = sum p_i s^i, b_k = mu^k / k!, all times
     /// exp(mu centre). Lemma: for x = |mu| h and 2 x <= m + 1, sum_(l >= m) x^l / l! <= 2 x^m / m! (ratio <= 1/2). So the terms

@@ -4,8 +4,9 @@ use crate::problem::Problem;
 use keepout_checker::Limits;
 use keepout_checker::certificate::{Factor, RootFamily, Sign};
 use keepout_checker::error::Rejection;
+use keepout_checker::exponential;
 use keepout_checker::limits::Budget;
-use keepout_checker::number::{Complex, Interval, Rational};
+use keepout_checker::number::{Interval, Rational};
 use keepout_checker::root::RootTable;
 use keepout_checker::trace::{ClosedForm, Stretch};
 use std::cmp::Ordering;
@@ -92,14 +93,12 @@ impl Enclosure {
         if problem.products_of(function).is_empty() {
             return on_stretch(&self.forms[function], from, to, order, self.bits, &mut self.budget);
         }
-        let bits = self.bits;
-        let mut sum = Interval::integer(0);
-        for (coefficient, argument) in problem.products_of(function) {
-            let mut part = |f: &usize| on_stretch(&self.forms[*f], from, to, order, bits, &mut self.budget);
-            let (c, a) = (part(coefficient)?, part(argument)?);
-            sum = sum.add(&c.mul(&Complex::real(a).exp(bits)?.re, bits), bits);
-        }
-        Some(sum)
+        let half = Rational::new(1.into(), 2.into());
+        let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
+        let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits: self.bits };
+        let pairs: Vec<_> =
+            problem.products_of(function).iter().map(|(c, a)| (&self.forms[*c], &self.forms[*a])).collect();
+        exponential::enclose(&pairs, stretch, &mut self.budget).ok().flatten()
     }
 
     /// Encloses g / t^power on [0, to] for a trace that vanishes at 0 to that order.

@@ -2,15 +2,16 @@
 //!
 //! A cell lists signs that hold on all of it, and may name a pivot w. At each instant of the cell, w is negative, zero or
 //! positive: so a formula that is false in these three cases is false on the whole cell, whatever w is.
-//! - Pivot t, on a cell that starts at 0: at t = 0 all signs are exact. For t > 0, a function with g^(j)(0) = 0 for j < k has the
+//! - Pivot t, on a cell that starts at 0: at t = 0 all signs are exact (but those of functions with exponentials). For t > 0, a function with g^(j)(0) = 0 for j < k has the
 //!   sign of g / t^k.
 //! - Pivot a function: what follows from its sign follows by the certificate's identities.
 
 use crate::certificate::{Cell, Pivot, Sign};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
+use crate::exponential;
 use crate::limits::Budget;
 use crate::model::{Function, Setting};
-use crate::number::{Complex, Interval, Rational};
+use crate::number::{Interval, Rational};
 use crate::signs::SignSet;
 use crate::trace::Stretch;
 use num_traits::Zero;
@@ -81,10 +82,10 @@ pub(crate) fn prove_signs(
         Pivot::Start(listed) => {
             let vanishes = Duty::new(rule, Obligation::VanishesAtStart, position);
             vanishes.ensure(from.is_zero())?;
-            let at_zero = |f: &Function| {
-                if f.products.is_empty() { SignSet::only(f.sequence.sign_at_zero()) } else { SignSet::ANY }
-            };
-            let exact = model.functions.iter().map(at_zero).collect();
+            let mut exact = signs.clone();
+            for (index, plain) in model.functions.iter().enumerate().filter(|(_, f)| f.products.is_empty()) {
+                set(&mut exact, index, plain.sequence.sign_at_zero());
+            }
             for (index, power, sign) in listed {
                 let Function { sequence, form, products, .. } = function(index)?;
                 on_cell.ensure(products.is_empty())?;
@@ -123,24 +124,17 @@ fn prove_sign(
     duty.sign(&enclose(function, stretch, on, budget)?.ok_or_else(|| duty.inconclusive())?, sign)
 }
 
-/// Encloses a function on a stretch; with exponentials in it, term by term.
+/// Encloses a function on a stretch.
 fn enclose(function: &Function, stretch: Stretch, on: Setting, budget: &mut Budget) -> Enclosed {
     if function.products.is_empty() {
         return function.form.enclose(stretch, budget);
     }
-    let bits = stretch.bits;
-    let mut sum = Interval::integer(0);
-    for (coefficient, argument) in &function.products {
-        budget.spend(usize::try_from(bits / 4).unwrap_or(0) + 64, bits)?;
-        let mut value = |position: &usize| match on.model.functions.get(*position) {
-            Some(part) => part.form.enclose(stretch, budget),
-            None => Ok(None),
-        };
-        let (Some(c), Some(a)) = (value(coefficient)?, value(argument)?) else { return Ok(None) };
-        let Some(e) = Complex::real(a).exp(bits) else { return Ok(None) };
-        sum = sum.add(&c.mul(&e.re, bits), bits);
+    let form = |position: &usize| on.model.functions.get(*position).map(|part| &part.form);
+    let pairs = function.products.iter().map(|(c, a)| Some((form(c)?, form(a)?)));
+    match pairs.collect::<Option<Vec<_>>>() {
+        Some(pairs) => exponential::enclose(&pairs, stretch, budget),
+        None => Ok(None),
     }
-    Ok(Some(sum))
 }
 
 /// The enclosure of a function at an instant.
