@@ -9,6 +9,7 @@ use crate::field::{Field, dyadic_text};
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::polynomial::Polynomial;
+use crate::region_text::{read_proof, write_proof};
 use crate::statement_text::read_statement;
 use num_traits::Signed;
 use std::cmp::Ordering;
@@ -96,18 +97,18 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
 }
 
 /// The lengths of the lists that positions refer to.
-struct Counts {
-    functions: usize,
-    roots: usize,
-    sums: usize,
+pub(crate) struct Counts {
+    pub(crate) functions: usize,
+    pub(crate) roots: usize,
+    pub(crate) sums: usize,
 }
 
-fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
+pub(crate) fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
     within(limit, field.list()?.len(), max)?;
     Ok(Field::clone(field))
 }
 
-fn read_integer(field: &Field) -> Result<i64, Rejection> {
+pub(crate) fn read_integer(field: &Field) -> Result<i64, Rejection> {
     let value: i64 = field.text()?.parse().map_err(|_| field.refuse("a small integer"))?;
     let bits = usize::try_from(u64::BITS - value.unsigned_abs().leading_zeros()).unwrap_or(usize::MAX);
     within("multiplier_bits", bits, field.limits().multiplier_bits)?;
@@ -177,7 +178,7 @@ fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection>
     Ok((position, found.1))
 }
 
-fn read_signs(field: &Field, counts: &Counts) -> Result<Vec<(usize, Sign)>, Rejection> {
+pub(crate) fn read_signs(field: &Field, counts: &Counts) -> Result<Vec<(usize, Sign)>, Rejection> {
     field.each(|f| read_signed(f, counts.functions))
 }
 
@@ -283,7 +284,11 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
         field.only(&["inseparable"], "one key")?;
         return Ok(Evidence::Inseparable(read_meeting(&meeting, counts)?));
     }
-    field.only(&["enters"], "evidence: never, enters or inseparable")?;
+    if let Some(region) = field.optional("region") {
+        field.only(&["region"], "one key")?;
+        return Ok(Evidence::Region(read_proof(&region, counts)?));
+    }
+    field.only(&["enters"], "evidence: never, enters, inseparable or region")?;
     let enters = field.get("enters")?;
     enters.only(&["before", "from", "cell"], "evidence for enters: before, from, cell")?;
     Ok(Evidence::Enters {
@@ -293,7 +298,7 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
     })
 }
 
-fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
+pub(crate) fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
     Value::List(items.iter().map(write).collect())
 }
 
@@ -337,7 +342,7 @@ fn write_signed(position: usize, sign: Sign) -> Value {
     Value::Text(format!("{position}:{symbol}"))
 }
 
-fn write_signs(signs: &[(usize, Sign)]) -> Value {
+pub(crate) fn write_signs(signs: &[(usize, Sign)]) -> Value {
     list(signs, |(position, sign)| write_signed(*position, *sign))
 }
 
@@ -412,5 +417,6 @@ fn write_evidence(evidence: &Evidence) -> Value {
             object(vec![("enters", object(fields))])
         }
         Evidence::Inseparable(meeting) => object(vec![("inseparable", write_meeting(meeting))]),
+        Evidence::Region(proof) => object(vec![("region", write_proof(proof))]),
     }
 }

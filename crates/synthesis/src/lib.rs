@@ -11,9 +11,11 @@ mod margin;
 mod options;
 mod outcome;
 mod problem;
+mod region;
 mod search;
 mod strategy;
 
 pub use certify::{certify, certify_eventually};
 pub use options::Options;
 pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};
+pub use region::{RegionFailure, certify_region};

@@ -199,11 +199,11 @@ impl Settled {
                 Claim::Enters { from, to, first: false } => {
                     format!("{}; there may be an earlier entry", bracket(from, to))
                 }
-                Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable => String::new(),
+                Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Eventually { proof }) => match &proof.statement().claim {
                 Claim::Eventually { from } => format!("for good from t = {} on, at the latest", rounded_up(from)),
-                Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable => String::new(),
+                Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Inseparable { .. }) => INSEPARABLE.into(),
             Ok(Outcome::Unsettled { reason, .. }) => format!("{}; {}", reason_words(reason), help_words(reason)),
