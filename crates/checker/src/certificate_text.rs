@@ -178,7 +178,7 @@ fn read_signed(field: &Field, length: usize) -> Result<(usize, Sign), Rejection>
     Ok((position, found.1))
 }
 
-pub(crate) fn read_signs(field: &Field, counts: &Counts) -> Result<Vec<(usize, Sign)>, Rejection> {
+fn read_signs(field: &Field, counts: &Counts) -> Result<Vec<(usize, Sign)>, Rejection> {
     field.each(|f| read_signed(f, counts.functions))
 }
 
@@ -245,17 +245,22 @@ fn read_far_field(field: &Field, counts: &Counts) -> Result<FarField, Rejection>
 fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
     field.only(&["far", "nodes"], "a cone: far, nodes")?;
     let far = read_far_field(&field.get("far")?, counts)?;
-    let nodes = bounded(&field.get("nodes")?, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
+    let nodes = read_nodes(&field.get("nodes")?, far.base.len(), counts)?;
+    Ok(Cone { far, nodes })
+}
+
+/// The bisection of a torus of this dimension.
+pub(crate) fn read_nodes(field: &Field, dimension: usize, counts: &Counts) -> Result<Vec<Node>, Rejection> {
+    bounded(field, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
         Some(axis) => {
             f.only(&["split"], "one key")?;
-            Ok(Node::Split(axis.position(far.base.len())?))
+            Ok(Node::Split(axis.position(dimension)?))
         }
         None => {
             f.only(&["signs", "pivot"], "a leaf: signs, pivot; or split")?;
             Ok(Node::Leaf(read_signs(&f.get("signs")?, counts)?, read_pivot(f, counts)?))
         }
-    })?;
-    Ok(Cone { far, nodes })
+    })
 }
 
 fn read_meeting(field: &Field, counts: &Counts) -> Result<Meeting, Rejection> {
@@ -342,7 +347,7 @@ fn write_signed(position: usize, sign: Sign) -> Value {
     Value::Text(format!("{position}:{symbol}"))
 }
 
-pub(crate) fn write_signs(signs: &[(usize, Sign)]) -> Value {
+fn write_signs(signs: &[(usize, Sign)]) -> Value {
     list(signs, |(position, sign)| write_signed(*position, *sign))
 }
 
@@ -383,15 +388,18 @@ fn write_far_field(far: &FarField) -> Value {
 }
 
 fn write_cone(cone: &Cone) -> Value {
-    let node = |node: &Node| match node {
+    object(vec![("far", write_far_field(&cone.far)), ("nodes", list(&cone.nodes, write_node))])
+}
+
+pub(crate) fn write_node(node: &Node) -> Value {
+    match node {
         Node::Split(axis) => object(vec![("split", text(axis))]),
         Node::Leaf(signs, pivot) => {
             let mut fields = vec![("signs", write_signs(signs))];
             fields.extend(pivot.map(|pivot| ("pivot", text(pivot))));
             object(fields)
         }
-    };
-    object(vec![("far", write_far_field(&cone.far)), ("nodes", list(&cone.nodes, node))])
+    }
 }
 
 fn write_meeting(meeting: &Meeting) -> Value {

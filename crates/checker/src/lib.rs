@@ -36,8 +36,10 @@ pub mod signs;
 pub mod statement;
 pub mod trace;
 
+mod bisection;
 mod certificate_text;
 mod check;
+mod combination;
 mod far_field;
 mod field;
 mod region_text;

@@ -9,6 +9,7 @@
 //! Then exp(mu t) becomes e_mu = y^g_0 u_1^g_1 ... exp(i (n_1 phi_1 + ...)) for its growth g and its turns n, and the set is that of
 //! all points x = sum of P_mu(T) e_mu; a conjugate pair adds 2 Re(P_mu(T) e_mu).
 
+use crate::certificate::Node;
 use crate::number::Rational;
 use crate::statement::{Expression, Statement, Term, Variable};
 use num_traits::One;
@@ -100,15 +101,6 @@ pub struct RegionLead {
     pub power: u32,
 }
 
-/// A step of a bisection of the base angles, in preorder.
-#[derive(Clone, Debug, PartialEq, Eq)]
-pub enum RegionNode {
-    /// The box is halved along this axis; the lower half follows, then the upper half.
-    Split(usize),
-    /// Polynomials of the zone and their signs on the part of the set with angles in the box.
-    Leaf(Vec<(usize, crate::certificate::Sign)>),
-}
-
 /// Evidence that a set is invariant, contains the trajectory, and avoids the zone.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct RegionProof {
@@ -122,8 +114,9 @@ pub struct RegionProof {
     pub angles: Vec<Step>,
     /// For each polynomial whose sign is used.
     pub leads: Vec<RegionLead>,
-    /// The bisection of the base angles.
-    pub nodes: Vec<RegionNode>,
+    /// The bisection of the base angles: polynomials of the zone and their signs on the part of the set with angles in the leaf;
+    /// no pivots.
+    pub nodes: Vec<Node>,
 }
 
 /// The states themselves, as polynomials.

@@ -1,12 +1,12 @@
 //! Sets of starts and the evidence for them as JSON, and sets of starts in plain words.
 
-use crate::certificate_text::{Counts, bounded, list, read_integer, read_signs, write_signs};
+use crate::certificate_text::{Counts, bounded, list, read_integer, read_nodes, write_node};
 use crate::decimal::fraction_and_decimal;
 use crate::error::Rejection;
 use crate::field::Field;
 use crate::json::{Value, object, text};
 use crate::number::Rational;
-use crate::region::{Exponent, NamedRoot, Rate, Reason, Region, RegionLead, RegionNode, RegionProof, Step};
+use crate::region::{Exponent, NamedRoot, Rate, Reason, Region, RegionLead, RegionProof, Step};
 use crate::statement::{Statement, Variable};
 use num_traits::{One, Zero};
 
@@ -101,17 +101,8 @@ pub(crate) fn read_proof(field: &Field, counts: &Counts) -> Result<RegionProof, 
         let function = f.get("function")?.position(counts.functions)?;
         Ok(RegionLead { function, growth: few(f, "growth", Field::rational)?, power })
     })?;
-    let nodes = bounded(&field.get("nodes")?, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
-        Some(axis) => {
-            f.only(&["split"], "one key")?;
-            let dimension = usize::try_from(f.limits().dimension).unwrap_or(usize::MAX);
-            Ok(RegionNode::Split(axis.position(dimension)?))
-        }
-        None => {
-            f.only(&["signs"], "a leaf: signs; or split")?;
-            Ok(RegionNode::Leaf(read_signs(&f.get("signs")?, counts)?))
-        }
-    })?;
+    let dimension = usize::try_from(field.limits().dimension).unwrap_or(usize::MAX);
+    let nodes = read_nodes(&field.get("nodes")?, dimension, counts)?;
     Ok(RegionProof {
         roots: few(field, "roots", |f| f.position(counts.roots))?,
         log_start: field.get("log_start")?.rational()?,
@@ -147,26 +138,20 @@ pub(crate) fn write_proof(proof: &RegionProof) -> Value {
         let growth = list(&lead.growth, |x| text(x));
         object(vec![("function", text(lead.function)), ("growth", growth), ("power", text(lead.power))])
     };
-    let node = |node: &RegionNode| match node {
-        RegionNode::Split(axis) => object(vec![("split", text(axis))]),
-        RegionNode::Leaf(signs) => object(vec![("signs", write_signs(signs))]),
-    };
     object(vec![
         ("roots", list(&proof.roots, |r| text(r))),
         ("log_start", text(&proof.log_start)),
         ("growths", list(&proof.growths, step)),
         ("angles", list(&proof.angles, step)),
         ("leads", list(&proof.leads, lead)),
-        ("nodes", list(&proof.nodes, node)),
+        ("nodes", list(&proof.nodes, write_node)),
     ])
 }
 
-const MEANING: &str = "\
-  Every start in the set S below is safe for ever: whatever point of S the states are at, the solution that starts there is
+const MEANING: &str = "  Every start in the set S below is safe for ever: whatever point of S the states are at, the solution that starts there is
   never in the zone. For no point of S is in the zone, and a solution that is in S stays in S.";
 
-const FORM: &str = "\
-  Definition of S. Write the trajectory as the sum of P_1(t) exp(mu_1 t), P_2(t) exp(mu_2 t), ... and the conjugates of those that
+const FORM: &str = "  Definition of S. Write the trajectory as the sum of P_1(t) exp(mu_1 t), P_2(t) exp(mu_2 t), ... and the conjugates of those that
   are not real, for the exponents mu_k below and polynomials P_k whose coefficients are vectors of complex numbers; there is
   one way to do that. S is the set of all points
     x = sum over k of P_k(T) e_k (mu_k real), of 2 Re(P_k(T) e_k) (mu_k not real)

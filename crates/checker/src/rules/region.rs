@@ -8,31 +8,23 @@
 //! Why: the flow moves a point of the set by phi + omega tau, y exp(scale tau), u_j exp(rho_j tau), T + tau, which the bands allow.
 //! Source: docs/theorems/region.md.
 
+use super::cell::set;
+use crate::bisection::{Leaf, check_leaves};
 use crate::certificate::Factor;
+use crate::combination::{Part, rows};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::expansion::Frame;
-use crate::lead::{AngleBox, LeadForm, halves, whole_torus};
-use crate::limits::{Budget, within};
+use crate::lead::{AngleBox, LeadForm};
+use crate::limits::Budget;
 use crate::model::Setting;
 use crate::number::{Complex, Dyadic, Interval, Rational};
-use crate::region::{Reason, Region, RegionNode, RegionProof, Step};
-use crate::signs::SignSet;
+use crate::region::{Region, RegionProof};
 use num_traits::{Signed, Zero};
 use std::cmp::Ordering;
 use std::collections::BTreeMap;
 
-/// Rows by the position of their root.
-type Rows = BTreeMap<usize, Vec<Rational>>;
-
 /// The leading part of each polynomial that has one; `None`: the polynomial is 0 on the set.
 type Leads = BTreeMap<usize, Option<LeadForm>>;
-
-/// Which part of a root.
-#[derive(Clone, Copy, PartialEq, Eq)]
-enum Part {
-    Real,
-    Imaginary,
-}
 
 /// Checks a set of starts. The certificate's sums have been checked.
 pub(crate) fn check(region: &Region, proof: &RegionProof, on: Setting, budget: &mut Budget) -> Checked {
@@ -45,7 +37,9 @@ pub(crate) fn check(region: &Region, proof: &RegionProof, on: Setting, budget: &
     let unlisted = Duty::new(Rule::Region, Obligation::ExponentsAreListed, 0);
     let frame = Frame::new(region, &proof.roots, table, on.certificate.bits).ok_or_else(|| unlisted.refuted())?;
     let leads = leads(&frame, proof, on, budget)?;
-    check_nodes(region.base.len(), &proof.nodes, &leads, on, budget)
+    check_leaves((region.base.len(), &proof.nodes), Rule::Region, on.limits, |position, angles, leaf| {
+        check_leaf(position, angles, leaf, &leads, on, budget)
+    })
 }
 
 /// Each root of the set is the only one of its polynomial in its rectangle, and real if that is a segment of the real axis.
@@ -100,67 +94,6 @@ fn check_exponents(region: &Region, proof: &RegionProof, on: Setting) -> Checked
         listed.ensure(still || !may_be_zero)?;
     }
     Ok(())
-}
-
-/// Real (imaginary) parts of roots as combinations of the scale and the base rates (of the base frequencies), step by step.
-///
-/// Lemma: a sum n_1 a + n_2 b = r of roots holds for real and imaginary parts, that of a conjugate being the same (the opposite). If
-/// the parts of all but one of a, b, r are known combinations, and this one's total weight is not 0, its part is a combination.
-fn rows(steps: &[Step], part: Part, base: &[usize], scale: &Rational, on: Setting) -> Result<Rows, Rejection> {
-    let obligation = match part {
-        Part::Real => Obligation::RateIsCombination,
-        Part::Imaginary => Obligation::AngleIsCombination,
-    };
-    let shift = usize::from(part == Part::Real);
-    let width = base.len() + shift;
-    let mut known = Rows::new();
-    for step in steps {
-        let duty = Duty::new(Rule::Region, obligation, step.root);
-        let mut unit = vec![Rational::zero(); width];
-        match &step.reason {
-            Reason::Base => {
-                let axis = base.iter().position(|b| *b == step.root).ok_or_else(|| duty.refuted())?;
-                unit.iter_mut()
-                    .skip(axis + shift)
-                    .take(1)
-                    .for_each(|slot| *slot = Rational::from_integer(1_i32.into()));
-                duty.ensure(unit == step.row)?;
-            }
-            Reason::Line(line) => {
-                let on_line = Duty::new(Rule::Equality, Obligation::RootIsOnLine, step.root);
-                let decided = on.model.table.is_on_line(step.root, line, on.certificate.bits);
-                on_line.ensure(decided.ok_or_else(|| on_line.inconclusive())?)?;
-                unit.iter_mut().take(1).for_each(|slot| *slot = line / scale);
-                duty.ensure(part == Part::Real && unit == step.row)?;
-            }
-            Reason::Sum(position) => duty.ensure(follows(step, *position, part, &known, width, on) == Some(true))?,
-        }
-        known.insert(step.root, step.row.clone());
-    }
-    Ok(known)
-}
-
-/// Whether a step's row follows from the sum at a position; `None`: a root's row is not known.
-fn follows(step: &Step, position: usize, part: Part, known: &Rows, width: usize, on: Setting) -> Option<bool> {
-    let sum = on.certificate.sums.get(position)?;
-    let mut weights: BTreeMap<usize, i64> = BTreeMap::new();
-    for (times, root) in sum.parts.iter().copied().chain([(-1, sum.root)]) {
-        let sign = if part == Part::Imaginary && root.conjugate { -1 } else { 1 };
-        let slot = weights.entry(root.index).or_insert(0);
-        *slot = slot.checked_add(times.checked_mul(sign)?)?;
-    }
-    let mut total = vec![Rational::zero(); width];
-    for (index, weight) in &weights {
-        if part == Part::Imaginary && on.model.table.roots().get(*index)?.is_real {
-            continue;
-        }
-        let row = if *index == step.root { &step.row } else { known.get(index)? };
-        for (slot, x) in total.iter_mut().zip(row) {
-            *slot += x * Rational::from_integer((*weight).into());
-        }
-    }
-    let determined = weights.get(&step.root).is_some_and(|w| *w != 0) && step.row.len() == width;
-    Some(determined && total.iter().all(Zero::is_zero))
 }
 
 /// The bands hold the base rates; y and T begin where the trajectory is at `from`; the power bounds T for ever.
@@ -223,37 +156,28 @@ fn leads(frame: &Frame, proof: &RegionProof, on: Setting, budget: &mut Budget) -
     Ok(leads)
 }
 
-/// On each leaf of the bisection the signs hold and refute the zone.
-fn check_nodes(dimension: usize, nodes: &[RegionNode], leads: &Leads, on: Setting, budget: &mut Budget) -> Checked {
-    let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(dimension), 0)];
-    for (position, node) in nodes.iter().enumerate() {
-        let covers = Duty::new(Rule::Region, Obligation::LeavesCoverTorus, position);
-        let (angles, depth) = open.pop().ok_or_else(|| covers.refuted())?;
-        match node {
-            RegionNode::Split(axis) => {
-                within("depth", usize::try_from(depth + 1).unwrap_or(usize::MAX), on.limits.depth)?;
-                let (lower, upper) = halves(&angles, *axis).ok_or_else(|| covers.refuted())?;
-                open.push((upper, depth + 1));
-                open.push((lower, depth + 1));
-            }
-            RegionNode::Leaf(listed) => {
-                let on_leaf = Duty::new(Rule::Region, Obligation::SignOnLeaf, position);
-                let mut signs = on.no_signs();
-                for (index, sign) in listed {
-                    match leads.get(index).ok_or_else(|| on_leaf.refuted())? {
-                        None => on_leaf.ensure(*sign == Ordering::Equal)?,
-                        Some(form) => {
-                            budget.spend(200 * form.count(), on.certificate.bits)?;
-                            let value = form.enclose(&angles).ok_or_else(|| on_leaf.inconclusive())?;
-                            on_leaf.sign(&value, *sign)?;
-                        }
-                    }
-                    signs.iter_mut().skip(*index).take(1).for_each(|slot| *slot = SignSet::only(*sign));
-                }
-                let refuted = on.model.formula.truth(&signs) == Some(false);
-                Duty::new(Rule::Region, Obligation::ZoneIsRefutedOnLeaf, position).ensure(refuted)?;
+/// On a leaf of the bisection the signs hold and refute the zone.
+fn check_leaf(
+    position: usize,
+    angles: &AngleBox,
+    (listed, pivot): Leaf,
+    leads: &Leads,
+    on: Setting,
+    budget: &mut Budget,
+) -> Checked {
+    let on_leaf = Duty::new(Rule::Region, Obligation::SignOnLeaf, position);
+    let mut signs = on.no_signs();
+    for (index, sign) in listed {
+        match leads.get(index).ok_or_else(|| on_leaf.refuted())? {
+            None => on_leaf.ensure(*sign == Ordering::Equal)?,
+            Some(form) => {
+                budget.spend(200 * form.count(), on.certificate.bits)?;
+                on_leaf.sign(&form.enclose(angles).ok_or_else(|| on_leaf.inconclusive())?, *sign)?;
             }
         }
+        set(&mut signs, *index, *sign);
     }
-    Duty::new(Rule::Region, Obligation::LeavesCoverTorus, nodes.len()).ensure(open.is_empty())
+    // The formula alone, without the certificate's identities.
+    let refuted = pivot.is_none() && on.model.formula.truth(&signs) == Some(false);
+    Duty::new(Rule::Region, Obligation::ZoneIsRefutedOnLeaf, position).ensure(refuted)
 }

@@ -9,12 +9,12 @@ use crate::options::Options;
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, approx_dyadic, common_line, first_start, widest};
 use crate::strategy::pivot::simplest_between;
-use keepout_checker::certificate::{Certificate, Evidence, Factor, RootRef, Sign};
+use keepout_checker::certificate::{Certificate, Evidence, Factor, Node, RootRef, Sign};
 use keepout_checker::expansion::{Expansion, Frame};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::limits::Budget;
 use keepout_checker::number::{Complex, Interval, Rational};
-use keepout_checker::region::{Exponent, NamedRoot, Rate, Reason, Region, RegionLead, RegionNode, RegionProof, Step};
+use keepout_checker::region::{Exponent, NamedRoot, Rate, Reason, Region, RegionLead, RegionProof, Step};
 use keepout_checker::statement::{Claim, Statement};
 use keepout_core::ToRational;
 use num_bigint::BigInt;
@@ -26,8 +26,8 @@ use std::collections::BTreeMap;
 /// Why no set was found.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum RegionFailure {
-    /// The statement has known inputs, or its zone names the time.
-    NotAutonomous,
+    /// The statement has known inputs, or its zone names the time or an exponential.
+    NotOfStates,
     /// The window has an end.
     WindowEnds,
     /// The states' exponents could not be separated or written as combinations.
@@ -58,8 +58,8 @@ pub(crate) fn find(statement: &Statement, options: &Options, effort: &mut u64) -
     if statement.zone.until.is_some() {
         return Err(RegionFailure::WindowEnds);
     }
-    if !statement.drives.is_empty() {
-        return Err(RegionFailure::NotAutonomous);
+    if !statement.drives.is_empty() || !statement.exponentials.is_empty() {
+        return Err(RegionFailure::NotOfStates);
     }
     let mut failure = RegionFailure::Exponents;
     for bits in BITS.into_iter().filter(|bits| *bits <= options.max_bits.max(BITS[0])) {
@@ -68,7 +68,7 @@ pub(crate) fn find(statement: &Statement, options: &Options, effort: &mut u64) -
             Err(found) => failure = found,
             Ok(certificate) => return Ok(certificate),
         }
-        if failure == RegionFailure::Effort || failure == RegionFailure::NotAutonomous {
+        if failure == RegionFailure::Effort || failure == RegionFailure::NotOfStates {
             break;
         }
     }
@@ -209,13 +209,7 @@ impl Draft {
         positions
     }
 
-    fn certificate(
-        self,
-        region: Region,
-        log_start: Rational,
-        leads: Vec<RegionLead>,
-        nodes: Vec<RegionNode>,
-    ) -> Certificate {
+    fn certificate(self, region: Region, log_start: Rational, leads: Vec<RegionLead>, nodes: Vec<Node>) -> Certificate {
         let roots = self.positions();
         let claim = Claim::Region(Box::new(region));
         let angle = |a: &keepout_checker::certificate::Angle| Step {
@@ -482,7 +476,7 @@ impl<'a> Attempt<'a> {
         for (function, polynomial) in problem.formula.polynomials.iter().take(zone).enumerate() {
             let limits = enclosure.limits();
             let expanded = frame.expand(polynomial, &problem.statement, &coordinates, limits, &mut budget);
-            let expansion = expanded.map_err(|_| RegionFailure::Effort)?.ok_or(RegionFailure::NotAutonomous)?;
+            let expansion = expanded.map_err(|_| RegionFailure::Effort)?.ok_or(RegionFailure::NotOfStates)?;
             let expansion = frame.without_zeros(&expansion, &enclosure.forms[function], &mut budget);
             let expansion = expansion.map_err(|_| RegionFailure::Effort)?;
             attempt.zeros.push(expansion.is_empty());
@@ -496,7 +490,7 @@ impl<'a> Attempt<'a> {
     }
 
     /// A bisection with the zone false on each leaf; `None`: the zone may meet the set.
-    fn bisected(&self, effort: &mut u64) -> Result<Option<Vec<RegionNode>>, RegionFailure> {
+    fn bisected(&self, effort: &mut u64) -> Result<Option<Vec<Node>>, RegionFailure> {
         let mut nodes = Vec::new();
         let mut open = vec![(whole_torus(self.draft.plan.base.len()), 0_u64)];
         while let Some((angles, depth)) = open.pop() {
@@ -510,7 +504,7 @@ impl<'a> Attempt<'a> {
             *effort -= 1;
             let signs = self.signs(&angles);
             if self.is_refuted(&signs) {
-                nodes.push(RegionNode::Leaf(self.needed(signs)));
+                nodes.push(Node::Leaf(self.needed(signs), None));
                 continue;
             }
             let centre: AngleBox = angles.iter().map(|(c, _)| (c.clone(), Rational::zero())).collect();
@@ -519,7 +513,7 @@ impl<'a> Attempt<'a> {
             let Some((lower, upper)) = halves(&angles, axis) else { return Ok(None) };
             open.push((upper, depth + 1));
             open.push((lower, depth + 1));
-            nodes.push(RegionNode::Split(axis));
+            nodes.push(Node::Split(axis));
         }
         Ok(Some(nodes))
     }
