@@ -7,6 +7,7 @@
 
 mod certify;
 mod enclosure;
+mod explicit;
 mod margin;
 mod options;
 mod outcome;
@@ -16,6 +17,7 @@ mod search;
 mod strategy;
 
 pub use certify::{certify, certify_eventually};
+pub use explicit::{ExplicitSet, SetFormula, SetPolynomial, SetVariable, explicit};
 pub use options::Options;
 pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};
 pub use region::{RegionFailure, certify_region};
