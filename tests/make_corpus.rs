@@ -248,7 +248,7 @@ fn cells(c: &mut Certificate) -> &mut Vec<Cell> {
     match &mut c.evidence {
         Evidence::Never { cells, .. } => cells,
         Evidence::Enters { before, .. } => before,
-        Evidence::Inseparable(_) => panic!("no cells"),
+        Evidence::Inseparable(_) | Evidence::Region(_) => panic!("no cells"),
     }
 }
 

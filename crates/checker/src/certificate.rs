@@ -5,6 +5,7 @@
 
 use crate::number::{Dyadic, Rational};
 use crate::polynomial::Polynomial;
+use crate::region::RegionProof;
 use crate::statement::Statement;
 use std::cmp::Ordering;
 
@@ -193,6 +194,8 @@ pub enum Evidence {
     },
     /// For `inseparable`.
     Inseparable(Meeting),
+    /// For `region`.
+    Region(RegionProof),
 }
 
 /// Evidence for one statement.
@@ -204,7 +207,8 @@ pub struct Certificate {
     pub bits: u32,
     /// Roots of polynomials; all roots of all families are distinct.
     pub families: Vec<RootFamily>,
-    /// For each distinct polynomial of the (widened) zone, in order of appearance: the factors of an annihilator.
+    /// For each distinct polynomial of the (widened) zone, in order of appearance: the factors of an annihilator. For the claim
+    /// `region` then the same for each state.
     pub traces: Vec<Vec<Factor>>,
     /// Further functions. A position of a function counts the traces first, then these.
     pub auxiliaries: Vec<Auxiliary>,

@@ -9,6 +9,7 @@ use crate::field::{Field, dyadic_text};
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::polynomial::Polynomial;
+use crate::region_text::{read_proof, write_proof};
 use crate::statement_text::read_statement;
 use num_traits::Signed;
 use std::cmp::Ordering;
@@ -96,18 +97,18 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
 }
 
 /// The lengths of the lists that positions refer to.
-struct Counts {
-    functions: usize,
-    roots: usize,
-    sums: usize,
+pub(crate) struct Counts {
+    pub(crate) functions: usize,
+    pub(crate) roots: usize,
+    pub(crate) sums: usize,
 }
 
-fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
+pub(crate) fn bounded<'a>(field: &Field<'a>, limit: &'static str, max: u64) -> Result<Field<'a>, Rejection> {
     within(limit, field.list()?.len(), max)?;
     Ok(Field::clone(field))
 }
 
-fn read_integer(field: &Field) -> Result<i64, Rejection> {
+pub(crate) fn read_integer(field: &Field) -> Result<i64, Rejection> {
     let value: i64 = field.text()?.parse().map_err(|_| field.refuse("a small integer"))?;
     let bits = usize::try_from(u64::BITS - value.unsigned_abs().leading_zeros()).unwrap_or(usize::MAX);
     within("multiplier_bits", bits, field.limits().multiplier_bits)?;
@@ -244,17 +245,22 @@ fn read_far_field(field: &Field, counts: &Counts) -> Result<FarField, Rejection>
 fn read_cone(field: &Field, counts: &Counts) -> Result<Cone, Rejection> {
     field.only(&["far", "nodes"], "a cone: far, nodes")?;
     let far = read_far_field(&field.get("far")?, counts)?;
-    let nodes = bounded(&field.get("nodes")?, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
+    let nodes = read_nodes(&field.get("nodes")?, far.base.len(), counts)?;
+    Ok(Cone { far, nodes })
+}
+
+/// The bisection of a torus of this dimension.
+pub(crate) fn read_nodes(field: &Field, dimension: usize, counts: &Counts) -> Result<Vec<Node>, Rejection> {
+    bounded(field, "nodes", field.limits().nodes)?.each(|f| match f.optional("split") {
         Some(axis) => {
             f.only(&["split"], "one key")?;
-            Ok(Node::Split(axis.position(far.base.len())?))
+            Ok(Node::Split(axis.position(dimension)?))
         }
         None => {
             f.only(&["signs", "pivot"], "a leaf: signs, pivot; or split")?;
             Ok(Node::Leaf(read_signs(&f.get("signs")?, counts)?, read_pivot(f, counts)?))
         }
-    })?;
-    Ok(Cone { far, nodes })
+    })
 }
 
 fn read_meeting(field: &Field, counts: &Counts) -> Result<Meeting, Rejection> {
@@ -283,7 +289,11 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
         field.only(&["inseparable"], "one key")?;
         return Ok(Evidence::Inseparable(read_meeting(&meeting, counts)?));
     }
-    field.only(&["enters"], "evidence: never, enters or inseparable")?;
+    if let Some(region) = field.optional("region") {
+        field.only(&["region"], "one key")?;
+        return Ok(Evidence::Region(read_proof(&region, counts)?));
+    }
+    field.only(&["enters"], "evidence: never, enters, inseparable or region")?;
     let enters = field.get("enters")?;
     enters.only(&["before", "from", "cell"], "evidence for enters: before, from, cell")?;
     Ok(Evidence::Enters {
@@ -293,7 +303,7 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
     })
 }
 
-fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
+pub(crate) fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
     Value::List(items.iter().map(write).collect())
 }
 
@@ -378,15 +388,18 @@ fn write_far_field(far: &FarField) -> Value {
 }
 
 fn write_cone(cone: &Cone) -> Value {
-    let node = |node: &Node| match node {
+    object(vec![("far", write_far_field(&cone.far)), ("nodes", list(&cone.nodes, write_node))])
+}
+
+pub(crate) fn write_node(node: &Node) -> Value {
+    match node {
         Node::Split(axis) => object(vec![("split", text(axis))]),
         Node::Leaf(signs, pivot) => {
             let mut fields = vec![("signs", write_signs(signs))];
             fields.extend(pivot.map(|pivot| ("pivot", text(pivot))));
             object(fields)
         }
-    };
-    object(vec![("far", write_far_field(&cone.far)), ("nodes", list(&cone.nodes, node))])
+    }
 }
 
 fn write_meeting(meeting: &Meeting) -> Value {
@@ -412,5 +425,6 @@ fn write_evidence(evidence: &Evidence) -> Value {
             object(vec![("enters", object(fields))])
         }
         Evidence::Inseparable(meeting) => object(vec![("inseparable", write_meeting(meeting))]),
+        Evidence::Region(proof) => object(vec![("region", write_proof(proof))]),
     }
 }

@@ -4,7 +4,7 @@ use crate::certificate::{Certificate, Evidence};
 use crate::error::{Duty, Obligation, Rejection, Rule};
 use crate::limits::{Budget, Limits};
 use crate::model::{Model, Setting};
-use crate::rules::{cone, cover, entry, equality, inseparable};
+use crate::rules::{cone, cover, entry, equality, inseparable, region};
 use crate::statement::{Claim, Statement};
 
 /// A statement that has been proved. Only [`check`] makes one.
@@ -73,7 +73,13 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
             fits.ensure(zone.until.is_none())?;
             inseparable::check(meeting, on, &mut budget)?;
         }
-        (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_)) => return Err(fits.refuted()),
+        (Claim::Region(set), Evidence::Region(proof)) => {
+            fits.ensure(zone.until.is_none() && statement.drives.is_empty())?;
+            region::check(set, proof, on, &mut budget)?;
+        }
+        (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_) | Evidence::Region(_)) => {
+            return Err(fits.refuted());
+        }
     }
     Ok(Verified { statement: statement.clone() })
 }

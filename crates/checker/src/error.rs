@@ -18,6 +18,8 @@ pub enum Rule {
     Entry,
     /// A point of each trajectory cone in the zone.
     Inseparable,
+    /// A set of starts that is invariant and avoids the zone.
+    Region,
 }
 
 /// The side conditions of the proof rules: one variant each.
@@ -73,6 +75,22 @@ pub enum Obligation {
     PivotChangesSign,
     /// The signs prove the zone at the instant.
     ZoneIsProvedAtInstant,
+    /// A root of the set is the only root of its polynomial in its rectangle.
+    RootIsNamed,
+    /// The real part of a root is the said combination of the base rates.
+    RateIsCombination,
+    /// A base rate lies in its band.
+    RateIsInBand,
+    /// The exponents of the trajectory are listed, each once, and a constant is not made to grow or turn.
+    ExponentsAreListed,
+    /// The set begins where the trajectory is at `from`.
+    SetContainsTrajectory,
+    /// The power of y bounds T from `from` on.
+    PowerBoundsTime,
+    /// The zone's polynomials are polynomials in the states.
+    ZoneIsOfStates,
+    /// A polynomial of the zone is led by the said growth on the set.
+    LeadDominates,
     /// The evidence is of the kind that the claim needs.
     EvidenceFitsClaim,
 }
@@ -185,6 +203,7 @@ impl fmt::Display for Rule {
             Self::Cone => "cone",
             Self::Entry => "entry",
             Self::Inseparable => "inseparable",
+            Self::Region => "region",
         })
     }
 }
@@ -219,6 +238,14 @@ impl fmt::Display for Obligation {
             Self::InstantIsInWindow => "the instant lies in the window and in the claimed bracket",
             Self::PivotChangesSign => "pivot {} has opposite signs at the ends",
             Self::ZoneIsProvedAtInstant => "the signs prove the zone at the instant",
+            Self::RootIsNamed => "root {} of the set is the only root of its polynomial in its rectangle",
+            Self::RateIsCombination => "the real part of root {} is the listed combination",
+            Self::RateIsInBand => "base rate {} lies in its band",
+            Self::ExponentsAreListed => "the exponents of state {} are listed, each once, and a constant stays one",
+            Self::SetContainsTrajectory => "the set contains the trajectory from its start on",
+            Self::PowerBoundsTime => "the power of y bounds T from the start on",
+            Self::ZoneIsOfStates => "polynomial {} of the zone is one in the states",
+            Self::LeadDominates => "polynomial {} of the zone is led by the listed growth on the set",
             Self::EvidenceFitsClaim => "the evidence is of the kind that the claim needs",
         })
     }

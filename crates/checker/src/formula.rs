@@ -1,6 +1,7 @@
 //! Zones with signs not fully known: three-valued evaluation of a formula in negation normal form.
 
 use crate::certificate::Sign;
+use crate::region::coordinates;
 use crate::signs::SignSet;
 use crate::statement::{Atom, Claim, Expression, Formula, Rational, Relation, Statement, Term};
 use num_traits::{Signed, Zero};
@@ -28,6 +29,16 @@ impl IndexedFormula {
         let mut polynomials = Vec::new();
         let shape = number(formula, &mut polynomials);
         Self { shape, polynomials }
+    }
+
+    /// The formula that a statement's claim is about; for a set of starts, the states follow as further polynomials. `None`: see
+    /// [`claimed_formula`].
+    pub fn claimed(statement: &Statement) -> Option<Self> {
+        let mut formula = Self::new(&claimed_formula(statement)?);
+        if let Claim::Region(_) = statement.claim {
+            formula.polynomials.extend(coordinates(statement));
+        }
+        Some(formula)
     }
 
     /// The truth of the formula where it follows from the possible signs alone; `None`: it does not.

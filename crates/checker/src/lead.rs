@@ -79,6 +79,12 @@ impl LeadForm {
         Ok(lead)
     }
 
+    /// The sum of these waves, each with coefficient and turns and weight 1, and of a rest with this bound.
+    pub fn of_waves(waves: Vec<(Complex, Vec<i64>)>, rest: Dyadic, bits: u32) -> Self {
+        let waves = waves.into_iter().map(|(coefficient, turns)| Wave { coefficient, turns }).collect();
+        Self { waves, rest, bits }
+    }
+
     /// Encloses f + r on a box of angles, for all times from t0 on.
     ///
     /// f(phi) = f(c) + grad f(c) . d + R, |R| <= 1/2 sum |coefficient| (sum_j |n_j| r_j)^2 for |d_j| <= r_j (Taylor, Lagrange).

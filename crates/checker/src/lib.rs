@@ -1,15 +1,15 @@
 //! The trusted part of Keepout.
 //!
 //! **Promise.** If [`check`] returns a [`Verified`], then the claim of its statement is true: of the one solution of the
-//! statement's differential equation that has the statement's start, driven by exactly the statement's known inputs. The exact
-//! meaning of a claim stands at [`statement::Claim`].
+//! statement's differential equation that has the statement's start, driven by exactly the statement's known inputs (for the claim
+//! `region`: of all solutions with starts in its set, too). The exact meaning of a claim stands at [`statement::Claim`].
 //!
 //! **Assumptions.** That the lines of this crate do what their comments say; that `num-bigint`, `num-integer`,
 //! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
 //! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
 //!
-//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `range`, `sequence`,
-//! `formula`, `exponential`, `signs`, `number/`;
+//! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `range`, `region`,
+//! `expansion`, `sequence`, `formula`, `exponential`, `signs`, `number/`;
 //! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `field`, `json` read and write texts.
 
 pub use check::{Verified, check};
@@ -19,6 +19,7 @@ pub use limits::Limits;
 pub mod certificate;
 pub mod decimal;
 pub mod error;
+pub mod expansion;
 pub mod exponential;
 pub mod formula;
 pub mod json;
@@ -28,16 +29,20 @@ pub mod model;
 pub mod number;
 pub mod polynomial;
 pub mod range;
+pub mod region;
 pub mod root;
 pub mod sequence;
 pub mod signs;
 pub mod statement;
 pub mod trace;
 
+mod bisection;
 mod certificate_text;
 mod check;
+mod combination;
 mod far_field;
 mod field;
+mod region_text;
 mod rules;
 mod statement_text;
 mod words;

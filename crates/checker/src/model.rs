@@ -5,7 +5,7 @@
 use crate::certificate::{Certificate, Factor, Identity};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::exponential::products;
-use crate::formula::{IndexedFormula, claimed_formula};
+use crate::formula::IndexedFormula;
 use crate::limits::{Budget, Limits, within};
 use crate::number::Rational;
 use crate::root::RootTable;
@@ -75,8 +75,7 @@ impl Model {
     /// The first obligation that is not met.
     pub fn new(certificate: &Certificate, limits: &Limits, budget: &mut Budget) -> Result<Self, Rejection> {
         let fits = Duty::new(Rule::Trace, Obligation::EvidenceFitsClaim, 0);
-        let formula = claimed_formula(&certificate.statement).ok_or_else(|| fits.refuted())?;
-        let formula = IndexedFormula::new(&formula);
+        let formula = IndexedFormula::claimed(&certificate.statement).ok_or_else(|| fits.refuted())?;
         let exponentials = &certificate.statement.exponentials;
         let split: Vec<_> = formula.polynomials.iter().map(|p| products(p, exponentials)).collect();
         let atoms = formula.polynomials.len();

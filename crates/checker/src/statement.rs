@@ -3,6 +3,7 @@
 //! A statement is the engineer's own declaration, over the names that the engineer gave. Nothing in it is
 //! derived: drives are not yet states, outputs are not yet substituted. All numbers are exact rationals.
 
+use crate::region::Region;
 use num_rational::BigRational;
 
 /// An exact rational number.
@@ -204,6 +205,10 @@ pub enum Claim {
     /// from some instant on, and avoids the zone exists (doi:10.4230/LIPIcs.ICALP.2020.107). It does not say that the
     /// trajectory enters the zone, nor that it does not. Only for windows without an end.
     Inseparable,
+    /// Every start in a set (see [`crate::region`]) is safe for ever: no point of the set is in the zone; a solution that starts in
+    /// the set stays in it; and the set contains the trajectory at each t >= from. Only for statements without known inputs,
+    /// zones that do not name the time, and windows without an end.
+    Region(Box<Region>),
 }
 
 /// A claim about a system: what a certificate is evidence for.

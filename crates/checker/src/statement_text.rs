@@ -4,6 +4,7 @@ use crate::error::Rejection;
 use crate::field::Field;
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
+use crate::region_text::{read_region, write_region};
 use crate::statement::{
     Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State,
     Statement, Term, Variable, Wave, Zone,
@@ -253,7 +254,11 @@ fn read_claim(field: &Field) -> Result<Claim, Rejection> {
         inseparable.only(&[], "inseparable: no key")?;
         return Ok(Claim::Inseparable);
     }
-    field.only(&["enters"], "a claim: never, enters, eventually or inseparable")?;
+    if let Some(region) = field.optional("region") {
+        field.only(&["region"], "one key")?;
+        return Ok(Claim::Region(Box::new(read_region(&region)?)));
+    }
+    field.only(&["enters"], "a claim: never, enters, eventually, inseparable or region")?;
     let enters = field.get("enters")?;
     enters.only(&["from", "to", "first"], "enters: from, to, first")?;
     let (from, to) = (enters.get("from")?.rational()?, enters.get("to")?.rational()?);
@@ -352,6 +357,7 @@ fn write_statement(s: &Statement) -> Value {
         )]),
         Claim::Eventually { from } => object(vec![("eventually", object(vec![("from", text(from))]))]),
         Claim::Inseparable => object(vec![("inseparable", object(Vec::new()))]),
+        Claim::Region(region) => object(vec![("region", write_region(region))]),
     };
     let mut fields = vec![
         ("format", text(STATEMENT_FORMAT)),

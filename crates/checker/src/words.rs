@@ -19,6 +19,13 @@ All numbers are exact. A decimal in parentheses repeats the number before it; wh
 fraction counts. t is time, counted from 0 in the unit of the model; x' is the derivative of x with respect to t.
 ";
 
+const REGION_PREFACE: &str = "\
+This statement speaks of all solutions of the equations below that start in a set, which the claim defines from one of them, the
+trajectory: the solution from exactly the start below. It does not say whether the equations describe the plant. All numbers
+are exact. A decimal in parentheses repeats the number before it; where it says \"about\" it is cut off, and the fraction
+counts. t is time, counted from 0 in the unit of the model; x' is the derivative of x with respect to t.
+";
+
 const INSEPARABLE: &str = "\
   The trajectory cone from each instant on meets the zone: some phases of the oscillations, to which the trajectory comes
   arbitrarily close, would put it into the zone, at each large t. So no invariant of the o-minimal kind (defined by polynomials
@@ -32,7 +39,9 @@ impl Statement {
     /// All that decides the truth of the claim is printed, and nothing is rounded without the exact number beside it.
     pub fn words(&self) -> String {
         let mut lines = vec![format!("Model: {}", quoted(&self.title)), String::new()];
-        lines.extend(PREFACE.lines().map(str::to_string));
+        let is_region = matches!(self.claim, Claim::Region(_));
+        let preface = if is_region { REGION_PREFACE } else { PREFACE };
+        lines.extend(preface.lines().map(str::to_string));
         self.start_lines(&mut lines);
         self.equation_lines(&mut lines);
         self.input_lines(&mut lines);
@@ -79,8 +88,9 @@ impl Statement {
     fn zone_lines(&self, lines: &mut Vec<String>) {
         let zone = &self.zone;
         let reference = zone.reference.as_ref().map_or(String::new(), |r| format!(", from requirement {}", quoted(r)));
+        let subject = if matches!(self.claim, Claim::Region(_)) { "A solution" } else { "The trajectory" };
         let title = format!(
-            "Keep-out zone {}{reference}. The trajectory is in the zone at an instant t if and only if at t:",
+            "Keep-out zone {}{reference}. {subject} is in the zone at an instant t if and only if at t:",
             quoted(&zone.name)
         );
         section(lines, &title);
@@ -140,6 +150,7 @@ impl Statement {
                 lines.push("  comes arbitrarily close to. Nothing is said about earlier instants.".into());
             }
             Claim::Inseparable => lines.extend(INSEPARABLE.lines().map(str::to_string)),
+            Claim::Region(region) => self.region_lines(region, lines),
         }
     }
 

@@ -6,3 +6,4 @@ pub mod expression;
 pub mod matrix_market;
 pub mod model;
 pub mod number;
+pub mod set;

@@ -7,13 +7,17 @@
 
 mod certify;
 mod enclosure;
+mod explicit;
 mod margin;
 mod options;
 mod outcome;
 mod problem;
+mod region;
 mod search;
 mod strategy;
 
 pub use certify::{certify, certify_eventually};
+pub use explicit::{ExplicitSet, SetFormula, SetPolynomial, SetVariable, explicit};
 pub use options::Options;
 pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};
+pub use region::{RegionFailure, certify_region};

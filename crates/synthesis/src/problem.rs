@@ -5,7 +5,7 @@ use keepout_checker::Limits;
 use keepout_checker::certificate::{Auxiliary, Factor, Identity, Sign};
 use keepout_checker::error::Rejection;
 use keepout_checker::exponential::products;
-use keepout_checker::formula::{IndexedFormula, claimed_formula};
+use keepout_checker::formula::IndexedFormula;
 use keepout_checker::limits::Budget;
 use keepout_checker::number::Rational;
 use keepout_checker::sequence::{Flow, Sequence};
@@ -36,8 +36,8 @@ impl Problem {
     /// Analyses a statement with a given claim. The claim's margin is one that fits the zone.
     pub(crate) fn new(statement: &Statement, claim: Claim, limits: &Limits) -> Result<Self, Rejection> {
         let statement = Statement { claim, ..statement.clone() };
-        let zone = claimed_formula(&statement).unwrap_or_else(|| statement.zone.inside.clone());
-        let formula = IndexedFormula::new(&zone);
+        let formula =
+            IndexedFormula::claimed(&statement).unwrap_or_else(|| IndexedFormula::new(&statement.zone.inside));
         let flow = Flow::new(&statement, limits);
         let mut budget = Budget::new(limits);
         let (products, parts) = split(&formula, &statement);

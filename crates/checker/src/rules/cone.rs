@@ -9,37 +9,27 @@
 //! Source: doi:10.4230/LIPIcs.ICALP.2020.107, docs/theorems/cone.md.
 
 use super::cell::{Cases, set};
-use crate::certificate::{Cone, Node, Sign};
+use crate::bisection::{Leaf, check_leaves};
+use crate::certificate::Cone;
 use crate::error::{Checked, Duty, Obligation, Rule};
 use crate::far_field::Leads;
-use crate::lead::{AngleBox, halves, whole_torus};
-use crate::limits::{Budget, within};
+use crate::lead::AngleBox;
+use crate::limits::Budget;
 use crate::model::Setting;
 
 /// Checks that the zone is false for all t >= cone.far.from. The certificate's sums have been checked.
 pub(crate) fn check(cone: &Cone, on: Setting, budget: &mut Budget) -> Checked {
     let leads = Leads::new(&cone.far, Rule::Cone, on, budget)?;
-    let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(cone.far.base.len()), 0)];
-    for (position, node) in cone.nodes.iter().enumerate() {
-        let covers = Duty::new(Rule::Cone, Obligation::LeavesCoverTorus, position);
-        let (angles, depth) = open.pop().ok_or_else(|| covers.refuted())?;
-        match node {
-            Node::Split(axis) => {
-                within("depth", usize::try_from(depth + 1).unwrap_or(usize::MAX), on.limits.depth)?;
-                let (lower, upper) = halves(&angles, *axis).ok_or_else(|| covers.refuted())?;
-                open.push((upper, depth + 1));
-                open.push((lower, depth + 1));
-            }
-            Node::Leaf(signs, pivot) => check_leaf(position, &angles, (signs, *pivot), &leads, on, budget)?,
-        }
-    }
-    Duty::new(Rule::Cone, Obligation::LeavesCoverTorus, cone.nodes.len()).ensure(open.is_empty())
+    let torus = (cone.far.base.len(), cone.nodes.as_slice());
+    check_leaves(torus, Rule::Cone, on.limits, |position, angles, leaf| {
+        check_leaf(position, angles, leaf, &leads, on, budget)
+    })
 }
 
 fn check_leaf(
     position: usize,
     angles: &AngleBox,
-    (listed, pivot): (&[(usize, Sign)], Option<usize>),
+    (listed, pivot): Leaf,
     leads: &Leads,
     on: Setting,
     budget: &mut Budget,

@@ -6,3 +6,4 @@ pub(crate) mod cover;
 pub(crate) mod entry;
 pub(crate) mod equality;
 pub(crate) mod inseparable;
+pub(crate) mod region;

@@ -1,7 +1,7 @@
 //! `keepout certify`: settles the zones of a model and writes the evidence.
 
 use super::progress::Progress;
-use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, loaded, print};
+use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, invariant, loaded, print};
 use crate::diagnostic::nearest;
 use crate::model::{Model, Need};
 use crate::number::{decimal, for_people, to_decimal};
@@ -25,6 +25,10 @@ pub struct Arguments {
     /// Write statement and certificate of each settled zone into this folder
     #[arg(long, value_name = "DIR")]
     pub out: Option<PathBuf>,
+    /// For each zone that is clear for all time, look for a set of states around the trajectory from which every start is
+    /// safe for ever, and write it into this folder: as polynomial inequalities (JSON, SMT-LIB 2, text) and with evidence
+    #[arg(long, value_name = "DIR")]
+    pub invariant: Option<PathBuf>,
     /// Print one JSON object instead of text
     #[arg(long)]
     pub json: bool,
@@ -54,8 +58,11 @@ pub fn run(arguments: &Arguments) -> u8 {
         .map(|zone| {
             let statement = model.statement(zone);
             let outcome = settle(&statement, &options, arguments.eventually);
+            let is_safe = matches!(outcome, Ok(Outcome::Clear { .. } | Outcome::Eventually { .. }));
+            let wanted = arguments.invariant.is_some() && is_safe && statement.zone.until.is_none();
+            let set = wanted.then(|| invariant::find(&statement, &options));
             progress.one_done();
-            Settled { statement, outcome }
+            Settled { statement, outcome, set }
         })
         .collect();
     drop(progress);
@@ -64,6 +71,14 @@ pub fn run(arguments: &Arguments) -> u8 {
     {
         complain(&format!("{message}\n"));
         return WRONG;
+    }
+    if let Some(folder) = &arguments.invariant {
+        let written =
+            |s: &Settled| s.set.iter().try_for_each(|set| invariant::write(set, &s.statement.zone.name, folder));
+        if let Err(message) = settled.iter().try_for_each(written) {
+            complain(&format!("{message}\n"));
+            return WRONG;
+        }
     }
     let is = |word: &str| settled.iter().any(|s| s.verdict() == word);
     let status = match (is("enters"), is("unsettled") || is("inseparable")) {
@@ -112,6 +127,8 @@ fn chosen(model: &Model, names: &[String]) -> Result<Vec<usize>, String> {
 struct Settled {
     statement: Statement,
     outcome: Result<Outcome, String>,
+    /// A set of safe starts, if one was asked for and the zone is clear.
+    set: Option<Result<Proof, String>>,
 }
 
 impl Settled {
@@ -162,6 +179,9 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
     for zone in settled {
         let name = &zone.statement.zone.name;
         let _ = writeln!(text, "  {name:width$}  {:verdict_width$}  {}", zone.verdict(), zone.in_words());
+        if let Some(set) = &zone.set {
+            let _ = writeln!(text, "  {:width$}  {:verdict_width$}  {}", "", "", invariant::in_words(set));
+        }
     }
     if let Some(folder) = out {
         let _ = writeln!(text, "evidence in {}; to re-check one zone:", folder.display());
@@ -199,11 +219,11 @@ impl Settled {
                 Claim::Enters { from, to, first: false } => {
                     format!("{}; there may be an earlier entry", bracket(from, to))
                 }
-                Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable => String::new(),
+                Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Eventually { proof }) => match &proof.statement().claim {
                 Claim::Eventually { from } => format!("for good from t = {} on, at the latest", rounded_up(from)),
-                Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable => String::new(),
+                Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Inseparable { .. }) => INSEPARABLE.into(),
             Ok(Outcome::Unsettled { reason, .. }) => format!("{}; {}", reason_words(reason), help_words(reason)),
@@ -368,6 +388,20 @@ impl Settled {
                 fields.insert("would_help".into(), json!(help_words(reason).trim_start_matches("what would help: ")));
             }
         }
+        match &self.set {
+            Some(Ok(proof)) => drop(fields.insert("set".into(), set_value(proof))),
+            Some(Err(reason)) => drop(fields.insert("no_set".into(), json!(reason))),
+            None => {}
+        }
         Value::Object(fields)
+    }
+}
+
+fn set_value(proof: &Proof) -> Value {
+    match &proof.statement().claim {
+        Claim::Region(region) => {
+            json!({ "from": region.from.to_string(), "from_decimal": decimal_value(&region.from) })
+        }
+        Claim::Never { .. } | Claim::Enters { .. } | Claim::Eventually { .. } | Claim::Inseparable => Value::Null,
     }
 }

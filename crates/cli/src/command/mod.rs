@@ -3,6 +3,7 @@
 //! Results go to standard output, progress and messages to standard error.
 
 pub mod certify;
+mod invariant;
 mod progress;
 pub mod spectrum;
 

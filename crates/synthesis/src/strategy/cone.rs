@@ -52,6 +52,16 @@ impl Plan {
         Self::for_functions(&all, problem, enclosure)
     }
 
+    /// Plans the angles of these roots alone.
+    pub(crate) fn for_roots(roots: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
+        // `find_angles` looks at the roots of leads.
+        let lead = Lead { function: 0, roots: roots.to_vec(), real_part: RealPart::Single };
+        let leads = vec![Some(lead)];
+        let mut plan = Self { base: Vec::new(), angles: Vec::new(), leads, sums: Vec::new(), unproved: false };
+        plan.find_angles(problem, enclosure)?;
+        Some(plan)
+    }
+
     fn for_functions(functions: &[usize], problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Self> {
         let mut plan =
             Self { base: Vec::new(), angles: Vec::new(), leads: Vec::new(), sums: Vec::new(), unproved: false };
@@ -91,7 +101,7 @@ impl Plan {
     }
 
     /// Adds a sum; `Some(None)`: it could not be shown. `None`: the enclosure could not be renewed.
-    fn sum(
+    pub(crate) fn sum(
         &mut self,
         parts: &[(i64, RootRef)],
         problem: &mut Problem,
@@ -406,7 +416,7 @@ fn mean(problem: &Problem, family: usize) -> Rational {
 }
 
 /// The vertical line on which all of the roots lie.
-fn common_line(roots: &[usize], problem: &Problem, enclosure: &Enclosure) -> Option<Rational> {
+pub(crate) fn common_line(roots: &[usize], problem: &Problem, enclosure: &Enclosure) -> Option<Rational> {
     let family = |root: usize| enclosure.table.roots()[root].family;
     let line = mean(problem, family(*roots.first()?));
     let on_line = |root: &usize| {

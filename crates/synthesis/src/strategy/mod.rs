@@ -13,6 +13,7 @@ pub(crate) mod linear;
 pub(crate) mod periodic;
 pub(crate) mod pivot;
 pub(crate) mod proposal;
+pub(crate) mod region;
 pub(crate) mod root;
 pub(crate) mod square;
 pub(crate) mod taylor;
