@@ -62,9 +62,10 @@ class Modes:
 
 
 class Trace:
-    """A sum of c t^k exp(mu t), real for real t: the terms by key, and arrays of floats for guesses."""
+    """A sum of c t^k exp(mu t), real for real t: the terms by key, the rational value at 0 if it is known, and arrays of floats for guesses."""
 
-    def __init__(self, terms):
+    def __init__(self, terms, start=None):
+        self.start = start
         self.terms = {key: c for key, c in terms.items() if not (c.real.contains(0) and c.imag.contains(0) and abs(c) < arb("1e-60"))}
         self.exponents = {key: exponent(key) for key in self.terms}
         self.powers = np.array([key[0] for key in self.terms], dtype=float)
@@ -75,7 +76,7 @@ class Trace:
         terms = dict(self.terms)
         for key, c in other.terms.items():
             terms[key] = terms.get(key, acb(0)) + c
-        return Trace(terms)
+        return Trace(terms, both(self, other, lambda a, b: a + b))
 
     def __mul__(self, other):
         terms = {}
@@ -83,16 +84,19 @@ class Trace:
             for b, y in other.terms.items():
                 key = joined(a, b)
                 terms[key] = terms.get(key, acb(0)) + x * y
-        return Trace(terms)
+        return Trace(terms, both(self, other, lambda a, b: a * b))
 
     def scaled(self, factor):
-        return Trace({key: c * factor for key, c in self.terms.items()})
+        """The product with a rational."""
+        return Trace({key: c * ball(factor) for key, c in self.terms.items()}, None if self.start is None else self.start * factor)
 
     def shifted(self, offset):
         return self + constant(offset)
 
     def at(self, t):
         """The ball of the value at a rational time, or over a ball of times."""
+        if not isinstance(t, arb) and t == 0 and self.start is not None:
+            return ball(self.start)
         t = t if isinstance(t, arb) else ball(t)
         total = acb(0)
         for key, c in self.terms.items():
@@ -116,6 +120,10 @@ class Trace:
         return total
 
 
+def both(a, b, operation):
+    return None if a.start is None or b.start is None else operation(a.start, b.start)
+
+
 def leibniz(t, k, mu, n):
     """The n-th derivative of t^k exp(mu t), divided by exp(mu t)."""
     total = 0
@@ -125,7 +133,7 @@ def leibniz(t, k, mu, n):
 
 
 def constant(q):
-    return Trace({(0, F(0), ()): acb(ball(q))}) if q else Trace({})
+    return Trace({(0, F(0), ()): acb(ball(q))} if q else {}, F(q))
 
 
 class Extreme:

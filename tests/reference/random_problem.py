@@ -60,7 +60,7 @@ def real_block(rate, size):
     def motion(start):
         rows, factorial = [], [1, 1, 2, 6, 24, 120, 720]
         for i in range(size):
-            rows.append(Trace({(k, rate, ()): acb(ball(start[i + k] / factorial[k])) for k in range(size - i) if start[i + k]}))
+            rows.append(Trace({(k, rate, ()): acb(ball(start[i + k] / factorial[k])) for k in range(size - i) if start[i + k]}, start[i]))
         return rows
 
     return a, motion
@@ -82,17 +82,17 @@ def wave_block(rate, d, q, size=1):
 
     def wave(power, c, s):
         """t^power exp(rate t) (c cos + s sin)."""
-        return Trace({(power, rate, waves(d, q)): acb(c, -s) / 2, (power, rate, waves(d, -q)): acb(c, s) / 2})
+        return {(power, rate, waves(d, q)): acb(c, -s) / 2, (power, rate, waves(d, -q)): acb(c, s) / 2}
 
     def motion(start):
         root, rows = arb(d).sqrt(), []
         for i in range(size):
-            u, v = constant(0), constant(0)
-            for k in range(size - i):
+            u, v = {}, {}
+            for k in range(size - i):  # a chain has at most two links: 1 / k! is 1
                 x, y = ball(start[2 * (i + k)]), ball(start[2 * (i + k) + 1])
-                u += wave(k, x, y * root).scaled(1 / arb(k).fac())
-                v += wave(k, y, -x / root).scaled(1 / arb(k).fac())
-            rows += [u, v]
+                u |= wave(k, x, y * root)
+                v |= wave(k, y, -x / root)
+            rows += [Trace(u, start[2 * i]), Trace(v, start[2 * i + 1])]
         return rows
 
     return a, motion
@@ -173,7 +173,7 @@ def structured(rng, kind):
         total = constant(0)
         for factor, trace in zip(row, rows):
             if factor:
-                total += trace.scaled(ball(factor))
+                total += trace.scaled(factor)
         states.append(total)
     return product(product(p, b), inverse), [sum((x * y for x, y in zip(row, start)), F(0)) for row in p], states
 
@@ -192,7 +192,7 @@ def dense(rng):
             weights = right.solve(acb_mat([[acb(ball(s))] for s in start]))
         except (ValueError, ZeroDivisionError):
             continue
-        rows = [Trace({(0, Modes(values, [j]), ()): right[i, j] * weights[j, 0] for j in range(n)}) for i in range(n)]
+        rows = [Trace({(0, Modes(values, [j]), ()): right[i, j] * weights[j, 0] for j in range(n)}, start[i]) for i in range(n)]
         if all(abs(c) < arb("1e9") for row in rows for c in row.terms.values()):
             return a, start, rows
 
@@ -229,7 +229,7 @@ def polynomial(rng, problem):
         part = constant(1)
         for i in factors:
             part = part * problem.states[i]
-        trace += part.scaled(ball(c))
+        trace += part.scaled(c)
         text.append(f"({c})*" + "*".join(f"x{i}" for i in factors))
     return " + ".join(text), trace
 
