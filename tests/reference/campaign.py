@@ -39,8 +39,8 @@ from random_problem import is_consistent, model, problem
 
 EFFORT = "3000"
 PROCESSES = 2
-SECONDS = 300  # for one model of ten zones
-SLOW = 20.0
+SECONDS, SECONDS_ALONE = 30, 15  # for one model of ten zones, and for a zone alone if that is not enough
+SLOW = 15.0
 
 
 def holds(tree, t):
@@ -176,6 +176,29 @@ def reason(answer):
     return re.sub(r"-?\d[\d./e+-]*", "#", answer["reason"].split(";")[0])[:90]
 
 
+def settled_together(program, p, folder, options):
+    """The answers for all zones from one run; zone by zone if that takes too long."""
+    zones = range(len(p.zones))
+    answers = run(program, model(p, zones), folder, options, SECONDS)
+    if answers is None:
+        answers = [(run(program, model(p, [i]), folder, options, SECONDS_ALONE) or [{"name": f"z{i}", "verdict": "timeout", "reason": ""}])[0] for i in zones]
+    return answers
+
+
+def run(program, text, folder, options, seconds):
+    """The answers for the zones of a model; None if it takes longer."""
+    path = Path(folder) / "model.toml"
+    path.write_text(text)
+    command = [program, "certify", str(path), "--json", *options]
+    try:
+        done = subprocess.run(command, capture_output=True, text=True, timeout=seconds, env={**os.environ, "RAYON_NUM_THREADS": "1"})
+    except subprocess.TimeoutExpired:
+        return None
+    if done.returncode not in (0, 1, 2):
+        return [{"name": name, "verdict": "failed", "reason": f"exit status {done.returncode}: {done.stderr[-300:]}"} for name in re.findall(r'^name = "(.*)"', text, re.M)]
+    return json.loads(done.stdout)["zones"]
+
+
 def examine(arguments):
     """Runs one problem; returns rows (kind, label, expected, verdict, note, fault), the seconds, and model files to keep."""
     program, seed, number = arguments
@@ -183,33 +206,24 @@ def examine(arguments):
     if not is_consistent(p):
         return number, [(p.kind, "", "", "reference", "", "the closed form contradicts the matrix exponential")], 0.0, {"reference": model(p, range(len(p.zones)))}
     with tempfile.TemporaryDirectory() as folder:
-        path, evidence = Path(folder) / "model.toml", Path(folder) / "evidence"
-        path.write_text(model(p, range(len(p.zones))))
-        command = [program, "certify", str(path), "--json", "--effort", EFFORT]
-        command += [] if number % 9 == 0 else ["--no-margins"]
-        command += ["--out", str(evidence)] if number % 9 < 2 else []
+        evidence = Path(folder) / "evidence"
+        options = ["--effort", EFFORT, *([] if number % 9 == 0 else ["--no-margins"]), *(["--out", str(evidence)] if number % 9 < 2 else [])]
         begin = time.monotonic()
-        try:
-            run = subprocess.run(command, capture_output=True, text=True, timeout=SECONDS, env={**os.environ, "RAYON_NUM_THREADS": "1"})
-        except subprocess.TimeoutExpired:
-            return number, [(p.kind, z.label, z.expected, "timeout", "", None) for z in p.zones], float(SECONDS), {"slow": path.read_text()}
+        answers = settled_together(program, p, folder, options)
         seconds = time.monotonic() - begin
-        if run.returncode not in (0, 1, 2):
-            return number, [(p.kind, "", "", "failed", run.stderr[-300:], f"exit status {run.returncode}: {run.stderr[-300:]}")], seconds, {"wrong": path.read_text()}
-        answers = json.loads(run.stdout)["zones"]
         rows, kept = [], {}
         for i, (zone, answer) in enumerate(zip(p.zones, answers)):
             row = compared(p.kind, zone, answer)
             if number % 9 < 2 and answer["verdict"] in ("clear", "enters", "inseparable") and row[-1] is None:
                 row = (*row[:-1], refused(program, evidence, answer["name"]))
             rows.append(row)
-            word = "wrong" if row[-1] else next((w for w in ("unsettled", "short", "unconfirmed") if w in row[3:5]), None)
+            word = "wrong" if row[-1] else next((w for w in ("unsettled", "timeout", "short", "unconfirmed") if w in row[3:5]), None)
             if zone.expected and row[3] in ("clear", "enters", "inseparable") and row[3] != zone.expected and not word:
                 word = "surprising"
             if word:
                 kept[f"{word}-z{i}"] = f"# {row[-1] or row[4]}; {zone.label}, expected {zone.expected}\n" + model(p, [i])
         if seconds > SLOW:
-            kept["slow"] = f"# {seconds:.1f} s\n" + path.read_text()
+            kept["slow"] = f"# {seconds:.1f} s\n" + model(p, range(len(p.zones)))
     return number, rows, seconds, kept
 
 
@@ -217,7 +231,7 @@ def compared(kind, zone, answer):
     verdict, note, fault = answer["verdict"], "", None
     if verdict == "clear":
         fault = clear_fault(zone, answer)
-        note = "short" if fault is None and is_short(zone, answer) else ("with margin" if "margin" in answer else "")
+        note = "" if "margin" not in answer else ("no margin" if answer["margin"] == "0" else ("short" if is_short(zone, answer) else "with margin"))
     elif verdict == "enters":
         fault, confirmed = enters_fault(zone, answer)
         note = ("first" if answer["time"]["first"] else "not the first") if confirmed else "unconfirmed"
@@ -225,6 +239,7 @@ def compared(kind, zone, answer):
         fault = inseparable_fault(zone)
     else:
         note = reason(answer)
+        fault = note if verdict == "failed" else None
     return kind, zone.label, zone.expected, verdict, note, fault
 
 

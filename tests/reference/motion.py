@@ -159,9 +159,9 @@ def greatest(trace, start, end):
     if lead > (F(0), 0):
         early.known = bool(top.value < arb("-1e-3"))
         return early
-    if early.value > top.value - arb("1e-30") * (1 + abs(top.value)) or (top.torus == 1 and len(late.terms) == len(trace.terms)):
-        return early
-    return top
+    periodic = top.torus == 1 and len(late.terms) == len(trace.terms)
+    from_the_start = early.at == 0 and trace.start is not None and trace.start == simple_rational(top.value)
+    return early if periodic or from_the_start or early.value > top.value + arb("1e-30") * (1 + abs(top.value)) else top
 
 
 def settled_after(trace, late, lead):
@@ -289,5 +289,7 @@ def climbed(vectors, c, angles):
 def simple_rational(value, bottom=10000):
     """The rational with a small denominator that the middle of a ball is to 45 digits, or None."""
     middle = F(value.mid().str(60, radius=False))
+    if abs(middle) > 10**9:
+        return None
     near = middle.limit_denominator(bottom)
     return near if abs(middle - near) < F(1, 10**45) * (1 + abs(near)) else None

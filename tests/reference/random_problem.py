@@ -221,7 +221,7 @@ def polynomial(rng, problem):
     """Text and trace of a random polynomial of the states, of degree one mostly."""
     n = len(problem.states)
     wide = max(len(s.terms) for s in problem.states)
-    degree = rng.choices([1, 2, 3], [5, 3, 2 if wide <= 6 else 0])[0]
+    degree = rng.choices([1, 2, 3], [5, 3 if wide <= 5 else 1, 2 if wide <= 5 else 0])[0]
     text, trace = [], constant(0)
     for _ in range(rng.randint(1, 3)):
         c = F(rng.choice([-2, -1, 1, 1, 2, 3]), rng.choice([1, 1, 2, 3]))
