@@ -83,8 +83,14 @@ fn least_values_of_trigonometric_polynomials_are_touched_or_told_apart() {
 }
 
 #[test]
-fn dense_orbits_pass_each_level_below_their_supremum() {
+fn dense_orbits_stay_below_their_supremum_and_come_close() {
     settle("dense_orbits", 3);
+}
+
+#[test]
+#[ignore = "found inseparable, which is true and less than what can be proved"]
+fn recurrences_are_found() {
+    settle("recurrences", 3);
 }
 
 #[test]

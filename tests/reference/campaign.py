@@ -35,12 +35,12 @@ import numpy as np
 from flint import arb
 
 from motion import ball
-from random_problem import is_consistent, model, problem
+from random_problem import KINDS, is_consistent, model, problem
 
 EFFORT = "3000"
 PROCESSES = 2
-SECONDS, SECONDS_ALONE = 30, 15  # for one model of ten zones, and for a zone alone if that is not enough
-SLOW = 15.0
+SECONDS, SECONDS_ALONE = 12, 4  # for one model of ten zones, and for a zone alone if that is not enough
+SLOW = 10.0
 
 
 def holds(tree, t):
@@ -261,6 +261,11 @@ def report(results, folder):
     table("verdicts by place of the border, and what was expected", Counter((label, e, v) for _, label, e, v, _, _ in rows))
     table("unsettled by kind and reason", Counter((k, note) for k, _, _, v, note, _ in rows if v in ("unsettled", "timeout")))
     table("notes", Counter((v, note) for _, _, _, v, note, _ in rows if v in ("clear", "enters")))
+    table("seconds a problem by kind: median, greatest, sum", Counter())
+    for kind in KINDS:
+        own = [s for _, rows, s, _ in results if rows[0][0] == kind]
+        if own:
+            print(f"  {kind:22}{statistics.median(own):8.2f}{max(own):8.2f}{sum(own):8.0f}")
     seconds = [s for _, _, s, _ in results]
     wrong = sum(fault is not None for *_, fault in rows)
     settled = sum(v in ("clear", "enters", "inseparable") for _, _, _, v, _, _ in rows)

@@ -45,6 +45,7 @@ def derived():
         "identities": exact.identities(),
         "trigonometric_extremes": exact.trigonometric_extremes(),
         "dense_orbits": exact.dense_orbits(),
+        "recurrences": exact.recurrences(),
         "late_entries": exact.late_entries(),
         "late_stretches": exact.late_stretches(),
         "transcendental_zeros": exact.transcendental_zeros(),

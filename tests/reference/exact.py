@@ -10,8 +10,9 @@ trigonometric_extremes   the least value m of a trigonometric polynomial: with u
                          another one lies between levels a billionth apart.
 dense_orbits             sums of waves with independent frequencies: each level below the sum of the amplitudes is passed (Kronecker), the sum itself at
                          most at the one time where all waves are at their crest.
+recurrences              the same for windows that begin after a crest.
 late_entries             the first time at which such a sum passes a level. For the level 2 A - e each wave must be within e of its crest, so only short
-                         stretches around the crests of the first wave matter; each is excluded or searched in balls.
+                         stretches around the crests of the first wave matter; each is excluded or searched in balls. `late_stretches`: what takes long.
 transcendental_zeros     zeros of exponential polynomials that handbooks tabulate, by isolation in balls.
 """
 
@@ -295,18 +296,45 @@ def late_stretches():
     return late_cases()[1]
 
 
+CRESTS = Waves((1, F(1), F(0)), (2, F(1), F(0)))
+THREE = Waves((1, F(1), F(0)), (2, F(1), F(0)), (3, F(1), F(0)))
+KRONECKER = "Kronecker's theorem; own data"
+
+
 def dense_orbits():
-    crests = Waves((1, F(1), F(0)), (2, F(1), F(0)))
-    own = "Kronecker's theorem; own data"
-    states = crests.states()
-    zones = [zone("x + y >= 2", "enters", ["0", "0"]), zone("x + y > 2", "clear"), zone("x + y >= 2", "inseparable", None, 1), zone("x + y > 2", "clear", None, 1), zone("x + y >= 2.0000001", "clear"), zone("x + y >= 2", "clear", None, 1, 50)]
+    crests = [
+        zone("x + y >= 2", "enters", ["0", "0"]), zone("x + y > 2", "clear"), zone("x + y >= 2", "inseparable", None, 1), zone("x + y > 2", "clear", None, 1),
+        zone("x + y >= 2.0000001", "clear"), zone("x + y >= 2", "clear", None, 1, 50),
+    ]
+    rational_data = [
+        zone("x + y >= 2", "inseparable"), zone("x + y > 2", "clear"), zone("x + y >= 2.0001", "clear"),
+        zone("x + y >= 1.99", "enters", bounds(TWO.first_entry(F(199, 100), 0, 1000), 25)), zone("x + y >= 2", "clear", None, 0, 100),
+    ]
+    three = [zone("x + y + z >= 3", "inseparable", None, 1), zone("x + y + z > 3", "clear"), zone("x + y + z >= 3.01", "clear")]
+    return [
+        case("crests together at t = 0", KRONECKER, CRESTS.states(), crests),
+        case("crests together at no known time", KRONECKER, TWO.states(), rational_data),
+        case("three frequencies", KRONECKER, THREE.states(), three),
+    ]
+
+
+def recurrences():
+    """Returns close to where the motion was at t = 0; and waves that come up to their final height."""
+    two = []
     for k in range(1, 5):
-        time = crests.first_entry(2 - F(1, 10**k), F(1), F(100000))
-        zones.append(zone(f"x + y >= {2 - F(1, 10**k)}", "enters", bounds(time, 25), 1))
-    rational_data = [zone("x + y >= 2", "inseparable"), zone("x + y > 2", "clear"), zone("x + y >= 2.0001", "clear"), zone("x + y >= 1.99", "enters", bounds(TWO.first_entry(F(199, 100), 0, 1000), 25)), zone("x + y >= 2", "clear", None, 0, 100)]
-    three = Waves((1, F(1), F(0)), (2, F(1), F(0)), (3, F(1), F(0)))
-    third = [zone("x + y + z >= 2.9", "enters", bounds(three.first_entry(F(29, 10), F(1), F(100000)), 25), 1), zone("x + y + z >= 3", "inseparable", None, 1), zone("x + y + z > 3", "clear"), zone("x + y + z >= 3.01", "clear")]
-    return [case("crests together at t = 0", own, states, zones), case("crests together at no known time", own, TWO.states(), rational_data), case("three frequencies", own, three.states(), third)]
+        level = 2 - F(1, 10**k)
+        two.append(zone(f"x + y >= {level}", "enters", bounds(CRESTS.first_entry(level, F(1), F(100000)), 25), 1))
+    three = [zone("x + y + z >= 2.9", "enters", bounds(THREE.first_entry(F(29, 10), F(1), F(100000)), 25), 1)]
+    decay = [["x", "1", "2*v"], ["v", "1/2", "-x"], ["d", "1", "-d"]]
+    root = arb(2).sqrt()
+    f = lambda t: (root * t).cos() + (root * t).sin() / root - (-t).exp() - rational(F("1.2247448"))
+    slope = lambda t: -root * (root * t).sin() + (root * t).cos() + (-t).exp()
+    a, b, _ = zeros(f, slope, rational(0), rational(60))[0]
+    return [
+        case("crests together at t = 0", KRONECKER, CRESTS.states(), two),
+        case("three frequencies", KRONECKER, THREE.states(), three),
+        case("one frequency and a decay", "own; the limit's amplitude is sqrt(3/2)", decay, [zone("x - d >= 1.2247448", "enters", bounds(a.union(b), 25))]),
+    ]
 
 
 # transcendental_zeros
