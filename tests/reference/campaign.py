@@ -6,7 +6,7 @@ KEEPOUT is the program's path; keepout-check is taken from the same folder. PROB
 repeat some of them; each is a random system of at most six states (`random_problem.py`) with ten zones, most of them at a known distance from an extreme of
 their polynomial along the trajectory. Two processes run at a time. A verdict is wrong if
   - `clear`: a time is in the zone for certain, or the supremum, attained or approached again and again, is beyond the level for certain;
-    or the margin is more than the distance to a value that is taken or approached;
+    or the trusted extreme says that the zone is entered; or the margin is more than the distance to a value that is taken or approached;
   - `enters`: the whole bracket is outside the zone for certain, or nothing in it can be confirmed and the zone is expected to be clear; or, for a
     first entry, an earlier time is in the zone for certain;
   - `inseparable`: the level is beyond the supremum, which is trusted;
@@ -92,6 +92,10 @@ def clear_fault(zone, answer):
     t = inside_before(zone, None)
     if t is not None:
         return f"clear, but inside at t = {float(t)}"
+    if is_crossed_somewhere(zone):
+        return "clear, but the equation is met between two times"
+    if zone.expected == "enters":
+        return "clear, and expected to be entered"
     extreme, distance = zone.extreme, zone.distance
     if distance is None or extreme is None:
         return None
@@ -102,6 +106,16 @@ def clear_fault(zone, answer):
     if "margin" in answer and ball(answer["margin"]) > least:
         return f"margin {answer['margin']} above the distance {least}"
     return None
+
+
+def is_crossed_somewhere(zone):
+    """Whether a single equation has certain opposite signs at two times of the window."""
+    if zone.tree[0] != "atom" or zone.tree[2] != "=":
+        return False
+    times = np.linspace(float(zone.start), float(zone.end if zone.end is not None else zone.start + 120), 6001)[1:-1]
+    values = zone.tree[1].floats(times)
+    low, high = zone.tree[1].at(F(times[values.argmin()])), zone.tree[1].at(F(times[values.argmax()]))
+    return bool(low < 0) and bool(high > 0)
 
 
 def reference_distance(zone):
