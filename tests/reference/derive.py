@@ -18,6 +18,7 @@ if hasattr(sys, "set_int_max_str_digits"):
     sys.set_int_max_str_digits(0)
 
 import elementary
+import exact
 import exponential
 import exponential_zone
 import integer_polynomial
@@ -43,6 +44,13 @@ def derived():
         "factorisations": integer_polynomial.factorisations(),
         "characteristic_polynomials": integer_polynomial.characteristic_polynomials(),
         "spectra": spectrum.spectra(),
+        "identities": exact.identities(),
+        "trigonometric_extremes": exact.trigonometric_extremes(),
+        "dense_orbits": exact.dense_orbits(),
+        "recurrences": exact.recurrences(),
+        "late_entries": exact.late_entries(),
+        "late_stretches": exact.late_stretches(),
+        "transcendental_zeros": exact.transcendental_zeros(),
     }
 
 

@@ -59,6 +59,18 @@ fn the_exit_status_says_what_became_of_the_zones() {
 }
 
 #[test]
+fn margins_are_left_out_on_request() {
+    let clear = model(&folder("no_margins"), &[("a", "x > 2")]);
+    let zone = |options: &[&str]| -> serde_json::Value {
+        let output = keepout(&[&["certify", &clear, "--json"], options].concat());
+        serde_json::from_str::<serde_json::Value>(&text(&output.stdout)).expect("JSON")["zones"][0].clone()
+    };
+    assert!(zone(&[])["margin"].is_string());
+    let without = zone(&["--no-margins"]);
+    assert_eq!((&without["verdict"], &without["margin"]), (&"clear".into(), &serde_json::Value::Null));
+}
+
+#[test]
 fn every_misuse_of_the_command_line_exits_with_3() {
     for arguments in [
         &[][..],

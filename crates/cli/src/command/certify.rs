@@ -39,6 +39,9 @@ pub struct Arguments {
     /// How much work to spend on each zone before giving up; a whole number, the same everywhere
     #[arg(long, value_name = "N", default_value_t = Options::default().effort)]
     pub effort: u64,
+    /// Do not look for the margins of clear zones: the verdicts come sooner
+    #[arg(long)]
+    pub no_margins: bool,
 }
 
 /// Runs the command; returns the exit status.
@@ -51,7 +54,7 @@ pub fn run(arguments: &Arguments) -> u8 {
             return WRONG;
         }
     };
-    let options = Options { effort: arguments.effort, ..Options::default() };
+    let options = Options { effort: arguments.effort, margin: !arguments.no_margins, ..Options::default() };
     let progress = Progress::new(chosen.len());
     let settled: Vec<Settled> = chosen
         .into_par_iter()
