@@ -170,6 +170,12 @@ impl Enclosure {
         order.max(2) + longest
     }
 
+    /// What a cell costs, in units of effort: more for long sums of terms.
+    pub(crate) fn cost(&self) -> u64 {
+        let terms = self.forms.iter().map(|f| f.terms.len() as u64).sum::<u64>();
+        1 + terms / 32
+    }
+
     /// The limits of the checker, without the bound on work.
     pub(crate) fn limits(&self) -> &Limits {
         &self.limits

@@ -9,6 +9,7 @@ use crate::strategy::cover::{Cover, Entry, Step};
 use crate::strategy::inseparable::meeting;
 use crate::strategy::late;
 use keepout_checker::certificate::{Cell, Certificate, Cone, Evidence, Node, Pivot, Sign, Sum};
+use keepout_checker::check;
 use keepout_checker::error::{Obligation, Rejection, Rule};
 use keepout_checker::lead::AngleBox;
 use keepout_checker::number::Rational;
@@ -89,6 +90,14 @@ fn at_rising_precision(
     Finding::Open(last)
 }
 
+/// What became of the search for a late entry.
+enum Late {
+    Found(Box<Finding>),
+    /// There is one so near that the cover will come to it.
+    Near,
+    None,
+}
+
 struct Attempt<'a> {
     problem: Problem,
     enclosure: Enclosure,
@@ -136,13 +145,15 @@ impl<'a> Attempt<'a> {
                 return self.finish(&t0, Some(cone));
             }
             if until.is_none() && attempt >= PATIENCE && attempt % 3 == 0 {
-                if let Some(found) = self.late_entry(&t0) {
-                    return found;
-                }
-                if t0 > self.problem.statement.zone.from
-                    && let Some(found) = self.meeting(&t0, false)
-                {
-                    return found;
+                match self.late_entry(&t0) {
+                    Late::Found(found) => return *found,
+                    Late::Near => {}
+                    Late::None if t0 > self.problem.statement.zone.from => {
+                        if let Some(found) = self.meeting(&t0, false) {
+                            return found;
+                        }
+                    }
+                    Late::None => {}
                 }
                 if attempt > PATIENCE && self.is_settled_far_field(&t0) {
                     break;
@@ -220,32 +231,42 @@ impl<'a> Attempt<'a> {
     }
 
     /// An entry at a late time where the phases come into the zone; the cover goes on where that time is near.
-    fn late_entry(&mut self, t0: &Rational) -> Option<Finding> {
+    fn late_entry(&mut self, t0: &Rational) -> Late {
         let from = self.problem.statement.zone.from.clone().max(t0.clone());
-        let plan = self.plan.as_ref()?.as_ref()?;
-        let (early, late) = late::candidate(plan, &from, &self.problem, &self.enclosure)?;
+        let Some(Some(plan)) = &self.plan else { return Late::None };
+        let candidates = late::candidates(plan, &from, &self.problem, &self.enclosure);
         let reached = approx_value(&self.cover.reached).max(1e-300);
-        if self.cover.cells.len() as f64 * approx_value(&late) / reached <= MAX_CELLS_BEFORE {
-            return None;
+        let cells_to = |t: &Rational| self.cover.cells.len() as f64 * approx_value(t) / reached;
+        if candidates.first().is_some_and(|(_, late)| cells_to(late) <= MAX_CELLS_BEFORE) {
+            return Late::Near;
         }
-        let mut local = Cover::new(&early);
-        match local.extend(&late, &mut self.problem, &mut self.enclosure, self.effort) {
-            Step::Entered(Entry { from, cell, .. }) => {
+        for (early, late) in candidates {
+            let mut local = Cover::new(&early);
+            if let Step::Entered(Entry { from, cell, .. }) =
+                local.extend(&late, &mut self.problem, &mut self.enclosure, self.effort)
+            {
                 let claim = Claim::Enters { from: from.clone(), to: cell.to.clone(), first: false };
                 let statement = Statement { claim, ..self.problem.statement.clone() };
                 let evidence = Evidence::Enters { before: Vec::new(), from, cell };
-                Some(Finding::Enters(self.certificate(statement, Vec::new(), evidence)))
+                return Late::Found(Box::new(Finding::Enters(self.certificate(statement, Vec::new(), evidence))));
             }
-            Step::Done | Step::Stuck(..) | Step::Exhausted => None,
         }
+        Late::None
     }
 
     /// A point of each cone in the zone; `plain`: also where the zone is true on a whole box.
     fn meeting(&mut self, t0: &Rational, plain: bool) -> Option<Finding> {
         let plan = Plan::of_all(&mut self.problem, &mut self.enclosure)?;
+        // A single phase comes back to each value: there the zone is entered, which the cover shows.
+        if plan.base.len() < 2 && !plain {
+            return None;
+        }
         let found = meeting(&plan, t0, plain, &self.problem, &self.enclosure, self.effort)?;
         let statement = Statement { claim: Claim::Inseparable, ..self.problem.statement.clone() };
-        Some(Finding::Inseparable(self.certificate(statement, plan.sums, Evidence::Inseparable(found))))
+        let certificate = self.certificate(statement, plan.sums, Evidence::Inseparable(found));
+        // That the base frequencies are independent is for the checker to say.
+        let is_proved = check(&certificate.statement, &certificate, self.enclosure.limits()).is_ok();
+        is_proved.then_some(Finding::Inseparable(certificate))
     }
 
     fn sums(&self) -> Vec<Sum> {

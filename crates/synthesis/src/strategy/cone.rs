@@ -15,6 +15,7 @@ use keepout_core::lattice::approx_integer_relations;
 use num_bigint::BigInt;
 use num_integer::Integer;
 use num_traits::{ToPrimitive, Zero};
+use std::cmp::Ordering;
 use std::collections::{BTreeMap, BTreeSet};
 
 /// The leading roots of functions with their equalities and angles: all of a far field but its start.
@@ -368,7 +369,7 @@ impl Leading<'_> {
     /// The sign of a function on a box of the torus.
     pub(crate) fn sign(&self, function: usize, angles: &AngleBox) -> Option<Sign> {
         if self.problem.is_zero(function) {
-            return Some(std::cmp::Ordering::Equal);
+            return Some(Ordering::Equal);
         }
         let products = self.problem.products_of(function);
         if products.is_empty() {
@@ -490,10 +491,14 @@ fn combined(
     total
 }
 
-/// Used by the search for a first cone start: an instant not below 1 / |mu| for the fastest exponent.
+/// Used by the search for a first cone start: an instant not below 1 / |mu| for the fastest exponent; 1 where all are 0.
 pub(crate) fn first_start(enclosure: &Enclosure) -> Rational {
-    let exponents = enclosure.forms.iter().flat_map(|f| &f.terms).map(|t| t.exponent.abs_hi(enclosure.bits).top());
-    let top = exponents.max().unwrap_or(0).clamp(-200, 200);
+    let bits = enclosure.bits;
+    let exponents =
+        enclosure.forms.iter().flat_map(|f| &f.terms).filter(|t| t.exponent.abs_hi(bits).sign() != Ordering::Equal);
+    let top = exponents.map(|t| t.exponent.abs_hi(bits).top()).max().unwrap_or(0);
+    // A root that is 0 exactly may have a disc of a tiny radius.
+    let top = if top < -i64::from(bits) / 2 { 0 } else { top.clamp(-200, 200) };
     let power = |k: i64| Rational::from_integer(BigInt::from(1) << k.unsigned_abs());
     if top >= 0 { power(top).recip() } else { power(top) }
 }

@@ -72,7 +72,7 @@ impl Cover {
             if *effort == 0 {
                 return Step::Exhausted;
             }
-            *effort -= 1;
+            *effort = effort.saturating_sub(enclosure.cost());
             let judgement = enclosure.judge(problem, &a, &b, &self.hint);
             match judgement.truth {
                 Some(false) => self.push(problem, &b, judgement),
@@ -107,12 +107,21 @@ impl Cover {
     }
 
     /// The window's first instant: decided by itself, and at t = 0 exactly; then what comes just after it.
-    fn first_instant(&mut self, to: &Rational, problem: &Problem, enclosure: &mut Enclosure) -> Option<Step> {
+    fn first_instant(&mut self, to: &Rational, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<Step> {
         let from = self.from.clone();
         if let Some(cell) = instant(&from, problem, enclosure) {
             return Some(self.entered(&from, &from, Some(cell)));
         }
-        let judgement = enclosure.judge(problem, &from, &from, &[]);
+        let mut judgement = enclosure.judge(problem, &from, &from, &[]);
+        if judgement.truth.is_none() && !from.is_zero() {
+            // A trace may be zero at just this instant.
+            pivot::divide_at(&from, &from, problem);
+            enclosure.renew(problem)?;
+            if let Some(cell) = instant(&from, problem, enclosure) {
+                return Some(self.entered(&from, &from, Some(cell)));
+            }
+            judgement = enclosure.judge(problem, &from, &from, &[]);
+        }
         if from == *to {
             return match judgement.truth {
                 Some(false) => {

@@ -8,8 +8,7 @@
 use crate::enclosure::{Enclosure, approx_value};
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, approx_frequency, widest};
-use crate::strategy::proposal::Proposals;
-use crate::strategy::proposal::approx_box;
+use crate::strategy::proposal::{ApproxBox, Proposals, approx_box};
 use keepout_checker::lead::{AngleBox, halves, whole_torus};
 use keepout_checker::number::Rational;
 use num_bigint::BigInt;
@@ -19,36 +18,45 @@ use std::f64::consts::TAU;
 /// Boxes that are looked at.
 const MAX_BOXES: u32 = 20_000;
 
+/// Boxes of this radius are small.
+const SMALL: f64 = 0.02;
+
+/// Candidates that are returned.
+const MAX_CANDIDATES: usize = 4;
+
 /// Boxes in the zone that are tried.
 const MAX_TARGETS: usize = 256;
 
 /// Hits of the first two phases that are tried for one box.
 const MAX_HITS: u32 = 20_000;
 
-/// A stretch of time after `from` in which the zone is probably entered: the earliest that was found.
-pub(crate) fn candidate(
+/// Stretches of time after `from` in which the zone is probably entered, the earliest first.
+pub(crate) fn candidates(
     plan: &Plan,
     from: &Rational,
     problem: &Problem,
     enclosure: &Enclosure,
-) -> Option<(Rational, Rational)> {
+) -> Vec<(Rational, Rational)> {
     let frequencies: Vec<f64> = plan.base.iter().map(|root| approx_frequency(*root, enclosure)).collect();
     if frequencies.len() < 2 {
-        return None;
+        return Vec::new();
     }
     let start = approx_value(from);
-    let hits = targets(plan, from, MAX_TARGETS, problem, enclosure)
+    let mut hits: Vec<(f64, ApproxBox)> = targets(plan, from, MAX_TARGETS, problem, enclosure)
         .into_iter()
         .map(|angles| approx_box(&angles))
-        .filter_map(|target| first_visit(&target, &frequencies, start).map(|time| (time, target)));
-    let (time, target) = hits.min_by(|a, b| a.0.total_cmp(&b.0))?;
-    let reach = target.iter().zip(&frequencies).map(|((_, radius), w)| radius / w).fold(f64::MAX, f64::min);
-    let low = rational((time - reach).max(start))?.max(from.clone());
-    let high = rational(time + reach)?;
-    (low < high).then_some((low, high))
+        .filter_map(|target| first_visit(&target, &frequencies, start).map(|time| (time, target)))
+        .collect();
+    hits.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let stretch = |(time, target): &(f64, ApproxBox)| {
+        let reach = target.iter().zip(&frequencies).map(|((_, radius), w)| radius / w).fold(f64::MAX, f64::min);
+        let (low, high) = (rational((time - reach).max(start))?.max(from.clone()), rational(time + reach)?);
+        (low < high).then_some((low, high))
+    };
+    hits.iter().take(MAX_CANDIDATES).filter_map(stretch).collect()
 }
 
-/// Boxes on which the zone is true for all t >= t0, at most so many.
+/// Boxes on which the zone is true for all t >= t0, or where a trace vanishes that makes it true where it does; at most so many.
 pub(crate) fn targets(
     plan: &Plan,
     t0: &Rational,
@@ -69,11 +77,16 @@ pub(crate) fn targets(
             Some(true) if leading.truth(&angles) == Some(true) => found.push(angles),
             Some(true) => {}
             Some(false) => {}
+            None if is_small(&angles) && proposals.truth_at_zero(&approx_box(&angles), problem) => found.push(angles),
             None => open
                 .extend(widest(&angles).and_then(|axis| halves(&angles, axis)).into_iter().flat_map(|(l, u)| [l, u])),
         }
     }
     found
+}
+
+fn is_small(angles: &AngleBox) -> bool {
+    angles.iter().all(|(_, radius)| approx_value(radius) < SMALL)
 }
 
 /// The first instant from `start` on at which all phases are in the box, the first one at its centre.

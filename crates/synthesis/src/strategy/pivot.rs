@@ -106,7 +106,7 @@ pub(crate) fn touch(a: &Rational, b: &Rational, problem: &mut Problem, enclosure
 }
 
 /// Adds identities for traces that are multiples of a polynomial in t with a root in [a, b].
-fn divide_at(a: &Rational, b: &Rational, problem: &mut Problem) -> Option<()> {
+pub(crate) fn divide_at(a: &Rational, b: &Rational, problem: &mut Problem) -> Option<()> {
     for w in candidates(a, b, problem).into_iter().filter(|w| !w[0].is_zero()) {
         for target in 0..problem.traces() {
             let Some((power, cofactor)) = divided(target, &w, problem) else { continue };

@@ -83,6 +83,15 @@ impl Proposals {
         Some((value, spread + bend + form.slack))
     }
 
+    /// Whether the zone is probably true on a box where the one trace of undecided sign is zero.
+    pub(crate) fn truth_at_zero(&self, angles: &ApproxBox, problem: &Problem) -> bool {
+        let mut signs: Vec<Option<Sign>> = (0..self.forms.len()).map(|f| self.sign(f, angles)).collect();
+        let undecided: Vec<usize> = (0..problem.atoms()).filter(|f| signs[*f].is_none()).collect();
+        let [only] = undecided.as_slice() else { return false };
+        signs[*only] = Some(Ordering::Equal);
+        problem.truth(&signs) == Some(true)
+    }
+
     /// The probable truth of the zone on a box; signs of auxiliary functions only where those of traces do not decide.
     pub(crate) fn truth(&self, angles: &ApproxBox, problem: &Problem) -> Option<bool> {
         let mut signs = vec![None; self.forms.len()];
