@@ -81,7 +81,7 @@ fn families(function: &ExponentialPolynomial) -> Option<(Vec<Family>, Rational)>
         }
         // q(z) = P(-z^2) up to sign.
         let degree = monic.degree() / 2;
-        let sign = |i: usize| if (degree + i) % 2 == 0 { Rational::one() } else { -Rational::one() };
+        let sign = |i: usize| if (degree + i).is_multiple_of(2) { Rational::one() } else { -Rational::one() };
         let squares = coefficients.iter().step_by(2).enumerate().map(|(i, c)| c * sign(i)).collect();
         list.push(Family { squares: Polynomial::new(squares), function: own });
     }

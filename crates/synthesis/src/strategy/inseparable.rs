@@ -48,7 +48,7 @@ pub(crate) fn meeting(
             let angles = approx_box(angles);
             zeros.iter().all(|f| proposals.sign(*f, &angles).is_none())
         };
-        let (angles, axes) = common_zero(&zeros, &leading.forms, dimension, (&may_vanish, &truth), effort)?;
+        let (angles, axes) = common_zero(&zeros, &leading.forms, dimension, &may_vanish, &truth, effort)?;
         Some(evidence(zeros.into_iter().zip(axes).collect(), angles))
     })
 }
@@ -76,7 +76,8 @@ fn common_zero(
     zeros: &[usize],
     forms: &[Option<LeadForm>],
     dimension: usize,
-    (may_vanish, truth): (&dyn Fn(&AngleBox) -> bool, &dyn Fn(&AngleBox) -> Option<bool>),
+    may_vanish: &dyn Fn(&AngleBox) -> bool,
+    truth: &dyn Fn(&AngleBox) -> Option<bool>,
     effort: &mut u64,
 ) -> Option<(AngleBox, Vec<usize>)> {
     let functions: Vec<&LeadForm> = zeros.iter().map(|f| forms[*f].as_ref()).collect::<Option<_>>()?;
