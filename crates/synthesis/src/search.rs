@@ -36,6 +36,9 @@ const FIRST_BITS: u32 = 96;
 /// starts, and the latter two again each third start.
 const PATIENCE: u32 = 6;
 
+/// A window that ends before so many times the first start of a cone is covered by cells alone.
+const NEAR_END: u32 = 256;
+
 /// A first entry is looked for where the cover up to it takes no more than about so many cells.
 const MAX_CELLS_BEFORE: f64 = 2_000.0;
 
@@ -134,6 +137,8 @@ impl<'a> Attempt<'a> {
     fn run(mut self) -> Finding {
         let until = self.problem.statement.zone.until.clone();
         let mut t0 = first_start(&self.enclosure);
+        let far = &t0 * Rational::from_integer(NEAR_END.into());
+        let ends_soon = until.as_ref().is_some_and(|until| *until <= far);
         for attempt in 0..MAX_DOUBLINGS {
             if attempt == PATIENCE {
                 self.enrich();
@@ -141,7 +146,7 @@ impl<'a> Attempt<'a> {
             if let Some(until) = until.as_ref().filter(|until| **until <= t0) {
                 return self.finish(&until.clone(), None);
             }
-            if let Some(cone) = self.cone(&t0) {
+            if !ends_soon && let Some(cone) = self.cone(&t0) {
                 return self.finish(&t0, Some(cone));
             }
             if until.is_none() && attempt >= PATIENCE && attempt % 3 == 0 {

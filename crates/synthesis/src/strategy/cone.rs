@@ -32,6 +32,9 @@ pub(crate) struct Plan {
 /// A sum of roots and its position.
 type Step = (Vec<(i64, RootRef)>, usize);
 
+/// Boxes that are looked at in floating point for one unit of effort.
+const PROPOSALS: usize = 16;
+
 /// The widest ratio of frequencies and the greatest multiple that relations are looked for with.
 const MAX_RATIO: i64 = 48;
 const MAX_MULTIPLE: i64 = 6;
@@ -316,7 +319,8 @@ impl Torus<'_> {
             if *effort == 0 || depth >= limits.depth || nodes.len() as u64 >= limits.nodes {
                 return None;
             }
-            *effort -= u64::from(for_certain);
+            // Proposals are cheap: so many of them count as one.
+            *effort -= u64::from(for_certain || nodes.len() % PROPOSALS == 0);
             let Some(node) = self.node(&angles, for_certain) else {
                 *obstacle = Some(angles);
                 return None;

@@ -36,7 +36,10 @@ pub(crate) fn meeting(
         let signs: Vec<(usize, Sign)> = others.filter_map(|i| Some((i, leading.sign(i, &angles)?))).collect();
         Meeting { far: plan.far_field(t0, &leading), angles, zeros, signs }
     };
-    if plain && let Some(angles) = late::targets(plan, t0, 1, problem, enclosure).pop() {
+    if plain
+        && let Some(angles) = late::targets(plan, t0, 1, problem, enclosure).pop()
+        && leading.truth(&angles) == Some(true)
+    {
         return Some(evidence(Vec::new(), angles));
     }
     sets_of_zeros(problem, dimension).into_iter().find_map(|zeros| {

@@ -77,7 +77,7 @@ pub(crate) fn targets(
             Some(true) if leading.truth(&angles) == Some(true) => found.push(angles),
             Some(true) => {}
             Some(false) => {}
-            None if is_small(&angles) && proposals.truth_at_zero(&approx_box(&angles), problem) => found.push(angles),
+            None if is_small(&angles) && proposals.is_true_at_zero(&approx_box(&angles), problem) => found.push(angles),
             None => open
                 .extend(widest(&angles).and_then(|axis| halves(&angles, axis)).into_iter().flat_map(|(l, u)| [l, u])),
         }

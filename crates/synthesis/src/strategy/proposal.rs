@@ -83,13 +83,13 @@ impl Proposals {
         Some((value, spread + bend + form.slack))
     }
 
-    /// Whether the zone is probably true on a box where the one trace of undecided sign is zero.
-    pub(crate) fn truth_at_zero(&self, angles: &ApproxBox, problem: &Problem) -> bool {
-        let mut signs: Vec<Option<Sign>> = (0..self.forms.len()).map(|f| self.sign(f, angles)).collect();
+    /// Whether the zone is probably true on a box just where the one trace of undecided sign is zero, and not beside.
+    pub(crate) fn is_true_at_zero(&self, angles: &ApproxBox, problem: &Problem) -> bool {
+        let signs: Vec<Option<Sign>> = (0..self.forms.len()).map(|f| self.sign(f, angles)).collect();
         let undecided: Vec<usize> = (0..problem.atoms()).filter(|f| signs[*f].is_none()).collect();
         let [only] = undecided.as_slice() else { return false };
-        signs[*only] = Some(Ordering::Equal);
-        problem.truth(&signs) == Some(true)
+        let truths = problem.truths(&signs, *only);
+        truths[1] == Some(true) && truths[0] != Some(true) && truths[2] != Some(true)
     }
 
     /// The probable truth of the zone on a box; signs of auxiliary functions only where those of traces do not decide.
