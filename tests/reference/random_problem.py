@@ -268,6 +268,9 @@ def zone(rng, problem):
     if extreme.value is None:
         return unbounded(rng, text, seen, upward, start, end)
     exact = simple_rational(extreme.value)
+    if exact is not None and extreme.at is not None and extreme.at in (start, end) and not (seen.at(extreme.at) - ball(exact)).contains(0):
+        # A value at an end of the window that is only close to a simple number, such as exp(-1000).
+        exact = None
     if exact is not None and rng.random() < 0.5:
         return touching(rng, text, seen, upward, start, end, extreme, exact)
     scale = max(F(abs(float(extreme.value.mid()))).limit_denominator(10**6), F(size(p, start)).limit_denominator(10**6)) or F(1)

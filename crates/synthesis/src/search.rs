@@ -153,15 +153,16 @@ impl<'a> Attempt<'a> {
                 match self.late_entry(&t0) {
                     Late::Found(found) => return *found,
                     Late::Near => {}
-                    Late::None if t0 > self.problem.statement.zone.from => {
-                        if let Some(found) = self.meeting(&t0, false) {
+                    Late::None => {
+                        if t0 > self.problem.statement.zone.from
+                            && let Some(found) = self.meeting(&t0, false)
+                        {
                             return found;
                         }
+                        if attempt > PATIENCE && self.is_settled_far_field(&t0) {
+                            break;
+                        }
                     }
-                    Late::None => {}
-                }
-                if attempt > PATIENCE && self.is_settled_far_field(&t0) {
-                    break;
                 }
             }
             if t0 > self.problem.statement.zone.from

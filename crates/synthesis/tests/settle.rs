@@ -149,3 +149,38 @@ fn touches_at_transcendental_times_are_settled_where_the_trace_is_a_square() {
     let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), ("1", &[0, 0, 1, 0]), ("-199/100", &[])];
     assert!(word(&statement(a, &["0"; 4], &["3/5", "4/5", "1", "0"], p, Relation::NonNegative)).starts_with("enters"));
 }
+
+#[test]
+fn near_touches_are_told_from_touches() {
+    // exp(-t) - exp(-2t) is at most 1/4, at t = ln 2.
+    let a: &[&[&str]] = &[&["-1", "0"], &["0", "-2"]];
+    let gap = "1000000000000000000000000000000";
+    for (limit, verdict) in [
+        ("-1/4".to_string(), "enters"),
+        (format!("-250000000000000000000000000001/{gap}"), "clear"),
+        (format!("-249999999999999999999999999999/{gap}"), "enters"),
+    ] {
+        let p: &[(&str, &[u32])] = &[("1", &[1, 0]), ("-1", &[0, 1]), (&limit, &[])];
+        let found = word(&statement(a, &["0", "0"], &["1", "1"], p, Relation::NonNegative));
+        assert!(found.starts_with(verdict), "{limit}: {found}");
+    }
+}
+
+#[test]
+fn coupled_oscillators_released_from_rest_do_not_pass_their_start() {
+    // x'' = -2 x + y, y'' = x - 3 y from (1, 0): two waves with positive amplitudes that add up to 1, of frequencies whose squares
+    // are the roots of z^2 - 5 z + 5.
+    let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-2", "0", "1", "0"], &["0", "0", "0", "1"], &["1", "0", "-3", "0"]];
+    let system = |limit, relation| {
+        let p: &[(&str, &[u32])] = &[("1", &[1, 0, 0, 0]), (limit, &[])];
+        statement(a, &["0"; 4], &["1", "0", "0", "0"], p, relation)
+    };
+    assert!(word(&system("-1", Relation::Positive)).starts_with("clear"));
+    assert!(word(&system("1", Relation::Negative)).starts_with("clear"));
+    assert!(word(&system("-1", Relation::NonNegative)).starts_with("enters"));
+    let mut later = system("-1", Relation::NonNegative);
+    later.zone.from = q("1");
+    assert_eq!(word(&later), "about the cone");
+    later.zone.inside = system("-999/1000", Relation::NonNegative).zone.inside;
+    assert!(word(&later).starts_with("enters"));
+}
