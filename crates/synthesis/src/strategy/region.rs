@@ -86,10 +86,6 @@ fn find_at(
     let enclosure = Enclosure::new(&problem, bits, &options.limits).map_err(|_| RegionFailure::Exponents)?;
     let draft = Draft::new(problem, enclosure).ok_or(RegionFailure::Exponents)?;
     let mut from = first_start(&draft.enclosure);
-    if from > Rational::from_integer(BigInt::from(1_i64 << 40)) {
-        // All exponents are 0: no motion sets the pace.
-        from = Rational::one();
-    }
     for _ in 0..MAX_DOUBLINGS {
         let bands: &[i64] = if draft.rates.is_empty() { &BANDS[..1] } else { &BANDS };
         for band in bands {
