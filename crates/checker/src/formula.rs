@@ -110,7 +110,13 @@ pub fn claimed_formula(statement: &Statement) -> Option<Formula> {
     let zone = &statement.zone.inside;
     let margin = match &statement.claim {
         Claim::Never { margin } if margin.is_positive() => margin,
-        _ => return Some(zone.clone()),
+        Claim::Never { .. }
+        | Claim::Enters { .. }
+        | Claim::Eventually { .. }
+        | Claim::Inseparable
+        | Claim::Region(_) => {
+            return Some(zone.clone());
+        }
     };
     let Formula::Atom(Atom { polynomial, relation }) = zone else { return None };
     let above = Formula::Atom(Atom { polynomial: shifted(polynomial, margin), relation: Relation::NonNegative });

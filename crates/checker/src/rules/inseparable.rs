@@ -107,7 +107,7 @@ fn integral(root: usize, on: Setting) -> Option<(BigInt, BigInt)> {
     }
     // q(line - z) has the roots line - mu, i omega or its conjugate among them; its leading coefficient is 1 or -1.
     let shifted = polynomial.reflected(&line);
-    let l = shifted.coefficients().iter().fold(BigInt::from(1), |l, c| l.lcm(c.denom()));
+    let l = shifted.coefficients().iter().fold(BigInt::from(1_i32), |l, c| l.lcm(c.denom()));
     let constant = shifted.coefficients().first()? * Rational::from_integer(l.pow(u32::try_from(degree).ok()?));
     (!constant.is_zero()).then(|| (l, constant.to_integer()))
 }
@@ -118,6 +118,6 @@ fn has_no_integer(x: &Interval) -> bool {
     let Ok(shift) = u64::try_from(-x.lo().exponent()) else { return false };
     // SOUND(lo): the greatest integer that is at most the lower end; the next one is to be above the upper end.
     let floor = x.lo().mantissa() >> shift;
-    let (below, above) = (Dyadic::new(floor.clone(), 0), Dyadic::new(floor + BigInt::from(1), 0));
+    let (below, above) = (Dyadic::new(floor.clone(), 0), Dyadic::new(floor + BigInt::from(1_i32), 0));
     below < *x.lo() && *x.hi() < above
 }
