@@ -11,6 +11,8 @@ use keepout_tests::case::{answer, corpus};
 use keepout_tests::system::{System, atom, rational};
 use std::fs;
 
+mod region_cases;
+
 fn main() {
     let bases = bases();
     for folder in ["accept", "reject"] {
@@ -33,6 +35,7 @@ fn main() {
     reject_entries(&base);
     reject_inseparable(&base);
     reject_exponentials(&base);
+    region_cases::write_all();
 }
 
 fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Certificate) {

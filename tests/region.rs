@@ -108,3 +108,35 @@ fn commensurate_frequencies_share_an_angle() {
         region(&ratio.statement(atom(&[("1", &[1]), ("1", &[0, 0, 1]), ("17/10", &[])], Relation::NonPositive)));
     assert_eq!(region.base.len(), 1);
 }
+
+#[test]
+fn the_words_say_what_every_start_means() {
+    let rotation = System::new("0 1; -1 0", "0 0", "1 0");
+    let words = found(&rotation.statement(above(&[1], "-11/10"))).expect("a set").statement().words();
+    for line in [
+        "This statement speaks of all solutions of the equations below that start in a set",
+        "A solution is in the zone at an instant t if and only if at t:",
+        "  Every start in the set S below is safe for ever: whatever point of S the states are at, the solution that starts there is",
+        "    r_1 is the only root of (1) z^0 + (1) z^2",
+        "    mu_1 = r_1, e_1 = exp(i ((1) phi_1));",
+        "    phi_1 is any real number (it stands for Im(r_1) t);",
+    ] {
+        assert!(words.contains(line), "{line}\n{words}");
+    }
+}
+
+#[test]
+fn what_touches_has_no_set() {
+    // cos t <= 1 is exact for the trajectory; the search proves sets by strict signs.
+    let rotation = System::new("0 1; -1 0", "0 0", "1 0");
+    let touched = atom(&[("1", &[1]), ("-1", &[])], Relation::Positive);
+    assert_eq!(found(&rotation.statement(touched)).err(), Some(RegionFailure::Meets));
+}
+
+#[test]
+fn decay_to_the_border_has_a_set_that_never_gets_there() {
+    // x = 1 - exp(-t) < 1.
+    let rise = System::new("-1", "1", "0");
+    let proof = found(&rise.statement(above(&[1], "-1"))).expect("a set");
+    assert!(matches!(proof.statement().claim, Claim::Region(_)));
+}

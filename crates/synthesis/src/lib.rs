@@ -5,6 +5,7 @@
 //!
 //! Start at [`certify`]; [`certify_eventually`] is about large times alone.
 
+mod autonomous;
 mod certify;
 mod enclosure;
 mod explicit;

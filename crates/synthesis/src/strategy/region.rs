@@ -164,10 +164,11 @@ impl Draft {
     /// The set from an instant on, with bands of the width 1 / `band`; and a number whose exponential is at most its start.
     fn region(&self, from: &Rational, band: i64) -> Option<(Region, Rational)> {
         let enclosure = &self.enclosure;
-        let log = (approx_value(&self.scale) * approx_value(from)).min(MAX_LOG_START);
-        let (start, log_start) = start(log)?;
         let grows = self.roots.iter().filter_map(|r| self.row(*r)).flatten().any(|g| !g.is_zero());
-        let power = (self.has_powers && grows).then(|| power(from, &self.scale, &log_start));
+        // Where nothing grows, y stands for nothing.
+        let scale = if grows { self.scale.clone() } else { from.recip() };
+        let (start, log_start) = start((approx_value(&scale) * approx_value(from)).min(MAX_LOG_START))?;
+        let power = (self.has_powers && grows).then(|| power(from, &scale, &log_start));
         let mut positions: Vec<usize> = Vec::new();
         let mut place = |root: usize| {
             positions.iter().position(|r| *r == root).unwrap_or_else(|| {
@@ -194,7 +195,7 @@ impl Draft {
             })
             .collect::<Option<_>>()?;
         let roots = positions.iter().map(|root| named(*root, &self.problem, enclosure)).collect::<Option<_>>()?;
-        let (from, scale) = (from.clone(), self.scale.clone());
+        let from = from.clone();
         Some((Region { from, scale, start, power, roots, rates, base, exponents }, log_start))
     }
 
