@@ -40,6 +40,33 @@ fn whole(c: &mut Criterion) {
     }
 }
 
+/// The verdicts on one quasi-periodic sum with both amplitudes 1 (phases with rational data), and a quadratic zone on a torus of
+/// dimension 3 at one hundredth of its supremum.
+fn verdicts(c: &mut Criterion) {
+    let tones = System::new("0 1 0 0; -1 0 0 0; 0 0 0 1; 0 0 -2 0", "0 0 0 0", "3/5 4/5 1/3 4/3");
+    let sum = |limit, relation| tones.statement(atom(&[("1", &[1]), ("1", &[0, 0, 1]), (limit, &[])], relation));
+    let three = System::new(
+        "0 1 0 0 0 0; -1 0 0 0 0 0; 0 0 0 1 0 0; 0 0 -2 0 0 0; 0 0 0 0 0 1; 0 0 0 0 -3 0",
+        "0 0 0 0 0 0",
+        "1 0 1 0 1 0",
+    );
+    let quadratic: [(&str, &[u32]); 5] =
+        [("1", &[2]), ("1", &[0, 0, 2]), ("1", &[0, 0, 0, 0, 2]), ("1", &[1, 0, 1]), ("-101/25", &[])];
+    let mut group = c.benchmark_group("verdicts");
+    group.sample_size(10);
+    for (name, statement) in [
+        ("sum >= 2: inseparable", sum("-2", Relation::NonNegative)),
+        ("sum > 2: clear", sum("-2", Relation::Positive)),
+        ("sum >= 2.0001: clear", sum("-20001/10000", Relation::NonNegative)),
+        ("sum >= 1.99: enters", sum("-199/100", Relation::NonNegative)),
+        ("sum >= 1.99999: enters late", sum("-199999/100000", Relation::NonNegative)),
+        ("torus of dimension 3, degree 2, margin 1 %", three.statement(atom(&quadratic, Relation::NonNegative))),
+    ] {
+        group.bench_function(name, |b| b.iter(|| certify(black_box(&statement), &Options::default())));
+    }
+    group.finish();
+}
+
 /// A window of one cell at time t: the cost of a cell must not depend on t. The zone is entered at other times, so that no cone helps.
 fn cells(c: &mut Criterion) {
     let rotation = System::new("0 1; -1 0", "0 0", "1 0");
@@ -57,5 +84,5 @@ fn cells(c: &mut Criterion) {
     }
 }
 
-criterion_group!(benches, whole, cells);
+criterion_group!(benches, whole, verdicts, cells);
 criterion_main!(benches);

@@ -140,7 +140,7 @@ impl<'a> Attempt<'a> {
         let far = &t0 * Rational::from_integer(NEAR_END.into());
         let ends_soon = until.as_ref().is_some_and(|until| *until <= far);
         for attempt in 0..MAX_DOUBLINGS {
-            if attempt == PATIENCE {
+            if attempt == PATIENCE && until.is_none() {
                 self.enrich();
             }
             if let Some(until) = until.as_ref().filter(|until| **until <= t0) {

@@ -18,6 +18,9 @@ use num_traits::One;
 /// Classes of growth are split off this often.
 const MAX_DEPTH: u32 = 3;
 
+/// Functions of a greater order are left as they are: exact elimination gets dear.
+const MAX_ORDER: usize = 40;
+
 /// A sum of products of powers of functions.
 pub(crate) type SumOfProducts = Vec<Vec<(ExponentialPolynomial, u32)>>;
 
@@ -50,7 +53,7 @@ fn decompose_added(function: &ExponentialPolynomial, problem: &mut Problem) {
 
 /// Adds identities for a function.
 fn decompose(index: usize, depth: u32, problem: &mut Problem) {
-    let Some(function) = problem.function(index).filter(|f| !is_plain(f)) else { return };
+    let Some(function) = problem.function(index).filter(|f| !is_plain(f) && f.order() <= MAX_ORDER) else { return };
     if let Some((kappa, root)) = square_root(&function) {
         add(index, vec![vec![(ExponentialPolynomial::constant(kappa), 1), (root, 2)]], problem);
     } else if let Some(product) = periodic_factors(&function) {
