@@ -140,7 +140,8 @@ impl Draft {
         roots.sort_unstable();
         roots.dedup();
         let plan = Plan::for_roots(&roots, &mut problem, &mut enclosure)?;
-        let mut rows = Growths { plan, known: BTreeMap::new(), steps: Vec::new(), rates: Vec::new() };
+        let mut rows =
+            Growths { all: roots.clone(), plan, known: BTreeMap::new(), steps: Vec::new(), rates: Vec::new() };
         // Real roots first: doubled real parts are compared with them.
         let is_real = |r: &usize, enclosure: &Enclosure| enclosure.table.roots()[*r].is_real;
         roots.sort_by_key(|r| !is_real(r, &enclosure));
@@ -234,6 +235,8 @@ impl Draft {
 
 /// The real parts of roots as combinations. The first entry of a row is the rational part, in absolute terms.
 struct Growths {
+    /// The roots of all states.
+    all: Vec<usize>,
     plan: Plan,
     known: BTreeMap<usize, Vec<Rational>>,
     steps: Vec<Step>,
@@ -269,6 +272,10 @@ impl Growths {
             if !self.is_related(root, problem, enclosure)? {
                 self.push_base(root);
             }
+            return Some(());
+        }
+        if !is_suspect(root, &self.all, enclosure) {
+            self.push_base(root);
             return Some(());
         }
         // The double of the real part is a real root.
@@ -369,10 +376,22 @@ fn multiples(root: usize, known: &[usize], enclosure: &Enclosure) -> Vec<Vec<(i6
     found
 }
 
-/// Whether a sum may be a rational with a small numerator and denominator.
+/// Whether the real part of a root that is not real may be rational, or be related to that of another root.
+fn is_suspect(root: usize, all: &[usize], enclosure: &Enclosure) -> bool {
+    let plain = |index| RootRef { index, conjugate: false };
+    let others = all.iter().filter(|other| **other != root);
+    let pairs = others.flat_map(|b| [(1, 1), (1, -1), (1, 2), (2, 1), (1, -2), (2, -1)].map(|(n, m)| (n, *b, m)));
+    is_simple(&[(1, plain(root))], enclosure)
+        || pairs.into_iter().any(|(n, b, m)| is_simple(&[(n, plain(root)), (m, plain(b))], enclosure))
+}
+
+/// Whether the real part of a sum may be a rational with a small numerator and denominator.
 fn is_simple(parts: &[(i64, RootRef)], enclosure: &Enclosure) -> bool {
     let Some(value) = crate::strategy::equality::value(parts, enclosure) else { return false };
     let (Some(lo), Some(hi)) = (value.re.lo().to_rational(), value.re.hi().to_rational()) else { return false };
+    if lo.is_zero() || hi.is_zero() || lo.is_negative() != hi.is_negative() {
+        return true;
+    }
     let simplest = if hi.is_negative() { -simplest_between(&-hi, &-lo) } else { simplest_between(&lo, &hi) };
     let small = |n: &BigInt| n.abs() <= BigInt::from(MAX_TERM);
     small(simplest.numer()) && small(simplest.denom())
