@@ -140,3 +140,15 @@ fn decay_to_the_border_has_a_set_that_never_gets_there() {
     let proof = found(&rise.statement(above(&[1], "-1"))).expect("a set");
     assert!(matches!(proof.statement().claim, Claim::Region(_)));
 }
+
+#[test]
+fn frequencies_of_modes_with_different_damping_are_related() {
+    // Roots -1 +- 2i and -2 +- 3i: no sum of multiples of one is the other.
+    let modes = System::new("-1 2 0 0; -2 -1 0 0; 0 0 -2 3; 0 0 -3 -2", "0 0 0 0", "1 0 1 0");
+    let region =
+        region(&modes.statement(atom(&[("1", &[1]), ("1", &[0, 0, 1]), ("-5/2", &[])], Relation::NonNegative)));
+    assert_eq!(region.base.len(), 1);
+    let mut turns: Vec<i64> = region.exponents.iter().map(|e| e.turns[0]).collect();
+    turns.sort_unstable();
+    assert_eq!(turns, [2, 3]);
+}

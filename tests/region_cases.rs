@@ -50,8 +50,13 @@ fn bases() -> Vec<(&'static str, Certificate)> {
     let cubic = System::new("0 1 0; 0 0 1; -1 -1 0", "0 0 0", "1 0 0");
     let drift = System::new("0 1 0 0; 0 0 0 0; 0 0 0 1; 0 0 -2 0", "0 0 0 0", "0 1 1 0");
     let tanks = System::new("-1 0; 0 -2", "1 1", "0 0");
+    let modes = System::new("-1 2 0 0; -2 -1 0 0; 0 0 -2 3; 0 0 -3 -2", "0 0 0 0", "1 0 1 0");
     let x: &[u32] = &[1];
     vec![
+        (
+            "damped_modes",
+            found(&modes.statement(atom(&[("1", x), ("1", &[0, 0, 1]), ("-5/2", &[])], Relation::NonNegative))),
+        ),
         ("circle", found(&rotation.statement(above("-11/10")))),
         (
             "circle_exactly",

@@ -9,7 +9,7 @@ use crate::options::Options;
 use crate::problem::Problem;
 use crate::strategy::cone::{Plan, approx_dyadic, common_line, first_start, widest};
 use crate::strategy::pivot::simplest_between;
-use keepout_checker::certificate::{Certificate, Evidence, Factor, Node, RootRef, Sign};
+use keepout_checker::certificate::{Certificate, Evidence, Factor, Node, RootRef, Sign, Sum};
 use keepout_checker::expansion::{Expansion, Frame};
 use keepout_checker::lead::{AngleBox, LeadForm, halves, whole_torus};
 use keepout_checker::limits::Budget;
@@ -125,7 +125,8 @@ struct Draft {
     rates: Vec<usize>,
     scale: Rational,
     growths: Vec<Step>,
-    plan: Plan,
+    angles: Angles,
+    sums: Vec<Sum>,
     /// Whether some state has a power of t.
     has_powers: bool,
 }
@@ -139,8 +140,16 @@ impl Draft {
         let mut roots: Vec<usize> = terms().map(|t| t.root).collect();
         roots.sort_unstable();
         roots.dedup();
-        let plan = Plan::for_roots(&roots, &mut problem, &mut enclosure)?;
-        let mut rows = Growths { plan, known: BTreeMap::new(), steps: Vec::new(), rates: Vec::new() };
+        let mut plan = Plan::for_roots(&roots, &mut problem, &mut enclosure)?;
+        let mut angles = Angles::of(&plan);
+        if may_be_commensurable(&plan.base, &enclosure)
+            && let Some(fewer) = Angles::by_differences(&roots, &mut plan, &mut problem, &mut enclosure)
+            && fewer.base.len() < angles.base.len()
+        {
+            angles = fewer;
+        }
+        let mut rows =
+            Growths { all: roots.clone(), plan, known: BTreeMap::new(), steps: Vec::new(), rates: Vec::new() };
         // Real roots first: doubled real parts are compared with them.
         let is_real = |r: &usize, enclosure: &Enclosure| enclosure.table.roots()[*r].is_real;
         roots.sort_by_key(|r| !is_real(r, &enclosure));
@@ -154,7 +163,8 @@ impl Draft {
             // Rows were made while the number of base rates grew.
             step.row.resize(rates.len() + 1, Rational::zero());
         }
-        Some(Self { problem, enclosure, roots, rates, scale, growths: steps, plan, has_powers })
+        let sums = plan.sums;
+        Some(Self { problem, enclosure, roots, rates, scale, growths: steps, angles, sums, has_powers })
     }
 
     fn row(&self, root: usize) -> Option<&Vec<Rational>> {
@@ -180,10 +190,10 @@ impl Draft {
             .roots
             .iter()
             .map(|root| {
-                Some(Exponent { root: place(*root), growth: self.row(*root)?.clone(), turns: self.plan.turns(*root) })
+                Some(Exponent { root: place(*root), growth: self.row(*root)?.clone(), turns: self.angles.turns(*root) })
             })
             .collect::<Option<Vec<_>>>()?;
-        let base = self.plan.base.iter().map(|root| place(*root)).collect();
+        let base = self.angles.base.iter().map(|root| place(*root)).collect();
         let grid = Rational::from_integer(band.into());
         let rates = self
             .rates
@@ -202,7 +212,7 @@ impl Draft {
     /// The positions in the table of the roots that [`Self::region`] lists.
     fn positions(&self) -> Vec<usize> {
         let mut positions: Vec<usize> = Vec::new();
-        for root in self.roots.iter().chain(&self.plan.base).chain(&self.rates) {
+        for root in self.roots.iter().chain(&self.angles.base).chain(&self.rates) {
             if !positions.contains(root) {
                 positions.push(*root);
             }
@@ -213,12 +223,6 @@ impl Draft {
     fn certificate(self, region: Region, log_start: Rational, leads: Vec<RegionLead>, nodes: Vec<Node>) -> Certificate {
         let roots = self.positions();
         let claim = Claim::Region(Box::new(region));
-        let angle = |a: &keepout_checker::certificate::Angle| Step {
-            root: a.root,
-            row: a.turns.iter().map(|n| Rational::from_integer((*n).into())).collect(),
-            reason: a.sum.map_or(Reason::Base, Reason::Sum),
-        };
-        let angles = self.plan.angles.iter().map(angle).collect();
         Certificate {
             statement: Statement { claim, ..self.problem.statement.clone() },
             bits: self.enclosure.bits,
@@ -226,14 +230,115 @@ impl Draft {
             traces: self.problem.factors[..self.problem.traces()].to_vec(),
             auxiliaries: Vec::new(),
             identities: Vec::new(),
-            sums: self.plan.sums,
-            evidence: Evidence::Region(RegionProof { roots, log_start, growths: self.growths, angles, leads, nodes }),
+            sums: self.sums,
+            evidence: Evidence::Region(RegionProof {
+                roots,
+                log_start,
+                growths: self.growths,
+                angles: self.angles.steps,
+                leads,
+                nodes,
+            }),
         }
     }
 }
 
+/// The imaginary parts of roots as combinations.
+struct Angles {
+    base: Vec<usize>,
+    steps: Vec<Step>,
+}
+
+/// Whether the ratio of two base frequencies may be rational with small terms.
+fn may_be_commensurable(base: &[usize], enclosure: &Enclosure) -> bool {
+    let frequency = |root: usize| approx_dyadic(enclosure.table.roots()[root].value.im.lo());
+    let close = |a: f64, b: f64| (a - b).abs() < 1e-9 * a;
+    let pairs = base.iter().enumerate().flat_map(|(i, a)| base[i + 1..].iter().map(move |b| (*a, *b)));
+    pairs
+        .into_iter()
+        .any(|(a, b)| (1..=6).any(|n| (1..=6).any(|m| close(f64::from(n) * frequency(a), f64::from(m) * frequency(b)))))
+}
+
+impl Angles {
+    fn of(plan: &Plan) -> Self {
+        let steps = plan.angles.iter().map(|a| Step {
+            root: a.root,
+            row: a.turns.iter().map(|n| Rational::from_integer((*n).into())).collect(),
+            reason: a.sum.map_or(Reason::Base, Reason::Sum),
+        });
+        Self { base: plan.base.clone(), steps: steps.collect() }
+    }
+
+    /// The turns of a root; a real one has none.
+    fn turns(&self, root: usize) -> Vec<i64> {
+        let row = self.steps.iter().rev().find(|step| step.root == root).map(|step| &step.row);
+        let whole = |row: &Vec<Rational>| row.iter().map(|n| n.to_integer().to_i64().unwrap_or(0)).collect();
+        row.map_or_else(|| vec![0; self.base.len()], whole)
+    }
+
+    /// Angles of roots of different real parts, whose sums cannot show that their frequencies are related: by the roots
+    /// mu - conj mu, which are purely imaginary, over halves of base roots among these.
+    fn by_differences(
+        roots: &[usize],
+        plan: &mut Plan,
+        problem: &mut Problem,
+        enclosure: &mut Enclosure,
+    ) -> Option<Self> {
+        let mut differences = Vec::new();
+        for root in roots.iter().filter(|r| !enclosure.table.roots()[**r].is_real).copied().collect::<Vec<_>>() {
+            let pair = [(1, RootRef { index: root, conjugate: false }), (-1, RootRef { index: root, conjugate: true })];
+            let sum = plan.sum(&pair, problem, enclosure)??;
+            differences.push((root, sum, plan.sums[sum].root.index));
+        }
+        let imaginary: Vec<usize> = differences.iter().map(|(_, _, index)| *index).collect();
+        let inner = Plan::for_roots(&imaginary, problem, enclosure)?;
+        let offset = plan.sums.len();
+        plan.sums.extend(inner.sums.iter().cloned());
+        let mut angles = Self { base: Vec::new(), steps: Vec::new() };
+        let row =
+            |turns: &[i64], times: i64| turns.iter().map(|n| Rational::from_integer((n * times).into())).collect();
+        for base in &inner.base {
+            let half = half_root(*base, problem, enclosure)?;
+            let sum = plan.sum(&[(2, RootRef { index: half, conjugate: false })], problem, enclosure)??;
+            let turns = inner.turns(*base);
+            angles.base.push(half);
+            angles.steps.push(Step { root: half, row: row(&turns, 1), reason: Reason::Base });
+            angles.steps.push(Step { root: *base, row: row(&turns, 2), reason: Reason::Sum(sum) });
+        }
+        for angle in &inner.angles {
+            if let Some(sum) = angle.sum {
+                let reason = Reason::Sum(offset + sum);
+                angles.steps.push(Step { root: angle.root, row: row(&angle.turns, 2), reason });
+            }
+        }
+        for (root, sum, difference) in differences {
+            angles.steps.push(Step { root, row: row(&inner.turns(difference), 1), reason: Reason::Sum(sum) });
+        }
+        Some(angles)
+    }
+}
+
+/// The half of a root, as a root of a family of its own.
+fn half_root(root: usize, problem: &mut Problem, enclosure: &mut Enclosure) -> Option<usize> {
+    let family = enclosure.table.roots()[root].family;
+    let halved = problem.families[family].dilate_up(&BigInt::from(2)).primitive_part();
+    let position = problem.family(&halved)?;
+    enclosure.renew(problem)?;
+    let double = Interval::integer(2);
+    let roots = enclosure.table.roots();
+    let is_half = |r: &keepout_checker::root::Root| {
+        let value = r.value.mul_real(&double, enclosure.bits);
+        r.family == position
+            && !value.re.is_disjoint(&roots[root].value.re)
+            && !value.im.is_disjoint(&roots[root].value.im)
+    };
+    roots.iter().position(is_half)
+}
+
 /// The real parts of roots as combinations. The first entry of a row is the rational part, in absolute terms.
 struct Growths {
+    /// The roots of all states.
+    all: Vec<usize>,
     plan: Plan,
     known: BTreeMap<usize, Vec<Rational>>,
     steps: Vec<Step>,
@@ -269,6 +374,10 @@ impl Growths {
             if !self.is_related(root, problem, enclosure)? {
                 self.push_base(root);
             }
+            return Some(());
+        }
+        if !is_suspect(root, &self.all, enclosure) {
+            self.push_base(root);
             return Some(());
         }
         // The double of the real part is a real root.
@@ -369,10 +478,22 @@ fn multiples(root: usize, known: &[usize], enclosure: &Enclosure) -> Vec<Vec<(i6
     found
 }
 
-/// Whether a sum may be a rational with a small numerator and denominator.
+/// Whether the real part of a root that is not real may be rational, or be related to that of another root.
+fn is_suspect(root: usize, all: &[usize], enclosure: &Enclosure) -> bool {
+    let plain = |index| RootRef { index, conjugate: false };
+    let others = all.iter().filter(|other| **other != root);
+    let pairs = others.flat_map(|b| [(1, 1), (1, -1), (1, 2), (2, 1), (1, -2), (2, -1)].map(|(n, m)| (n, *b, m)));
+    is_simple(&[(1, plain(root))], enclosure)
+        || pairs.into_iter().any(|(n, b, m)| is_simple(&[(n, plain(root)), (m, plain(b))], enclosure))
+}
+
+/// Whether the real part of a sum may be a rational with a small numerator and denominator.
 fn is_simple(parts: &[(i64, RootRef)], enclosure: &Enclosure) -> bool {
     let Some(value) = crate::strategy::equality::value(parts, enclosure) else { return false };
     let (Some(lo), Some(hi)) = (value.re.lo().to_rational(), value.re.hi().to_rational()) else { return false };
+    if lo.is_zero() || hi.is_zero() || lo.is_negative() != hi.is_negative() {
+        return true;
+    }
     let simplest = if hi.is_negative() { -simplest_between(&-hi, &-lo) } else { simplest_between(&lo, &hi) };
     let small = |n: &BigInt| n.abs() <= BigInt::from(MAX_TERM);
     small(simplest.numer()) && small(simplest.denom())
@@ -493,7 +614,7 @@ impl<'a> Attempt<'a> {
     /// A bisection with the zone false on each leaf; `None`: the zone may meet the set.
     fn bisected(&self, effort: &mut u64) -> Result<Option<Vec<Node>>, RegionFailure> {
         let mut nodes = Vec::new();
-        let mut open = vec![(whole_torus(self.draft.plan.base.len()), 0_u64)];
+        let mut open = vec![(whole_torus(self.draft.angles.base.len()), 0_u64)];
         while let Some((angles, depth)) = open.pop() {
             let limits = &self.options.limits;
             if *effort == 0 {
