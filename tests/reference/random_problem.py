@@ -335,11 +335,14 @@ def beside(rng, problem, plain, form, start, end, extreme, expected):
         top = greatest(x, start, end) if problem.kind != "dense" or end is not None else Trace({})
         if top.value is None or not top.known:
             return *plain, expected
-        level = F(round(float(top.value.mid()))) + 2
+        value = float(top.value.mid())
+        level = F(round(value + abs(value) / 1000)) + 2
         return f"{plain[0]} or x{i} >= {level}", ("or", plain[1], ("atom", x.shifted(-level), ">=")), expected
     if extreme.at is None:
         return *plain, expected
-    level = F(round(float(x.at(extreme.at).mid()))) - 2
+    # With room for the rounding of great values.
+    value = float(x.at(extreme.at).mid())
+    level = F(round(value - abs(value) / 1000)) - 2
     return f"{plain[0]} and x{i} > ({level})", ("and", plain[1], ("atom", x.shifted(-level), ">")), expected
 
 
