@@ -1,6 +1,7 @@
 //! Real and imaginary parts of roots as combinations of base rates and base frequencies.
 
 use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::limits::Budget;
 use crate::model::Setting;
 use crate::number::Rational;
 use crate::region::{Reason, Step};
@@ -27,6 +28,7 @@ pub(crate) fn rows(
     base: &[usize],
     scale: &Rational,
     on: Setting,
+    budget: &mut Budget,
 ) -> Result<Rows, Rejection> {
     let obligation = match part {
         Part::Real => Obligation::RateIsCombination,
@@ -49,6 +51,7 @@ pub(crate) fn rows(
             }
             Reason::Line(line) => {
                 let on_line = Duty::new(Rule::Equality, Obligation::RootIsOnLine, step.root);
+                on.model.table.spend_reflection(step.root, budget)?;
                 let decided = on.model.table.is_on_line(step.root, line, on.certificate.bits);
                 on_line.ensure(decided.ok_or_else(|| on_line.inconclusive())?)?;
                 unit.iter_mut().take(1).for_each(|slot| *slot = line / scale);

@@ -38,7 +38,7 @@ impl Leads {
             // A line of symmetry is shown by a product of polynomials for each root.
             let size = model.table.roots().len();
             budget.spend((size * size).saturating_mul(64 * lead.roots.len()) + 100 * size, certificate.bits)?;
-            let rho_lo = check_real_parts(lead, on)?;
+            let rho_lo = check_real_parts(lead, on, budget)?;
             let mut leading = Vec::new();
             for root in &lead.roots {
                 let known = Duty::new(Rule::Cone, Obligation::AngleIsCombination, *root);
@@ -98,7 +98,7 @@ impl Leads {
 }
 
 /// Checks that the leading roots have equal real parts; returns a lower bound of it.
-fn check_real_parts(lead: &Lead, on: Setting) -> Result<Dyadic, Rejection> {
+fn check_real_parts(lead: &Lead, on: Setting, budget: &mut Budget) -> Result<Dyadic, Rejection> {
     let Setting { certificate, model, .. } = on;
     let equal = Duty::new(Rule::Cone, Obligation::RealPartsAreEqual, lead.function);
     match &lead.real_part {
@@ -106,6 +106,7 @@ fn check_real_parts(lead: &Lead, on: Setting) -> Result<Dyadic, Rejection> {
         RealPart::Line(line) => {
             for root in &lead.roots {
                 let on_line = Duty::new(Rule::Equality, Obligation::RootIsOnLine, *root);
+                model.table.spend_reflection(*root, budget)?;
                 let decided =
                     model.table.is_on_line(*root, line, certificate.bits).ok_or_else(|| on_line.inconclusive())?;
                 on_line.ensure(decided)?;

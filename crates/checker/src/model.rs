@@ -8,6 +8,7 @@ use crate::exponential::products;
 use crate::formula::IndexedFormula;
 use crate::limits::{Budget, Limits, within};
 use crate::number::Rational;
+use crate::polynomial::{Polynomial, length};
 use crate::root::RootTable;
 use crate::sequence::{Flow, Sequence};
 use crate::signs::{SignSet, narrow};
@@ -97,7 +98,7 @@ impl Model {
                 functions.push(Function { sequence, form, factors: Vec::new(), products });
                 continue;
             }
-            check_degree(factors, &table, limits)?;
+            check_degree(factors, &table, limits, budget)?;
             let (order, sequence) = flow.trace(polynomial, budget)?;
             let m = table.product(factors).ok_or_else(|| fits.refuted())?;
             // The order bound N holds for m(d/dt) g: N vanishing derivatives at 0 make it zero (see `Flow::order_bound`).
@@ -109,7 +110,7 @@ impl Model {
         }
         for auxiliary in &certificate.auxiliaries {
             let (position, factors) = (functions.len(), &auxiliary.factors);
-            let degree = check_degree(factors, &table, limits)?;
+            let degree = check_degree(factors, &table, limits, budget)?;
             let duty = Duty::new(Rule::Trace, Obligation::ClosedFormIsEnclosed, position);
             duty.ensure(auxiliary.derivatives.len() == degree && !factors.is_empty())?;
             let form = ClosedForm::new(factors, &auxiliary.derivatives, &table, bits, position, budget)?;
@@ -127,6 +128,13 @@ impl Model {
         let degree = |f: &Factor| self.table.polynomial(f.family).map_or(0, |p| p.degree());
         let times = |f: &Factor| usize::try_from(f.multiplicity).unwrap_or(usize::MAX);
         function.factors.iter().map(|f| degree(f).saturating_mul(times(f))).sum()
+    }
+
+    /// About the bits of the first `count` derivatives at 0 of a function: each step multiplies by the coefficients of the families.
+    fn length(&self, function: &Function, count: usize) -> usize {
+        let step = function.factors.iter().filter_map(|f| self.table.polynomial(f.family)).map(Polynomial::length);
+        let start = function.sequence.derivatives(self.degree(function)).iter().map(length).max().unwrap_or(0);
+        step.fold(0, usize::saturating_add).saturating_mul(count).saturating_add(start)
     }
 
     /// The first `count` derivatives at 0 of a function, from as many as its annihilator's degree.
@@ -154,21 +162,36 @@ impl Model {
         let duty = Duty::new(Rule::Trace, Obligation::IdentityHolds, position);
         let function = |index: &usize| self.functions.get(*index).ok_or_else(|| duty.refuted());
         let mut bound = self.degree(function(&identity.target)?);
-        let mut products = 1_usize;
+        self.table.spend_product(&function(&identity.target)?.factors, budget)?;
         for summand in &identity.summands {
             let mut ways = 1_usize;
             for (index, power) in summand {
+                self.table.spend_product(&function(index)?.factors, budget)?;
                 let degree = self.degree(function(index)?);
                 for i in 1..=usize::try_from(*power).unwrap_or(usize::MAX) {
                     ways = ways.saturating_mul((degree + i).saturating_sub(1)) / i;
-                    products += 1;
                     within("derivatives", ways, limits.derivatives)?;
                 }
             }
             bound = bound.saturating_add(ways);
             within("derivatives", bound, limits.derivatives)?;
         }
-        budget.spend(bound.saturating_mul(bound).saturating_mul(products), 64)?;
+        // Products of numbers of v and w words: about 64 products of words cost as much as a step.
+        let words = |bits: usize| bits / 64 + 1;
+        let mut steps = 1_usize;
+        for summand in &identity.summands {
+            let mut factors = Vec::new();
+            for (index, power) in summand {
+                let times = usize::try_from(*power).unwrap_or(usize::MAX);
+                factors.push((times, self.length(function(index)?, bound)));
+            }
+            let all = factors.iter().fold(0_usize, |sum, (n, bits)| sum.saturating_add(bits.saturating_mul(*n)));
+            let cost = |bits: usize| words(all).saturating_mul(words(bits)) / 64 + 1;
+            steps = factors.iter().fold(steps, |sum, (n, bits)| sum.saturating_add(cost(*bits).saturating_mul(*n)));
+        }
+        let target = words(self.length(function(&identity.target)?, bound));
+        steps = steps.saturating_add(target.saturating_mul(target) / 64);
+        budget.spend(bound.saturating_mul(bound).saturating_mul(steps), 1)?;
         let mut sum = Sequence::from_rationals(&vec![Rational::zero(); bound]);
         for summand in &identity.summands {
             let mut product = Sequence::constant(&Rational::one(), &BigInt::one(), bound);
@@ -186,7 +209,12 @@ impl Model {
 }
 
 /// The degree of a product of families, within the limit, with each family at most once.
-fn check_degree(factors: &[Factor], table: &RootTable, limits: &Limits) -> Result<usize, Rejection> {
+fn check_degree(
+    factors: &[Factor],
+    table: &RootTable,
+    limits: &Limits,
+    budget: &mut Budget,
+) -> Result<usize, Rejection> {
     let mut degree = 0_usize;
     for (i, factor) in factors.iter().enumerate() {
         let once = factors.iter().take(i).all(|other| other.family != factor.family);
@@ -195,6 +223,7 @@ fn check_degree(factors: &[Factor], table: &RootTable, limits: &Limits) -> Resul
         degree = degree.saturating_add(size.saturating_mul(usize::try_from(factor.multiplicity).unwrap_or(usize::MAX)));
         within("roots", degree, limits.roots)?;
     }
+    table.spend_product(factors, budget)?;
     Ok(degree)
 }
 

@@ -41,6 +41,17 @@ impl Polynomial {
         self.coefficients.last().is_some_and(One::is_one)
     }
 
+    /// The mean of the roots of a monic polynomial; `None` for a constant.
+    pub fn mean(&self) -> Option<Rational> {
+        let second = self.coefficients.get(self.degree().checked_sub(1)?)?;
+        Some(-second / Rational::from_integer(self.degree().into()))
+    }
+
+    /// The bits of all coefficients.
+    pub fn length(&self) -> usize {
+        self.coefficients.iter().map(length).fold(0, usize::saturating_add)
+    }
+
     /// self * other.
     pub fn mul(&self, other: &Self) -> Self {
         let length = (self.coefficients.len() + other.coefficients.len()).saturating_sub(1);
@@ -104,4 +115,9 @@ impl Polynomial {
         }
         sums
     }
+}
+
+/// The bits of a number.
+pub fn length(x: &Rational) -> usize {
+    usize::try_from(x.numer().bits().saturating_add(x.denom().bits())).unwrap_or(usize::MAX)
 }

@@ -13,7 +13,7 @@ use crate::error::{Duty, Obligation, Rejection, Rule};
 use crate::limits::Budget;
 use crate::number::Direction::Up;
 use crate::number::{Complex, Dyadic, Interval, Rational};
-use crate::polynomial::Polynomial;
+use crate::polynomial::{Polynomial, length};
 use std::cmp::Ordering;
 
 /// One root: a disc that holds it and no other root of any family.
@@ -107,6 +107,28 @@ impl RootTable {
         })
     }
 
+    /// Accounts for the product of families with multiplicity: numbers as long as all coefficients together.
+    pub fn spend_product(&self, factors: &[Factor], budget: &mut Budget) -> Result<(), Rejection> {
+        let (mut degree, mut length) = (0_usize, 0_usize);
+        for factor in factors {
+            let Some(polynomial) = self.families.get(factor.family) else { continue };
+            let times = usize::try_from(factor.multiplicity).unwrap_or(usize::MAX);
+            degree = degree.saturating_add(polynomial.degree().saturating_mul(times));
+            length = length.saturating_add(polynomial.length().saturating_mul(times));
+        }
+        budget.spend(degree.saturating_mul(degree), u32::try_from(length).unwrap_or(u32::MAX))
+    }
+
+    /// Accounts for the reflection of a root's polynomial about the mean of its roots, and for clearing denominators after that:
+    /// numbers as long as all coefficients and the mean's power of the degree.
+    pub fn spend_reflection(&self, index: usize, budget: &mut Budget) -> Result<(), Rejection> {
+        let Some(polynomial) = self.roots.get(index).and_then(|r| self.families.get(r.family)) else { return Ok(()) };
+        let degree = polynomial.degree();
+        let mean = polynomial.mean().map_or(0, |a| length(&a));
+        let bits = polynomial.length().saturating_add(degree.saturating_mul(mean));
+        budget.spend(degree.saturating_mul(degree), u32::try_from(bits).unwrap_or(u32::MAX))
+    }
+
     /// The roots that the members of `value` can be, among all roots of the families; conjugates stand for themselves.
     pub fn candidates(&self, value: &Complex, families: &[Factor]) -> Vec<RootRef> {
         let mut found = Vec::new();
@@ -133,6 +155,10 @@ impl RootTable {
     pub fn is_on_line(&self, index: usize, line: &Rational, bits: u32) -> Option<bool> {
         let root = self.roots.get(index)?;
         let polynomial = self.families.get(root.family)?;
+        // Symmetry about a line maps the roots to themselves, so their mean is on it.
+        if polynomial.mean().as_ref() != Some(line) {
+            return Some(false);
+        }
         let reflected = polynomial.reflected(&(line + line));
         let sign = Rational::from_integer(if polynomial.degree() % 2 == 0 { 1_i32 } else { -1_i32 }.into());
         let symmetric =

@@ -289,3 +289,32 @@ fn verified_statements_need_no_particular_precision() {
     let found = check(&coarse.statement, &coarse, &Limits::default());
     assert!(matches!(found, Ok(_) | Err(Rejection::Inconclusive { .. })), "{found:?}");
 }
+
+/// The decay with a further function: a root of this many digits and multiplicity, and an identity that it is its own 24th power.
+fn with_long_numbers(digits: usize, multiplicity: usize, identity: bool) -> String {
+    let root = format!("1{}", "0".repeat(digits));
+    let family = r#"{"polynomial": ["1", "1"], "centres": [{"re": "-1", "im": "0"}]}"#;
+    let further =
+        format!(r#"{family}, {{"polynomial": ["-{root}", "1"], "centres": [{{"re": "{root}", "im": "0"}}]}}"#);
+    let derivatives = vec![r#""1""#; multiplicity].join(", ");
+    let factors = format!(r#"[{{"family": "2", "multiplicity": "{multiplicity}"}}]"#);
+    let auxiliaries = format!(r#""auxiliaries": [{{"factors": {factors}, "derivatives": [{derivatives}]}}]"#);
+    let text = changed(&changed(DECAY, family, &further), r#""auxiliaries": []"#, &auxiliaries);
+    let identities = r#""identities": [{"target": "1", "summands": [["1^24"]]}]"#;
+    if identity { changed(&text, r#""identities": []"#, identities) } else { text }
+}
+
+#[test]
+fn long_numbers_count_as_work() {
+    let is_beyond = |text: &str| matches!(answer(text), Err(Rejection::LimitExceeded { limit: "work", .. }));
+    // A product of families.
+    assert_eq!(answer(&with_long_numbers(1, 4, false)), Ok(()));
+    assert!(is_beyond(&with_long_numbers(9_000, 600, false)));
+    // The derivatives that prove an identity.
+    assert!(matches!(answer(&with_long_numbers(1, 2, true)), Err(Rejection::Refuted { .. })));
+    assert!(is_beyond(&with_long_numbers(9_000, 4, true)));
+    // The reflection about a line that is not the mean of the roots.
+    let line = format!(r#""roots": ["0"], "line": "1/1{}""#, "0".repeat(9_000));
+    let on_line = refuted(Rule::Equality, Obligation::RootIsOnLine);
+    assert_eq!(refusal(DECAY, r#""roots": ["0"]"#, &line), on_line);
+}

@@ -26,6 +26,9 @@ pub(crate) fn check(meeting: &Meeting, on: Setting, budget: &mut Budget) -> Chec
     let rule = Rule::Inseparable;
     let leads = Leads::new(&meeting.far, rule, on, budget)?;
     let independent = Duty::new(rule, Obligation::FrequenciesAreIndependent, 0);
+    for root in &meeting.far.base {
+        on.model.table.spend_reflection(*root, budget)?;
+    }
     let decided = are_independent(&meeting.far.base, on).ok_or_else(|| independent.inconclusive())?;
     independent.ensure(decided && meeting.angles.len() == meeting.far.base.len())?;
     let mut signs = on.no_signs();
@@ -99,9 +102,8 @@ fn integral(root: usize, on: Setting) -> Option<(BigInt, BigInt)> {
     let table = &on.model.table;
     let polynomial = table.polynomial(table.roots().get(root)?.family)?;
     let degree = polynomial.degree();
-    let second = polynomial.coefficients().get(degree.checked_sub(1)?)?;
-    // The mean of the roots: the only rational that can be the real part by symmetry.
-    let line = -second / Rational::from_integer(degree.into());
+    // The only rational that can be the real part by symmetry.
+    let line = polynomial.mean()?;
     if table.is_on_line(root, &line, on.certificate.bits) != Some(true) {
         return None;
     }

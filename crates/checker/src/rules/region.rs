@@ -32,7 +32,7 @@ pub(crate) fn check(region: &Region, proof: &RegionProof, on: Setting, budget: &
     let size = table.roots().len();
     budget.spend((proof.growths.len() + region.roots.len()).saturating_mul(64 * size * size), on.certificate.bits)?;
     check_roots(region, proof, on)?;
-    check_exponents(region, proof, on)?;
+    check_exponents(region, proof, on, budget)?;
     check_bounds(region, proof, on)?;
     let unlisted = Duty::new(Rule::Region, Obligation::ExponentsAreListed, 0);
     let frame = Frame::new(region, &proof.roots, table, on.certificate.bits).ok_or_else(|| unlisted.refuted())?;
@@ -71,14 +71,14 @@ fn is_within(x: &Interval, (lo, hi): &(Rational, Rational), bits: u32) -> bool {
 /// The real and imaginary parts of all exponents of the set are as listed, and an exponent that may be 0 has no growth and no turns.
 ///
 /// The latter: a constant offset of the equations is matched by the term with exponent 0 alone, which must not be moved.
-fn check_exponents(region: &Region, proof: &RegionProof, on: Setting) -> Checked {
+fn check_exponents(region: &Region, proof: &RegionProof, on: Setting, budget: &mut Budget) -> Checked {
     let listed = Duty::new(Rule::Region, Obligation::ExponentsAreListed, 0);
     let root = |position: &usize| proof.roots.get(*position).copied().ok_or_else(|| listed.refuted());
     let rates = region.rates.iter().map(|rate| root(&rate.root)).collect::<Result<Vec<_>, _>>()?;
     let base = region.base.iter().map(root).collect::<Result<Vec<_>, _>>()?;
     listed.ensure(region.scale.is_positive())?;
-    let growths = rows(&proof.growths, Part::Real, &rates, &region.scale, on)?;
-    let angles = rows(&proof.angles, Part::Imaginary, &base, &region.scale, on)?;
+    let growths = rows(&proof.growths, Part::Real, &rates, &region.scale, on, budget)?;
+    let angles = rows(&proof.angles, Part::Imaginary, &base, &region.scale, on, budget)?;
     for exponent in &region.exponents {
         let index = root(&exponent.root)?;
         let found = on.model.table.roots().get(index).ok_or_else(|| listed.refuted())?;
