@@ -2,7 +2,7 @@
 
 use keepout_checker::number::Rational;
 use keepout_checker::statement::{
-    Affine, Atom, Claim, Expression, Formula, Phase, Relation, State, Statement, Term, Variable, Zone,
+    Affine, Atom, Claim, Expression, Formula, Phase, Relation, Starts, State, Statement, Term, Variable, Zone,
 };
 
 /// A rational from `p` or `p/q`.
@@ -58,10 +58,13 @@ impl System {
         Statement {
             title: "test".into(),
             states: states.map(|(i, s)| State { name: format!("x{i}"), unit: None, start: s.clone() }).collect(),
+            starts: Starts::One,
+            disturbances: Vec::new(),
+            uncertain: Vec::new(),
             drives: vec![],
             outputs: vec![],
             exponentials: Vec::new(),
-            phases: vec![Phase { rates: rates.collect() }],
+            phases: vec![Phase { rates: rates.collect(), uncertain: Vec::new() }],
             zone: Zone { name: "zone".into(), reference: None, inside, from: rational("0"), until: None },
             claim: Claim::Never { margin: rational("0") },
         }

@@ -32,6 +32,8 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     // polynomials with all their roots, ...). Both types can be built in memory, so it is ensured here for each caller.
     certificate.ensure_readable(limits)?;
     let mut budget = Budget::new(limits);
+    // SOUND: the rules below speak of the one trajectory from the states' own starts.
+    Duty::new(Rule::Cover, Obligation::EvidenceFitsClaim, 0).ensure(statement.is_single())?;
     let model = Model::new(certificate, limits, &mut budget)?;
     let on = Setting { certificate, model: &model, limits };
     for (position, sum) in certificate.sums.iter().enumerate() {

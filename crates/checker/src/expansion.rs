@@ -146,7 +146,7 @@ impl<'a> Frame<'a> {
                         Some(output) => self.expand(&output.value, statement, coordinates, limits, budget)?,
                         None => None,
                     },
-                    Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => None,
+                    Variable::Drive(_) | Variable::Time | Variable::Exponential(_) | Variable::Disturbance(_) => None,
                 };
                 let Some(factor) = factor else { return Ok(None) };
                 within("degree", usize::try_from(*exponent).unwrap_or(usize::MAX), limits.degree)?;

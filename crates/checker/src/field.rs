@@ -134,6 +134,12 @@ impl<'a> Field<'a> {
         Ok(count)
     }
 
+    /// A small integer, at most `max` either way.
+    pub(crate) fn integer_within(&self, max: i32) -> Result<i32, Rejection> {
+        let value = self.text()?.parse::<i32>().ok().filter(|n| (-max..=max).contains(n));
+        value.ok_or_else(|| self.refuse("a small integer"))
+    }
+
     /// A position in a list of this length.
     pub(crate) fn position(&self, length: usize) -> Result<usize, Rejection> {
         let position = self.text()?.parse::<usize>().ok().filter(|p| *p < length);

@@ -1,7 +1,8 @@
 //! Derivatives at t = 0 of everything that a statement speaks of, exactly.
 //!
 //! y_k = g^(k)(0) for states, drives, t and polynomials in them: states by x^(k+1) = A x^(k) + B u^(k) (+ c for k = 0),
-//! products by the Leibniz rule (f g)_k = sum_j binom(k, j) f_j g_(k-j).
+//! products by the Leibniz rule (f g)_k = sum_j binom(k, j) f_j g_(k-j). For many trajectories: of the one from the centre of the
+//! starts, each disturbance constant in the middle of its range, without the uncertain terms.
 //!
 //! Representation: y_k = value_k / (denominator rate^k) with integers, so that no common divisor is ever taken.
 //! `rate` is one positive integer for all sequences of a statement: it clears the denominators of the dynamics.
@@ -10,7 +11,7 @@ use crate::error::Rejection;
 use crate::limits::{Budget, Limits, within};
 use crate::number::Rational;
 use crate::polynomial::Polynomial;
-use crate::statement::{Affine, Drive, Expression, SignalTerm, Statement, Variable, Wave};
+use crate::statement::{Affine, Disturbance, Drive, Expression, SignalTerm, Statement, Variable, Wave};
 use num_bigint::BigInt;
 use num_integer::Integer;
 use num_traits::{One, Zero};
@@ -183,7 +184,7 @@ impl<'a> Flow<'a> {
                     open.extend(self.statement.outputs.get(i).into_iter().flat_map(|o| variables(&o.value)));
                 }
                 // An exponential is split off before; one that is left is not known to `evaluate`.
-                Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => {}
+                Variable::Drive(_) | Variable::Time | Variable::Exponential(_) | Variable::Disturbance(_) => {}
             }
         }
         support
@@ -192,7 +193,11 @@ impl<'a> Flow<'a> {
     fn degree(&self, expression: &Expression) -> usize {
         let weight = |variable: &Variable| match variable {
             Variable::Output(i) => self.statement.outputs.get(*i).map_or(0, |o| self.degree(&o.value)),
-            Variable::State(_) | Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => 1,
+            Variable::State(_)
+            | Variable::Drive(_)
+            | Variable::Time
+            | Variable::Exponential(_)
+            | Variable::Disturbance(_) => 1,
         };
         let factor = |(v, k): &(Variable, u32)| weight(v).saturating_mul(usize::try_from(*k).unwrap_or(usize::MAX));
         let degree = |powers: &[(Variable, u32)]| powers.iter().map(factor).fold(0, usize::saturating_add);
@@ -222,7 +227,8 @@ impl<'a> Flow<'a> {
             match variable {
                 Variable::State(_) => dimension += 1,
                 Variable::Time => raise((&zero, None), 1),
-                Variable::Output(_) | Variable::Exponential(_) => {}
+                // A disturbance stands for a constant; 1 is counted already.
+                Variable::Output(_) | Variable::Exponential(_) | Variable::Disturbance(_) => {}
                 Variable::Drive(i) => {
                     for term in self.statement.drives.get(i).into_iter().flat_map(|d| &d.signal) {
                         let frequency = match &term.wave {
@@ -303,6 +309,11 @@ impl<'a> Flow<'a> {
                 Variable::Drive(i) => {
                     let drive = self.statement.drives.get(*i);
                     known.extend(drive.map(|d| (*variable, self.drive(d, length))));
+                }
+                Variable::Disturbance(i) => {
+                    let disturbance = self.statement.disturbances.get(*i);
+                    let constant = |d: &Disturbance| Sequence::constant(&d.range.centre(), &self.rate, length);
+                    known.extend(disturbance.map(|d| (*variable, constant(d))));
                 }
                 Variable::State(_) | Variable::Output(_) | Variable::Exponential(_) => {}
             }

@@ -22,6 +22,8 @@ pub enum Variable {
     Time,
     /// The exponential at this position; in zones alone.
     Exponential(usize),
+    /// The disturbance at this position; in rates alone.
+    Disturbance(usize),
 }
 
 /// A state of the system.
@@ -31,8 +33,83 @@ pub struct State {
     pub name: String,
     /// A label for people; no arithmetic is done with it.
     pub unit: Option<String>,
-    /// Its value at t = 0.
+    /// Its value at t = 0; for many starts the centre of the set, see [`Starts`].
     pub start: Rational,
+}
+
+/// The admissible starts. The states' own `start` is the centre c (of a hull: its first point).
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub enum Starts {
+    /// c alone.
+    #[default]
+    One,
+    /// All x with |x_i - c_i| <= r_i: one r_i >= 0 for each state.
+    Box(Vec<Rational>),
+    /// All c + sum of xi_j g_j with |xi_j| <= 1: the vectors g_j, one number for each state.
+    Zonotope(Vec<Vec<Rational>>),
+    /// All x with (x - c)' Q^-1 (x - c) <= 1: the rows of Q, symmetric and positive semidefinite (then: h x <= h c + sqrt(h Q h')
+    /// for all h).
+    Ellipsoid(Vec<Vec<Rational>>),
+    /// The convex hull of c and these points.
+    Hull(Vec<Vec<Rational>>),
+}
+
+/// A closed range of numbers, `from` <= `to`.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Range {
+    /// The least member.
+    pub from: Rational,
+    /// The greatest member.
+    pub to: Rational,
+}
+
+impl Range {
+    /// The middle.
+    pub fn centre(&self) -> Rational {
+        (&self.from + &self.to) / Rational::from_integer(2_i32.into())
+    }
+
+    /// Half the length.
+    pub fn radius(&self) -> Rational {
+        (&self.to - &self.from) / Rational::from_integer(2_i32.into())
+    }
+}
+
+/// An unknown input: any measurable function of time with values in a range.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Disturbance {
+    /// The engineer's name for it.
+    pub name: String,
+    /// A label for people.
+    pub unit: Option<String>,
+    /// Its values.
+    pub range: Range,
+}
+
+/// A quantity of which only a range is known.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct Uncertain {
+    /// The engineer's name for it.
+    pub name: String,
+    /// A label for people.
+    pub unit: Option<String>,
+    /// Its values.
+    pub range: Range,
+    /// Whether it may vary with time (measurably); else it is a constant.
+    pub varying: bool,
+}
+
+/// A term of a state's rate that contains uncertain quantities: factor * product of powers * variable.
+#[derive(Clone, Debug, PartialEq, Eq)]
+pub struct UncertainTerm {
+    /// The state whose rate it is a term of.
+    pub state: usize,
+    /// The constant factor, not 0.
+    pub factor: Rational,
+    /// Uncertain quantities and their exponents (not 0; negative only where the range does not contain 0), in increasing order.
+    pub powers: Vec<(usize, i32)>,
+    /// A state, a drive or a disturbance; `None`: the number 1.
+    pub of: Option<Variable>,
 }
 
 /// The periodic factor of one term of a known input.
@@ -84,7 +161,7 @@ pub struct Output {
 /// The sum `offset + sum of factor * variable` that a state's time derivative equals.
 #[derive(Clone, Debug, PartialEq, Eq, Default)]
 pub struct Affine {
-    /// Factor and variable (a state or a drive), no variable twice, no factor 0.
+    /// Factor and variable (a state, a drive or a disturbance), no variable twice, no factor 0.
     pub terms: Vec<(Rational, Variable)>,
     /// The constant.
     pub offset: Rational,
@@ -102,8 +179,10 @@ pub struct Exponential {
 /// A stretch of time with its own dynamics: one rate for each state, in the order of the states.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Phase {
-    /// The time derivative of each state.
+    /// The time derivative of each state, but for the uncertain terms.
     pub rates: Vec<Affine>,
+    /// Further terms of the rates.
+    pub uncertain: Vec<UncertainTerm>,
 }
 
 /// One term of an [`Expression`].
@@ -177,20 +256,20 @@ pub struct Zone {
 /// What is said about the system and the zone.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub enum Claim {
-    /// The trajectory is in the zone at no instant of the window. With a margin m > 0 the zone is a single
+    /// No admissible trajectory is in the zone at any instant of the window. With a margin m > 0 the zone is a single
     /// comparison, and the same holds for the zone widened by m: `p >= -m` in place of `p >= 0` or `p > 0`,
     /// `p <= m` in place of `p <= 0` or `p < 0`, `-m <= p <= m` in place of `p = 0`.
     Never {
         /// The margin, >= 0, in the unit of the zone's polynomial.
         margin: Rational,
     },
-    /// The trajectory is in the zone at some instant of the window between these two, ends included.
+    /// Some admissible trajectory is in the zone at some instant of the window between these two, ends included.
     Enters {
         /// Not after the instant.
         from: Rational,
         /// Not before the instant.
         to: Rational,
-        /// Whether the trajectory is also claimed to be outside the zone at all instants of the window before `from`.
+        /// Whether each admissible trajectory is also claimed to be outside the zone at all instants of the window before `from`.
         first: bool,
     },
     /// The trajectory cone from `from` on avoids the zone: whatever the phases of its oscillations are, and so the trajectory
@@ -218,8 +297,14 @@ pub struct Statement {
     pub title: String,
     /// The states; at least one.
     pub states: Vec<State>,
+    /// The admissible starts.
+    pub starts: Starts,
     /// The known inputs.
     pub drives: Vec<Drive>,
+    /// The unknown inputs.
+    pub disturbances: Vec<Disturbance>,
+    /// The quantities of which only ranges are known.
+    pub uncertain: Vec<Uncertain>,
     /// The named expressions.
     pub outputs: Vec<Output>,
     /// The exponentials that the zone uses.
@@ -230,4 +315,11 @@ pub struct Statement {
     pub zone: Zone,
     /// The claim.
     pub claim: Claim,
+}
+
+impl Statement {
+    /// Whether exactly one trajectory is admissible.
+    pub fn is_single(&self) -> bool {
+        self.starts == Starts::One && self.disturbances.is_empty() && self.uncertain.is_empty()
+    }
 }

@@ -5,9 +5,10 @@ use crate::field::Field;
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
 use crate::region_text::{read_region, write_region};
+use crate::set_text::{read_disturbance, read_start, read_starts, read_uncertain, read_uncertain_terms, write_set};
 use crate::statement::{
     Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Phase, Rational, Relation, SignalTerm, State,
-    Statement, Term, Variable, Wave, Zone,
+    Statement, Term, Uncertain, Variable, Wave, Zone,
 };
 use num_traits::{Signed, Zero};
 
@@ -38,19 +39,32 @@ impl Statement {
     }
 }
 
-fn entries<'a>(field: &Field<'a>) -> Result<Vec<Field<'a>>, Rejection> {
+pub(crate) fn entries<'a>(field: &Field<'a>) -> Result<Vec<Field<'a>>, Rejection> {
     let list = field.list()?;
     within("statement_entries", list.len(), field.limits().statement_entries)?;
     Ok(list)
 }
 
 /// Names and what they stand for, in the order of declaration.
-type Names = Vec<(String, Variable)>;
+pub(crate) type Names = Vec<(String, Variable)>;
 
 pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     field.only(
-        &["format", "title", "states", "drives", "outputs", "exponentials", "phases", "zone", "claim"],
-        "a statement: format, title, states, drives, outputs, exponentials, phases, zone, claim",
+        &[
+            "format",
+            "title",
+            "states",
+            "starts",
+            "drives",
+            "disturbances",
+            "uncertain",
+            "outputs",
+            "exponentials",
+            "phases",
+            "zone",
+            "claim",
+        ],
+        "a statement: format, title, states, starts, drives, disturbances, uncertain, outputs, exponentials, phases, zone, claim",
     )?;
     let format = field.get("format")?;
     if format.text()? != STATEMENT_FORMAT {
@@ -59,18 +73,29 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     let mut names: Names = Vec::new();
     let states = declared(&field.get("states")?, &mut names, Variable::State, |f, name, unit| {
         f.only(&["name", "unit", "start"], "a state: name, unit, start")?;
-        Ok(State { name, unit, start: f.get("start")?.rational()? })
+        let (start, radius) = read_start(&f.get("start")?)?;
+        Ok((State { name, unit, start }, radius))
     })?;
+    let (states, radii): (Vec<State>, Vec<Rational>) = states.into_iter().unzip();
     if states.is_empty() {
         return Err(field.get("states")?.refuse("at least one state"));
     }
+    let starts = read_starts(field, radii)?;
     let drives = declared(&field.get("drives")?, &mut names, Variable::Drive, |f, name, unit| {
         f.only(&["name", "unit", "signal"], "a drive: name, unit, signal")?;
         Ok(Drive { name, unit, signal: entries(&f.get("signal")?)?.iter().map(read_signal).collect::<Result<_, _>>()? })
     })?;
+    let disturbances = field.optional("disturbances");
+    let disturbances = disturbances.map(|f| declared(&f, &mut names, Variable::Disturbance, read_disturbance));
+    let disturbances = disturbances.transpose()?.unwrap_or_default();
     let affine_names = names.clone();
+    // The kind of variable does not matter here: these names are for the uncertain terms alone.
+    let mut uncertain_names = Names::new();
+    let uncertain = field.optional("uncertain");
+    let uncertain = uncertain.map(|f| declared(&f, &mut uncertain_names, Variable::State, read_uncertain));
+    let uncertain = uncertain.transpose()?.unwrap_or_default();
     names.push(("t".into(), Variable::Time));
-    let value_names = names.clone();
+    let value_names = without_disturbances(&names);
     let outputs = declared(&field.get("outputs")?, &mut names, Variable::Output, |f, name, unit| {
         f.only(&["name", "unit", "value"], "an output: name, unit, value")?;
         Ok(Output { name, unit, value: read_expression(&f.get("value")?, &value_names)? })
@@ -86,10 +111,20 @@ pub(crate) fn read_statement(field: &Field) -> Result<Statement, Rejection> {
     if phases.len() != 1 {
         return Err(field.get("phases")?.refuse("exactly one phase"));
     }
-    let phases = phases.iter().map(|f| read_phase(f, &states, &affine_names)).collect::<Result<_, _>>()?;
+    if uncertain_names.iter().any(|(name, _)| names.iter().any(|(other, _)| other == name)) {
+        return Err(field.get("uncertain")?.refuse("names that nothing else has"));
+    }
+    let phase = |f: &Field| read_phase(f, &states, &affine_names, &uncertain);
+    let phases = phases.iter().map(phase).collect::<Result<_, _>>()?;
     let title = field.get("title")?.text()?.to_string();
-    let (zone, claim) = (read_zone(&field.get("zone")?, &names)?, read_claim(&field.get("claim")?)?);
-    Ok(Statement { title, states, drives, outputs, exponentials, phases, zone, claim })
+    let zone = read_zone(&field.get("zone")?, &without_disturbances(&names))?;
+    let claim = read_claim(&field.get("claim")?)?;
+    Ok(Statement { title, states, starts, drives, disturbances, uncertain, outputs, exponentials, phases, zone, claim })
+}
+
+/// The names that outputs and zones may use.
+fn without_disturbances(names: &Names) -> Names {
+    names.iter().filter(|(_, v)| !matches!(v, Variable::Disturbance(_))).cloned().collect()
 }
 
 /// Names with a meaning of their own in formulas.
@@ -122,7 +157,7 @@ fn declared<'a, T>(
     Ok(items)
 }
 
-fn named(field: &Field, names: &Names) -> Result<Variable, Rejection> {
+pub(crate) fn named(field: &Field, names: &Names) -> Result<Variable, Rejection> {
     let text = field.text()?;
     let found = names.iter().find(|(name, _)| name == text);
     found.map(|(_, variable)| *variable).ok_or_else(|| field.refuse("the name of a quantity allowed here"))
@@ -145,21 +180,25 @@ fn read_signal(field: &Field) -> Result<SignalTerm, Rejection> {
     Ok(SignalTerm { coefficient, power, rate, wave })
 }
 
-fn read_phase(field: &Field, states: &[State], names: &Names) -> Result<Phase, Rejection> {
+fn read_phase(field: &Field, states: &[State], names: &Names, uncertain: &[Uncertain]) -> Result<Phase, Rejection> {
     field.only(&["rates"], "a phase: rates")?;
     let list = entries(&field.get("rates")?)?;
     if list.len() != states.len() {
         return Err(field.get("rates")?.refuse("one rate for each state"));
     }
     let mut rates = Vec::new();
-    for (item, state) in list.iter().zip(states) {
-        item.only(&["of", "terms", "offset"], "a rate: of, terms, offset")?;
+    let mut terms = Vec::new();
+    for (position, (item, state)) in list.iter().zip(states).enumerate() {
+        item.only(&["of", "terms", "offset", "uncertain"], "a rate: of, terms, offset, uncertain")?;
         if item.get("of")?.text()? != state.name {
             return Err(item.get("of")?.refuse("the states' names in order"));
         }
         rates.push(read_affine(item, names)?);
+        if let Some(list) = item.optional("uncertain") {
+            terms.extend(read_uncertain_terms(&list, position, names, uncertain)?);
+        }
     }
-    Ok(Phase { rates })
+    Ok(Phase { rates, uncertain: terms })
 }
 
 fn read_affine(field: &Field, names: &Names) -> Result<Affine, Rejection> {
@@ -268,7 +307,7 @@ fn read_claim(field: &Field) -> Result<Claim, Rejection> {
     Ok(Claim::Enters { from, to, first: enters.get("first")?.flag()? })
 }
 
-fn declaration(name: &str, unit: Option<&String>, key: &'static str, value: Value) -> Value {
+pub(crate) fn declaration(name: &str, unit: Option<&String>, key: &'static str, value: Value) -> Value {
     let mut fields = vec![("name", text(name))];
     fields.extend(unit.map(|u| ("unit", text(u))));
     fields.push((key, value));
@@ -284,6 +323,7 @@ impl Statement {
             Variable::Output(i) => self.outputs.get(i).map_or("?", |o| &o.name),
             Variable::Time => "t",
             Variable::Exponential(i) => self.exponentials.get(i).map_or("?", |e| &e.name),
+            Variable::Disturbance(i) => self.disturbances.get(i).map_or("?", |d| &d.name),
         }
     }
 
@@ -320,8 +360,16 @@ impl Statement {
     }
 
     fn write_phase(&self, phase: &Phase) -> Value {
-        let rates =
-            phase.rates.iter().zip(&self.states).map(|(rate, state)| self.write_affine("of", &state.name, rate));
+        let rate = |(position, (rate, state)): (usize, (&Affine, &State))| {
+            let mut value = self.write_affine("of", &state.name, rate);
+            let terms: Vec<_> = phase.uncertain.iter().filter(|t| t.state == position).collect();
+            if let (Value::Object(fields), false) = (&mut value, terms.is_empty()) {
+                let list = terms.iter().map(|t| self.write_uncertain_term(t)).collect();
+                fields.push(("uncertain".into(), Value::List(list)));
+            }
+            value
+        };
+        let rates = phase.rates.iter().zip(&self.states).enumerate().map(rate);
         object(vec![("rates", Value::List(rates.collect()))])
     }
 }
@@ -337,7 +385,8 @@ fn write_signal(term: &SignalTerm) -> Value {
 }
 
 fn write_statement(s: &Statement) -> Value {
-    let states = s.states.iter().map(|x| declaration(&x.name, x.unit.as_ref(), "start", text(&x.start)));
+    let state = |(i, x): (usize, &State)| declaration(&x.name, x.unit.as_ref(), "start", s.write_start(i, x));
+    let states = s.states.iter().enumerate().map(state);
     let drives = s.drives.iter().map(|d| {
         let signal = Value::List(d.signal.iter().map(write_signal).collect());
         declaration(&d.name, d.unit.as_ref(), "signal", signal)
@@ -373,5 +422,6 @@ fn write_statement(s: &Statement) -> Value {
         let list = s.exponentials.iter().map(|e| s.write_affine("name", &e.name, &e.argument));
         fields.insert(5, ("exponentials", Value::List(list.collect())));
     }
+    write_set(s, &mut fields);
     object(fields)
 }

@@ -6,9 +6,10 @@
 
 use crate::decimal::fraction_and_decimal;
 use crate::formula::claimed_formula;
+use crate::set_words::MANY_PREFACE;
 use crate::statement::{
-    Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Rational, Relation, SignalTerm, State,
-    Statement, Variable, Wave,
+    Affine, Atom, Claim, Drive, Exponential, Expression, Formula, Output, Rational, Relation, SignalTerm, Starts,
+    State, Statement, Variable, Wave,
 };
 use num_traits::{One, Signed, Zero};
 
@@ -40,11 +41,16 @@ impl Statement {
     pub fn words(&self) -> String {
         let mut lines = vec![format!("Model: {}", quoted(&self.title)), String::new()];
         let is_region = matches!(self.claim, Claim::Region(_));
-        let preface = if is_region { REGION_PREFACE } else { PREFACE };
+        let preface = match (is_region, self.is_single()) {
+            (true, _) => REGION_PREFACE,
+            (false, true) => PREFACE,
+            (false, false) => MANY_PREFACE,
+        };
         lines.extend(preface.lines().map(str::to_string));
         self.start_lines(&mut lines);
         self.equation_lines(&mut lines);
         self.input_lines(&mut lines);
+        self.unknown_lines(&mut lines);
         self.output_lines(&mut lines);
         self.zone_lines(&mut lines);
         self.claim_lines(&mut lines);
@@ -53,6 +59,9 @@ impl Statement {
     }
 
     fn start_lines(&self, lines: &mut Vec<String>) {
+        if self.starts != Starts::One {
+            return self.set_of_starts_lines(lines);
+        }
         section(lines, "States, and their exact values at t = 0:");
         let line = |s: &State| declared(&s.name, &fraction_and_decimal(&s.start), s.unit.as_ref());
         lines.extend(self.states.iter().map(line));
@@ -62,7 +71,8 @@ impl Statement {
         section(lines, "Equations:");
         // A statement with another number of phases is never verified.
         for rate in self.phases.iter().flat_map(|p| p.rates.iter().enumerate()) {
-            lines.push(format!("  {}' = {}", self.name(Variable::State(rate.0)), self.affine_words(rate.1)));
+            let uncertain = self.uncertain_words(rate.0);
+            lines.push(format!("  {}' = {}{uncertain}", self.name(Variable::State(rate.0)), self.affine_words(rate.1)));
         }
     }
 
@@ -88,7 +98,11 @@ impl Statement {
     fn zone_lines(&self, lines: &mut Vec<String>) {
         let zone = &self.zone;
         let reference = zone.reference.as_ref().map_or(String::new(), |r| format!(", from requirement {}", quoted(r)));
-        let subject = if matches!(self.claim, Claim::Region(_)) { "A solution" } else { "The trajectory" };
+        let subject = match (&self.claim, self.is_single()) {
+            (Claim::Region(_), _) => "A solution",
+            (_, true) => "The trajectory",
+            (_, false) => "A trajectory",
+        };
         let title = format!(
             "Keep-out zone {}{reference}. {subject} is in the zone at an instant t if and only if at t:",
             quoted(&zone.name)
@@ -110,10 +124,12 @@ impl Statement {
         section(lines, "Claim:");
         match &self.claim {
             Claim::Never { margin } => {
-                lines.push(format!(
-                    "  From exactly this start, the trajectory never enters the zone, {}:",
-                    self.window()
-                ));
+                let subject = if self.is_single() {
+                    "From exactly this start, the trajectory never enters the zone"
+                } else {
+                    "No admissible trajectory ever enters the zone"
+                };
+                lines.push(format!("  {subject}, {}:", self.window()));
                 lines.push("  it is in the zone at no instant of the window.".into());
                 if margin.is_positive() {
                     let margin = fraction_and_decimal(margin);
@@ -126,7 +142,11 @@ impl Statement {
                 }
             }
             Claim::Enters { from, to, first } => {
-                lines.push("  From exactly this start, the trajectory is in the zone".into());
+                lines.push(if self.is_single() {
+                    "  From exactly this start, the trajectory is in the zone".into()
+                } else {
+                    "  Some admissible trajectory is in the zone".into()
+                });
                 let (after, before) = (fraction_and_decimal(from), fraction_and_decimal(to));
                 let when = if from == to {
                     format!("at the instant t = {after}")
@@ -196,7 +216,7 @@ impl Statement {
     }
 }
 
-fn section(lines: &mut Vec<String>, title: &str) {
+pub(crate) fn section(lines: &mut Vec<String>, title: &str) {
     lines.push(String::new());
     lines.push(title.to_string());
 }
@@ -206,7 +226,7 @@ fn quoted(text: &str) -> String {
     format!("{text:?}")
 }
 
-fn declared(name: &str, value: &str, unit: Option<&String>) -> String {
+pub(crate) fn declared(name: &str, value: &str, unit: Option<&String>) -> String {
     let unit = unit.map_or(String::new(), |u| format!("    [unit label {}]", quoted(u)));
     format!("  {name} = {value}{unit}")
 }
@@ -222,12 +242,12 @@ fn compared(relation: Relation) -> &'static str {
     }
 }
 
-fn raised(name: &str, power: u32) -> String {
+pub(crate) fn raised(name: &str, power: u32) -> String {
     if power == 1 { name.to_string() } else { format!("{name}^{power}") }
 }
 
 /// The sum of coefficients times factors: `-2 * x + 1/2 (0.5) * y^2 - z`. Of no terms: `0`.
-fn sum<'a>(terms: impl Iterator<Item = (&'a Rational, Vec<String>)>) -> String {
+pub(crate) fn sum<'a>(terms: impl Iterator<Item = (&'a Rational, Vec<String>)>) -> String {
     let mut text = String::new();
     for (coefficient, mut factors) in terms {
         let is_first = text.is_empty();

@@ -182,7 +182,7 @@ fn values_built_in_memory_obey_the_same_rules() {
     };
     assert_eq!(spoil(&|c| c.statement.phases.push(c.statement.phases[0].clone())), 3);
     assert_eq!(spoil(&|c| c.statement.phases.clear()), 3);
-    assert_eq!(spoil(&|c| c.statement.phases[0] = Phase { rates: vec![] }), 3);
+    assert_eq!(spoil(&|c| c.statement.phases[0] = Phase { rates: vec![], uncertain: vec![] }), 3);
     assert_eq!(spoil(&|c| c.statement.phases[0].rates[0].terms.push((rational("1"), Variable::Time))), 3);
     assert_eq!(spoil(&|c| c.statement.states[0].name = "x y".into()), 3);
     assert_eq!(spoil(&|c| c.statement.zone.from = rational("-1")), 3);

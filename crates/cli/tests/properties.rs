@@ -158,7 +158,9 @@ fn at(variable: Variable, point: &[Rational; 4]) -> Rational {
     match variable {
         Variable::State(i) => point[i].clone(),
         Variable::Time => point[3].clone(),
-        Variable::Drive(_) | Variable::Output(_) | Variable::Exponential(_) => panic!("no such variable here"),
+        Variable::Drive(_) | Variable::Output(_) | Variable::Exponential(_) | Variable::Disturbance(_) => {
+            panic!("no such variable here")
+        }
     }
 }
 

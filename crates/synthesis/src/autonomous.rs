@@ -45,13 +45,13 @@ pub(crate) fn autonomous(statement: &Statement) -> Statement {
     let renamed = |variable: Variable| match variable {
         Variable::Drive(i) => Variable::State(first + i),
         Variable::Time => Variable::State(time),
-        Variable::State(_) | Variable::Output(_) | Variable::Exponential(_) => variable,
+        Variable::State(_) | Variable::Output(_) | Variable::Exponential(_) | Variable::Disturbance(_) => variable,
     };
     for rate in &mut builder.rates {
         rate.terms.iter_mut().for_each(|(_, variable)| *variable = renamed(*variable));
     }
     result.states = builder.states;
-    result.phases = vec![Phase { rates: builder.rates }];
+    result.phases = vec![Phase { rates: builder.rates, uncertain: Vec::new() }];
     result.drives = Vec::new();
     let outputs = statement.outputs.iter();
     result.outputs = outputs.map(|o| Output { value: expression(&o.value, renamed), ..o.clone() }).collect();

@@ -33,10 +33,16 @@ use num_traits::Zero;
 /// let statement = Statement {
 ///     title: "decay".into(),
 ///     states: vec![State { name: "x".into(), unit: None, start: number(1) }],
+///     starts: Starts::One,
 ///     drives: vec![],
+///     disturbances: vec![],
+///     uncertain: vec![],
 ///     outputs: vec![],
 ///     exponentials: vec![],
-///     phases: vec![Phase { rates: vec![Affine { terms: vec![(number(-1), Variable::State(0))], offset: number(0) }] }],
+///     phases: vec![Phase {
+///         rates: vec![Affine { terms: vec![(number(-1), Variable::State(0))], offset: number(0) }],
+///         uncertain: vec![],
+///     }],
 ///     zone: Zone {
 ///         name: "two".into(),
 ///         reference: None,

@@ -409,7 +409,9 @@ impl<'a> Writer<'a> {
                 let factor = match variable {
                     Variable::State(i) => SetPolynomial::variable(*i),
                     Variable::Output(i) => self.expression(&self.statement.outputs.get(*i)?.value)?,
-                    Variable::Drive(_) | Variable::Time | Variable::Exponential(_) => return None,
+                    Variable::Drive(_) | Variable::Time | Variable::Exponential(_) | Variable::Disturbance(_) => {
+                        return None;
+                    }
                 };
                 for _ in 0..*power {
                     product = product.mul(&factor);

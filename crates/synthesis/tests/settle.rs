@@ -34,10 +34,13 @@ fn statement(a: &[&[&str]], c: &[&str], x0: &[&str], p: &[(&str, &[u32])], relat
     Statement {
         title: "case".into(),
         states,
+        starts: Starts::One,
+        disturbances: Vec::new(),
+        uncertain: Vec::new(),
         drives: vec![],
         outputs: vec![],
         exponentials: Vec::new(),
-        phases: vec![Phase { rates }],
+        phases: vec![Phase { rates, uncertain: vec![] }],
         zone: Zone {
             name: "zone".into(),
             reference: None,

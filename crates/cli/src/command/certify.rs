@@ -289,7 +289,7 @@ fn margin_unit(statement: &Statement) -> Option<&str> {
             Variable::State(i) => statement.states.get(*i)?.unit.as_deref(),
             Variable::Drive(i) => statement.drives.get(*i)?.unit.as_deref(),
             Variable::Output(i) => statement.outputs.get(*i)?.unit.as_deref(),
-            Variable::Time | Variable::Exponential(_) => None,
+            Variable::Time | Variable::Exponential(_) | Variable::Disturbance(_) => None,
         }?;
         if !term.coefficient.abs().is_one() || unit.is_some_and(|u| u != own) {
             return None;

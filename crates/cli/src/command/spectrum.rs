@@ -38,7 +38,11 @@ fn structure(model: &Model) -> Result<SpectralStructure, CoreError> {
     let entries = rows.flat_map(|(i, rate)| {
         rate.terms.iter().filter_map(move |(factor, variable)| match variable {
             Variable::State(j) => Some((i, *j, factor.clone())),
-            Variable::Drive(_) | Variable::Output(_) | Variable::Time | Variable::Exponential(_) => None,
+            Variable::Drive(_)
+            | Variable::Output(_)
+            | Variable::Time
+            | Variable::Exponential(_)
+            | Variable::Disturbance(_) => None,
         })
     });
     let a = SparseMatrix::new(model.states.len(), entries)?;

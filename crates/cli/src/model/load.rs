@@ -133,7 +133,8 @@ impl<'a> Loader<'a> {
         let zones = zones(self.root, need, &self.names, refusals);
         let (inputs, exponentials) = self.names.take_exponentials();
         let drives = drives.into_iter().chain(inputs).collect();
-        let (title, phase, source) = (title.unwrap_or_default(), Phase { rates }, refusals.text.to_string());
+        let (title, phase, source) =
+            (title.unwrap_or_default(), Phase { rates, uncertain: Vec::new() }, refusals.text.to_string());
         Model { title, states, drives, outputs, exponentials, phase, zones, source }
     }
 

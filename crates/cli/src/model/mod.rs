@@ -15,7 +15,7 @@ mod zone;
 pub use load::{MAX_BYTES, MAX_ENTRIES, Need, load, load_text};
 
 use keepout_checker::statement::{
-    Claim, Drive, Exponential, Formula, Output, Phase, Rational, State, Statement, Variable, Zone,
+    Claim, Drive, Exponential, Formula, Output, Phase, Rational, Starts, State, Statement, Variable, Zone,
 };
 use num_traits::Zero;
 
@@ -49,6 +49,9 @@ impl Model {
         Statement {
             title: self.title.clone(),
             states: self.states.clone(),
+            starts: Starts::One,
+            disturbances: Vec::new(),
+            uncertain: Vec::new(),
             drives: self.drives.clone(),
             outputs: self.outputs.clone(),
             exponentials: if has_exponential(&self.zones[zone].inside) {
