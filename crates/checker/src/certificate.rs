@@ -3,6 +3,7 @@
 //! A certificate is data. Nothing in it is trusted; each field is either an input to a computation whose result is then
 //! checked, or it is confirmed by one. Positions (`usize`) refer to the certificate's own lists.
 
+use crate::many::{Division, Witness};
 use crate::number::{Dyadic, Rational};
 use crate::polynomial::Polynomial;
 use crate::region::RegionProof;
@@ -196,6 +197,10 @@ pub enum Evidence {
     Inseparable(Meeting),
     /// For `region`.
     Region(RegionProof),
+    /// For `never` about many trajectories.
+    Many(Vec<Division>),
+    /// For `enters` about many trajectories.
+    Witness(Box<Witness>),
 }
 
 /// Evidence for one statement.

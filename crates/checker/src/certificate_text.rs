@@ -8,8 +8,10 @@ use crate::error::Rejection;
 use crate::field::{Field, dyadic_text};
 use crate::json::{Value, object, text};
 use crate::limits::{Limits, within};
+use crate::many_text::{read_divisions, read_witness, write_divisions, write_witness};
 use crate::polynomial::Polynomial;
 use crate::region_text::{read_proof, write_proof};
+use crate::statement::Statement;
 use crate::statement_text::read_statement;
 use num_traits::Signed;
 use std::cmp::Ordering;
@@ -48,7 +50,7 @@ impl Certificate {
             ("auxiliaries", list(&self.auxiliaries, write_auxiliary)),
             ("identities", list(&self.identities, write_identity)),
             ("sums", list(&self.sums, write_sum)),
-            ("evidence", write_evidence(&self.evidence)),
+            ("evidence", write_evidence(&self.evidence, &self.statement)),
         ])
     }
 }
@@ -90,14 +92,15 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
         }
         Ok(Sum { root: read_root(&f.get("root")?, roots)?, parts, factors: factors(&f.get("factors")?)? })
     })?;
-    let counts = Counts { functions, roots, sums: sums.len() };
-    let (statement, evidence) =
-        (read_statement(&field.get("statement")?)?, read_evidence(&field.get("evidence")?, &counts)?);
+    let counts = Counts { families: families.len(), functions, roots, sums: sums.len() };
+    let statement = read_statement(&field.get("statement")?)?;
+    let evidence = read_evidence(&field.get("evidence")?, &counts, &statement)?;
     Ok(Certificate { statement, bits, families, traces, auxiliaries, identities, sums, evidence })
 }
 
 /// The lengths of the lists that positions refer to.
 pub(crate) struct Counts {
+    pub(crate) families: usize,
     pub(crate) functions: usize,
     pub(crate) roots: usize,
     pub(crate) sums: usize,
@@ -225,18 +228,28 @@ fn read_lead(field: &Field, counts: &Counts) -> Result<Lead, Rejection> {
     })
 }
 
-fn read_far_field(field: &Field, counts: &Counts) -> Result<FarField, Rejection> {
-    field.only(&["from", "base", "angles", "leads"], "a far field: from, base, angles, leads")?;
-    let base =
-        bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
-    let angles = bounded(&field.get("angles")?, "roots", field.limits().roots)?.each(|f| {
+/// The angles of roots.
+pub(crate) fn read_angles(field: &Field, counts: &Counts) -> Result<Vec<Angle>, Rejection> {
+    bounded(field, "roots", field.limits().roots)?.each(|f| {
         f.only(&["root", "turns", "sum"], "an angle: root, turns, sum")?;
         Ok(Angle {
             root: f.get("root")?.position(counts.roots)?,
             turns: bounded(&f.get("turns")?, "dimension", f.limits().dimension)?.each(read_integer)?,
             sum: f.optional("sum").map(|s| s.position(counts.sums)).transpose()?,
         })
-    })?;
+    })
+}
+
+/// The factors of an annihilator.
+pub(crate) fn read_factors(field: &Field, counts: &Counts) -> Result<Vec<Factor>, Rejection> {
+    bounded(field, "roots", field.limits().roots)?.each(|f| read_factor(f, counts.families))
+}
+
+fn read_far_field(field: &Field, counts: &Counts) -> Result<FarField, Rejection> {
+    field.only(&["from", "base", "angles", "leads"], "a far field: from, base, angles, leads")?;
+    let base =
+        bounded(&field.get("base")?, "dimension", field.limits().dimension)?.each(|f| f.position(counts.roots))?;
+    let angles = read_angles(&field.get("angles")?, counts)?;
     let leads = bounded(&field.get("leads")?, "statement_entries", field.limits().statement_entries)?
         .each(|f| read_lead(f, counts))?;
     Ok(FarField { from: field.get("from")?.rational()?, base, angles, leads })
@@ -278,7 +291,7 @@ fn read_meeting(field: &Field, counts: &Counts) -> Result<Meeting, Rejection> {
     Ok(Meeting { far, angles, zeros, signs: read_signs(&field.get("signs")?, counts)? })
 }
 
-fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> {
+fn read_evidence(field: &Field, counts: &Counts, statement: &Statement) -> Result<Evidence, Rejection> {
     if let Some(never) = field.optional("never") {
         field.only(&["never"], "one key")?;
         never.only(&["cells", "cone"], "evidence for never: cells, cone")?;
@@ -293,7 +306,15 @@ fn read_evidence(field: &Field, counts: &Counts) -> Result<Evidence, Rejection> 
         field.only(&["region"], "one key")?;
         return Ok(Evidence::Region(read_proof(&region, counts)?));
     }
-    field.only(&["enters"], "evidence: never, enters, inseparable or region")?;
+    if let Some(many) = field.optional("many") {
+        field.only(&["many"], "one key")?;
+        return Ok(Evidence::Many(read_divisions(&many, counts, statement)?));
+    }
+    if let Some(witness) = field.optional("witness") {
+        field.only(&["witness"], "one key")?;
+        return Ok(Evidence::Witness(Box::new(read_witness(&witness, counts, statement)?)));
+    }
+    field.only(&["enters"], "evidence: never, enters, inseparable, region, many or witness")?;
     let enters = field.get("enters")?;
     enters.only(&["before", "from", "cell"], "evidence for enters: before, from, cell")?;
     Ok(Evidence::Enters {
@@ -315,7 +336,7 @@ fn write_family(family: &RootFamily) -> Value {
     ])
 }
 
-fn write_factor(factor: &Factor) -> Value {
+pub(crate) fn write_factor(factor: &Factor) -> Value {
     object(vec![("family", text(factor.family)), ("multiplicity", text(factor.multiplicity))])
 }
 
@@ -364,12 +385,13 @@ fn write_cell(cell: &Cell) -> Value {
     object(fields)
 }
 
+pub(crate) fn write_angle(angle: &Angle) -> Value {
+    let mut fields = vec![("root", text(angle.root)), ("turns", list(&angle.turns, |n| text(n)))];
+    fields.extend(angle.sum.map(|sum| ("sum", text(sum))));
+    object(fields)
+}
+
 fn write_far_field(far: &FarField) -> Value {
-    let angle = |angle: &Angle| {
-        let mut fields = vec![("root", text(angle.root)), ("turns", list(&angle.turns, |n| text(n)))];
-        fields.extend(angle.sum.map(|sum| ("sum", text(sum))));
-        object(fields)
-    };
     let lead = |lead: &Lead| {
         let mut fields = vec![("function", text(lead.function)), ("roots", list(&lead.roots, |r| text(r)))];
         match &lead.real_part {
@@ -382,7 +404,7 @@ fn write_far_field(far: &FarField) -> Value {
     object(vec![
         ("from", text(&far.from)),
         ("base", list(&far.base, |b| text(b))),
-        ("angles", list(&far.angles, angle)),
+        ("angles", list(&far.angles, write_angle)),
         ("leads", list(&far.leads, lead)),
     ])
 }
@@ -413,7 +435,7 @@ fn write_meeting(meeting: &Meeting) -> Value {
     ])
 }
 
-fn write_evidence(evidence: &Evidence) -> Value {
+fn write_evidence(evidence: &Evidence, statement: &Statement) -> Value {
     match evidence {
         Evidence::Never { cells, cone } => {
             let mut fields = vec![("cells", list(cells, write_cell))];
@@ -426,5 +448,7 @@ fn write_evidence(evidence: &Evidence) -> Value {
         }
         Evidence::Inseparable(meeting) => object(vec![("inseparable", write_meeting(meeting))]),
         Evidence::Region(proof) => object(vec![("region", write_proof(proof))]),
+        Evidence::Many(divisions) => object(vec![("many", write_divisions(divisions, statement))]),
+        Evidence::Witness(witness) => object(vec![("witness", write_witness(witness, statement))]),
     }
 }

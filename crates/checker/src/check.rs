@@ -1,10 +1,10 @@
 //! From a statement and a certificate to a proof.
 
 use crate::certificate::{Certificate, Evidence};
-use crate::error::{Duty, Obligation, Rejection, Rule};
+use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::limits::{Budget, Limits};
 use crate::model::{Model, Setting};
-use crate::rules::{cone, cover, entry, equality, inseparable, region};
+use crate::rules::{cone, cover, entry, equality, inseparable, region, witness, worst_case};
 use crate::statement::{Claim, Statement};
 
 /// A statement that has been proved. Only [`check`] makes one.
@@ -32,8 +32,10 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     // polynomials with all their roots, ...). Both types can be built in memory, so it is ensured here for each caller.
     certificate.ensure_readable(limits)?;
     let mut budget = Budget::new(limits);
-    // SOUND: the rules below speak of the one trajectory from the states' own starts.
-    Duty::new(Rule::Cover, Obligation::EvidenceFitsClaim, 0).ensure(statement.is_single())?;
+    if !statement.is_single() {
+        check_many(certificate, limits, &mut budget)?;
+        return Ok(Verified { statement: statement.clone() });
+    }
     let model = Model::new(certificate, limits, &mut budget)?;
     let on = Setting { certificate, model: &model, limits };
     for (position, sum) in certificate.sums.iter().enumerate() {
@@ -79,9 +81,32 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
             fits.ensure(zone.until.is_none() && statement.drives.is_empty())?;
             region::check(set, proof, on, &mut budget)?;
         }
+        // One trajectory is a case of many.
+        (_, Evidence::Many(_) | Evidence::Witness(_)) => check_many(certificate, limits, &mut budget)?,
         (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_) | Evidence::Region(_)) => {
             return Err(fits.refuted());
         }
     }
     Ok(Verified { statement: statement.clone() })
+}
+
+/// Proves a statement about many trajectories: of the rules, `equality`, `worst_case` and `witness` alone speak of these.
+fn check_many(certificate: &Certificate, limits: &Limits, budget: &mut Budget) -> Checked {
+    let fits = Duty::new(Rule::WorstCase, Obligation::EvidenceFitsClaim, 0);
+    let model = Model::without_functions(certificate, budget)?;
+    let on = Setting { certificate, model: &model, limits };
+    for (position, sum) in certificate.sums.iter().enumerate() {
+        equality::check(position, sum, on, budget)?;
+    }
+    let zone = &certificate.statement.zone;
+    match (&certificate.statement.claim, &certificate.evidence) {
+        (Claim::Never { .. }, Evidence::Many(divisions)) => worst_case::check(divisions, on, budget),
+        (Claim::Enters { from, to, first: false }, Evidence::Witness(witness)) => {
+            let at = &witness.at;
+            let in_window = zone.from <= *at && zone.until.as_ref().is_none_or(|until| at <= until);
+            Duty::new(Rule::Witness, Obligation::InstantIsInWindow, 0).ensure(in_window && from <= at && at <= to)?;
+            witness::check(witness, on, budget)
+        }
+        _ => Err(fits.refuted()),
+    }
 }

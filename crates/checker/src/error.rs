@@ -20,6 +20,10 @@ pub enum Rule {
     Inseparable,
     /// A set of starts that is invariant and avoids the zone.
     Region,
+    /// Many trajectories: bounds of affine functions of the states.
+    WorstCase,
+    /// One of many trajectories that is in the zone.
+    Witness,
 }
 
 /// The side conditions of the proof rules: one variant each.
@@ -91,6 +95,16 @@ pub enum Obligation {
     ZoneIsOfStates,
     /// A polynomial of the zone is led by the said growth on the set.
     LeadDominates,
+    /// The pieces are all that is admissible.
+    PiecesCover,
+    /// A functional is affine in the states, each of these in one part.
+    FunctionalIsAffine,
+    /// The factors annihilate the responses of a functional.
+    FactorsAnnihilateResponse,
+    /// The affine form of a group of uncertain terms stays below its bound.
+    FormIsBounded,
+    /// The start, the values and the signals of the witness are admissible.
+    WitnessIsAdmissible,
     /// The evidence is of the kind that the claim needs.
     EvidenceFitsClaim,
 }
@@ -155,14 +169,15 @@ pub(crate) type Checked = Result<(), Rejection>;
 
 /// One obligation of one rule, for one of its objects: where a check stands.
 #[derive(Clone, Copy, Debug)]
-pub(crate) struct Duty {
+pub struct Duty {
     pub(crate) rule: Rule,
     pub(crate) obligation: Obligation,
     pub(crate) position: usize,
 }
 
 impl Duty {
-    pub(crate) fn new(rule: Rule, obligation: Obligation, position: usize) -> Self {
+    /// An obligation of a rule, for the object at a position.
+    pub fn new(rule: Rule, obligation: Obligation, position: usize) -> Self {
         Self { rule, obligation, position }
     }
 
@@ -204,6 +219,8 @@ impl fmt::Display for Rule {
             Self::Entry => "entry",
             Self::Inseparable => "inseparable",
             Self::Region => "region",
+            Self::WorstCase => "worst_case",
+            Self::Witness => "witness",
         })
     }
 }
@@ -246,6 +263,11 @@ impl fmt::Display for Obligation {
             Self::PowerBoundsTime => "the power of y bounds T from the start on",
             Self::ZoneIsOfStates => "polynomial {} of the zone is one in the states",
             Self::LeadDominates => "polynomial {} of the zone is led by the listed growth on the set",
+            Self::PiecesCover => "the pieces are all that is admissible (node {})",
+            Self::FunctionalIsAffine => "functional {} is affine in the states, each of these in one of its parts",
+            Self::FactorsAnnihilateResponse => "the factors annihilate the responses of functional {}",
+            Self::FormIsBounded => "the form of group {} stays below its bound",
+            Self::WitnessIsAdmissible => "the start, the values and the signals of the witness are admissible",
             Self::EvidenceFitsClaim => "the evidence is of the kind that the claim needs",
         })
     }

@@ -5,7 +5,7 @@
 //! root that is not real, its angle as an integer combination of base angles. Not needed: that a leading coefficient is not
 //! zero (then no sign can be proved).
 
-use crate::certificate::{FarField, Lead, RealPart, RootRef, Sign};
+use crate::certificate::{Angle, FarField, Lead, RealPart, RootRef, Sign};
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
 use crate::lead::{AngleBox, LeadForm};
 use crate::limits::Budget;
@@ -17,7 +17,7 @@ use std::cmp::Ordering;
 use std::collections::BTreeMap;
 
 /// The turns of each root whose angle is known.
-type Turns = BTreeMap<usize, Vec<i64>>;
+pub(crate) type Turns = BTreeMap<usize, Vec<i64>>;
 
 /// The leading part of each function that has one in the certificate.
 pub(crate) struct Leads {
@@ -30,7 +30,7 @@ impl Leads {
     pub(crate) fn new(far: &FarField, rule: Rule, on: Setting, budget: &mut Budget) -> Result<Self, Rejection> {
         let Setting { certificate, model, .. } = on;
         Duty::new(rule, Obligation::FarFieldStartsLate, 0).ensure(far.from.is_positive())?;
-        let turns = check_angles(far, on)?;
+        let turns = check_angles((&far.base, &far.angles), on)?;
         let mut leads = Self { forms: BTreeMap::new(), growths: BTreeMap::new() };
         for lead in &far.leads {
             let known = Duty::new(Rule::Cone, Obligation::AngleIsCombination, lead.function);
@@ -134,20 +134,20 @@ fn check_real_parts(lead: &Lead, on: Setting, budget: &mut Budget) -> Result<Dya
 ///
 /// Lemma: a sum n_1 a + n_2 b = r of roots holds for imaginary parts too; the imaginary part of conj a is minus that of a, and
 /// that of a real root is 0.
-fn check_angles(far: &FarField, on: Setting) -> Result<Turns, Rejection> {
+pub(crate) fn check_angles((base, angles): (&[usize], &[Angle]), on: Setting) -> Result<Turns, Rejection> {
     let Setting { certificate, model, .. } = on;
     let mut turns = Turns::new();
     let is_real = |index: usize| model.table.roots().get(index).is_some_and(|r| r.is_real);
-    for angle in &far.angles {
+    for angle in angles {
         let duty = Duty::new(Rule::Cone, Obligation::AngleIsCombination, angle.root);
         let Some(position) = angle.sum else {
-            let unit: Vec<i64> = far.base.iter().map(|b| i64::from(*b == angle.root)).collect();
+            let unit: Vec<i64> = base.iter().map(|b| i64::from(*b == angle.root)).collect();
             duty.ensure(!is_real(angle.root) && unit.iter().sum::<i64>() == 1 && unit == angle.turns)?;
             turns.insert(angle.root, unit);
             continue;
         };
         let sum = certificate.sums.get(position).ok_or_else(|| duty.refuted())?;
-        let mut total = vec![0_i64; far.base.len()];
+        let mut total = vec![0_i64; base.len()];
         for (times, part) in &sum.parts {
             if is_real(part.index) {
                 continue;

@@ -50,6 +50,60 @@ impl IndexedFormula {
     }
 }
 
+/// That some polynomials do not all have the signs that the zone asks for.
+pub struct Conflict {
+    /// The polynomials, and whether their sum needs them positive (else negative).
+    pub parts: Vec<(usize, bool)>,
+    /// Whether this is known only where one of them is to be different from 0.
+    pub needs_strict: bool,
+}
+
+impl Conflict {
+    /// Whether these atoms cannot hold together.
+    fn forbids(&self, atoms: &[(usize, Relation)]) -> bool {
+        let matching = |(index, positive): &(usize, bool)| {
+            let fits = move |(i, relation): &&(usize, Relation)| {
+                let positive_side = matches!(relation, Relation::Positive | Relation::NonNegative);
+                let negative_side = matches!(relation, Relation::Negative | Relation::NonPositive);
+                i == index && (*relation == Relation::Zero || (if *positive { positive_side } else { negative_side }))
+            };
+            atoms.iter().filter(fits).collect::<Vec<_>>()
+        };
+        let strict = |(_, relation): &&(usize, Relation)| matches!(relation, Relation::Positive | Relation::Negative);
+        let found: Vec<_> = self.parts.iter().map(matching).collect();
+        let complete = !found.is_empty() && found.iter().all(|list| !list.is_empty());
+        complete && (!self.needs_strict || found.iter().flatten().any(strict))
+    }
+}
+
+impl IndexedFormula {
+    /// Whether conflicts show that the formula is false.
+    ///
+    /// Lemma: a conjunction is false if some atoms of it and of the conjunctions around it cannot hold together, or if one of its
+    /// parts is false where they hold; a disjunction is false if each part is.
+    pub fn is_refuted(&self, conflicts: &[Conflict]) -> bool {
+        is_refuted(&self.shape, &mut Vec::new(), conflicts)
+    }
+}
+
+fn is_refuted(shape: &Shape, known: &mut Vec<(usize, Relation)>, conflicts: &[Conflict]) -> bool {
+    let before = known.len();
+    let refuted = match shape {
+        Shape::Atom(index, relation) => {
+            known.push((*index, *relation));
+            conflicts.iter().any(|c| c.forbids(known))
+        }
+        Shape::And(parts) => {
+            let atom = |p: &Shape| if let Shape::Atom(index, relation) = p { Some((*index, *relation)) } else { None };
+            known.extend(parts.iter().filter_map(atom));
+            conflicts.iter().any(|c| c.forbids(known)) || parts.iter().any(|p| is_refuted(p, known, conflicts))
+        }
+        Shape::Or(parts) => parts.iter().all(|p| is_refuted(p, known, conflicts)),
+    };
+    known.truncate(before);
+    refuted
+}
+
 fn number(formula: &Formula, polynomials: &mut Vec<Expression>) -> Shape {
     match formula {
         Formula::Atom(Atom { polynomial, relation }) => {

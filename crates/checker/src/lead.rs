@@ -44,11 +44,23 @@ impl LeadForm {
         position: usize,
         bits: u32,
     ) -> Result<Self, Rejection> {
+        let leads = form.terms.iter().filter(|t| leading.iter().any(|(r, _)| *r == t.root));
+        let top = leads.map(|t| t.coefficients.len()).max().unwrap_or(0);
+        Self::split(form, (leading, top), rho_lo, t0, position, bits)
+    }
+
+    /// The same with t^(top - 1) for t^J, whatever the coefficients of the leading roots are; but they have no higher powers.
+    pub fn split(
+        form: &ClosedForm,
+        (leading, top): (&[(usize, Vec<i64>)], usize),
+        rho_lo: &Dyadic,
+        t0: &Rational,
+        position: usize,
+        bits: u32,
+    ) -> Result<Self, Rejection> {
         let lower = Duty::new(Rule::Cone, Obligation::LowerRealPartIsLess, position);
         let decreases = Duty::new(Rule::Cone, Obligation::LowerTermDecreases, position);
         let turns_of = |root: usize| leading.iter().find(|(r, _)| *r == root).map(|(_, turns)| turns);
-        let leads = form.terms.iter().filter(|t| turns_of(t.root).is_some());
-        let top = leads.map(|t| t.coefficients.len()).max().unwrap_or(0);
         let start = Interval::rational(t0, bits);
         let mut lead = Self { waves: Vec::new(), rest: Dyadic::zero(), bits };
         for term in &form.terms {
@@ -57,6 +69,7 @@ impl LeadForm {
             let below = || rho_lo.add(&term.exponent.re.hi().neg(), bits, Down);
             let gap = turns.map_or_else(below, |_| Dyadic::zero());
             lower.decide(turns.is_some() || gap.sign() == std::cmp::Ordering::Greater)?;
+            lower.decide(turns.is_none() || term.coefficients.len() <= top)?;
             let decay = Interval::point(gap.clone()).mul(&start, bits);
             for (j, c) in term.coefficients.iter().enumerate() {
                 let weighted = if term.is_real { c.clone() } else { c.add(c, bits) };
@@ -83,6 +96,18 @@ impl LeadForm {
     pub fn of_waves(waves: Vec<(Complex, Vec<i64>)>, rest: Dyadic, bits: u32) -> Self {
         let waves = waves.into_iter().map(|(coefficient, turns)| Wave { coefficient, turns }).collect();
         Self { waves, rest, bits }
+    }
+
+    /// The sum, or the difference, of two forms with the same t^J exp(rho t) and angles.
+    pub fn plus(&self, other: &Self, negated: bool) -> Self {
+        let turned = |wave: &Wave| {
+            let coefficient =
+                if negated { Complex::zero().sub(&wave.coefficient, self.bits) } else { wave.coefficient.clone() };
+            Wave { coefficient, turns: wave.turns.clone() }
+        };
+        let waves = self.waves.iter().cloned().chain(other.waves.iter().map(turned)).collect();
+        // SOUND(hi): |r_1 +- r_2| <= |r_1| + |r_2|, rounded up.
+        Self { waves, rest: self.rest.add(&other.rest, self.bits, Up), bits: self.bits }
     }
 
     /// Encloses f + r on a box of angles, for all times from t0 on.

@@ -17,7 +17,7 @@ pub struct Limits {
     pub degree: u64,
     /// Derivatives at 0 that prove an annihilator, times the degree of the zone's polynomial: products of sequences cost as much.
     pub derivatives: u64,
-    /// Degree of a polynomial in a certificate, multiplicities counted.
+    /// Degree of a polynomial in a certificate, multiplicities counted; roots of all families together.
     pub roots: u64,
     /// Mantissa bits.
     pub bits: u64,
@@ -46,7 +46,7 @@ impl Default for Limits {
             statement_entries: 10_000,
             degree: 24,
             derivatives: 4_000,
-            roots: 600,
+            roots: 3_000,
             bits: 20_000,
             order: 400,
             cells: 200_000,

@@ -124,6 +124,20 @@ impl Model {
         Ok(model)
     }
 
+    /// The formula and the roots of a certificate that has no functions.
+    ///
+    /// # Errors
+    /// The first obligation that is not met.
+    pub fn without_functions(certificate: &Certificate, budget: &mut Budget) -> Result<Self, Rejection> {
+        let fits = Duty::new(Rule::Trace, Obligation::EvidenceFitsClaim, 0);
+        let none =
+            certificate.traces.is_empty() && certificate.auxiliaries.is_empty() && certificate.identities.is_empty();
+        fits.ensure(none && certificate.statement.exponentials.is_empty())?;
+        let formula = IndexedFormula::claimed(&certificate.statement).ok_or_else(|| fits.refuted())?;
+        let table = RootTable::new(&certificate.families, certificate.bits, budget)?;
+        Ok(Self { formula, table, functions: Vec::new() })
+    }
+
     fn degree(&self, function: &Function) -> usize {
         let degree = |f: &Factor| self.table.polynomial(f.family).map_or(0, |p| p.degree());
         let times = |f: &Factor| usize::try_from(f.multiplicity).unwrap_or(usize::MAX);

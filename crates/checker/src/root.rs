@@ -14,6 +14,7 @@ use crate::limits::Budget;
 use crate::number::Direction::Up;
 use crate::number::{Complex, Dyadic, Interval, Rational};
 use crate::polynomial::{Polynomial, length};
+use num_traits::Zero;
 use std::cmp::Ordering;
 
 /// One root: a disc that holds it and no other root of any family.
@@ -92,6 +93,11 @@ impl RootTable {
     /// The polynomial of a family.
     pub fn polynomial(&self, family: usize) -> Option<&Polynomial> {
         self.families.get(family)
+    }
+
+    /// The family of the polynomial z, whose root is 0.
+    pub fn zero_family(&self) -> Option<usize> {
+        self.families.iter().position(|f| f.degree() == 1 && f.coefficients().first().is_some_and(Zero::is_zero))
     }
 
     /// The root, or its conjugate.

@@ -13,6 +13,7 @@ use crate::number::{Complex, Dyadic, Interval, Rational};
 use crate::polynomial::Polynomial;
 use crate::root::RootTable;
 use crate::sequence::Sequence;
+use crate::taylor::Taylor;
 use num_bigint::BigInt;
 
 /// The terms of one exponent, its conjugate understood: `sum_j coefficients[j] t^j exp(mu t)`.
@@ -89,15 +90,9 @@ impl ClosedForm {
         if drop >= order {
             return Ok(None);
         }
-        let h = Interval::rational(stretch.half_width, stretch.bits).abs_hi();
-        let mut sums = vec![Interval::integer(0); order];
-        let mut slack = Dyadic::zero();
-        for term in &self.terms {
-            let size = (order + term.coefficients.len()).saturating_mul(term.coefficients.len());
-            budget.spend(size + usize::try_from(stretch.bits / 4).unwrap_or(0) + 64, stretch.bits)?;
-            let Some(tail) = term.expand(stretch, &h, drop, &mut sums) else { return Ok(None) };
-            slack = slack.add(&tail, stretch.bits, Up);
-        }
+        let Some(Taylor { coefficients: sums, slack, half_width: h, .. }) = self.expand(drop, stretch, budget)? else {
+            return Ok(None);
+        };
         let mut result = Interval::symmetric(&slack);
         if drop > 0 {
             let Some(inverse) = Interval::point(h.clone())
@@ -117,6 +112,30 @@ impl ClosedForm {
             power = power.mul(&h, stretch.bits, Up);
         }
         Ok(Some(result))
+    }
+
+    /// The Taylor model of g about a stretch's centre; `drop` as in [`ClosedForm::quotient`].
+    fn expand(&self, drop: usize, stretch: Stretch, budget: &mut Budget) -> Result<Option<Taylor>, Rejection> {
+        let order = usize::try_from(stretch.order).unwrap_or(usize::MAX);
+        let h = Interval::rational(stretch.half_width, stretch.bits).abs_hi();
+        let mut model = Taylor::zero(order, &h, stretch.bits);
+        for term in &self.terms {
+            let size = (order + term.coefficients.len()).saturating_mul(term.coefficients.len());
+            budget.spend(size + usize::try_from(stretch.bits / 4).unwrap_or(0) + 64, stretch.bits)?;
+            let Some(tail) = term.expand(stretch, &h, drop, &mut model.coefficients) else { return Ok(None) };
+            // SOUND(hi): a sum of upper bounds, rounded up.
+            model.slack = model.slack.add(&tail, stretch.bits, Up);
+        }
+        Ok(Some(model))
+    }
+
+    /// The Taylor model of g on a stretch. `drop` = 1 makes sure that the rest is a power series without constant term
+    /// (see [`Taylor::slope`]).
+    pub fn taylor(&self, drop: usize, stretch: Stretch, budget: &mut Budget) -> Result<Option<Taylor>, Rejection> {
+        if usize::try_from(stretch.order).unwrap_or(usize::MAX) <= drop {
+            return Ok(None);
+        }
+        self.expand(drop, stretch, budget)
     }
 
     /// Encloses g on a stretch.

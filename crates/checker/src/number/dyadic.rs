@@ -163,6 +163,21 @@ impl Dyadic {
     }
 }
 
+impl Dyadic {
+    /// An upper bound of the square root of a number that is not negative, about `bits` bits long; of a negative one: 0.
+    pub fn sqrt_up(&self, bits: u32) -> Self {
+        if self.sign() != Ordering::Greater {
+            return Self::zero();
+        }
+        // m 2^e = (m 2^s) 2^(e - s) with e - s even: the square root is sqrt(m 2^s) 2^((e - s) / 2).
+        let wanted = i64::from(bits).saturating_mul(2) - i64::try_from(self.mantissa.bits()).unwrap_or(0);
+        let shift = wanted.max(0) + (wanted.max(0) + self.exponent).rem_euclid(2);
+        let scaled = &self.mantissa << u64::try_from(shift).unwrap_or(0);
+        // SOUND(hi): floor(sqrt(x)) + 1 > sqrt(x).
+        Self::new(scaled.sqrt() + BigInt::one(), (self.exponent - shift) / 2)
+    }
+}
+
 impl PartialEq for Dyadic {
     fn eq(&self, other: &Self) -> bool {
         self.cmp(other) == Ordering::Equal

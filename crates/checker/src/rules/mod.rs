@@ -7,3 +7,5 @@ pub(crate) mod entry;
 pub(crate) mod equality;
 pub(crate) mod inseparable;
 pub(crate) mod region;
+pub(crate) mod witness;
+pub(crate) mod worst_case;
