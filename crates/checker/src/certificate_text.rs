@@ -68,9 +68,8 @@ fn read_certificate(field: &Field) -> Result<Certificate, Rejection> {
     if bits < 2 {
         return Err(field.get("bits")?.refuse("at least 2 bits"));
     }
-    let families = bounded(&field.get("families")?, "roots", field.limits().roots)?.each(read_family)?;
+    let families = read_families(&field.get("families")?)?;
     let roots = families.iter().map(|f| f.centres.len()).sum();
-    within("roots", roots, field.limits().roots)?;
     let factors = |f: &Field| bounded(f, "roots", f.limits().roots)?.each(|f| read_factor(f, families.len()));
     let lists = |key| bounded(&field.get(key)?, "statement_entries", field.limits().statement_entries);
     let traces = lists("traces")?.each(factors)?;
@@ -116,6 +115,13 @@ pub(crate) fn read_integer(field: &Field) -> Result<i64, Rejection> {
     let bits = usize::try_from(u64::BITS - value.unsigned_abs().leading_zeros()).unwrap_or(usize::MAX);
     within("multiplier_bits", bits, field.limits().multiplier_bits)?;
     Ok(value)
+}
+
+/// Families with at most as many roots together as the limit says.
+pub(crate) fn read_families(field: &Field) -> Result<Vec<RootFamily>, Rejection> {
+    let families = bounded(field, "roots", field.limits().roots)?.each(read_family)?;
+    within("roots", families.iter().map(|f| f.centres.len()).sum(), field.limits().roots)?;
+    Ok(families)
 }
 
 fn read_family(field: &Field) -> Result<RootFamily, Rejection> {
@@ -308,7 +314,7 @@ fn read_evidence(field: &Field, counts: &Counts, statement: &Statement) -> Resul
     }
     if let Some(many) = field.optional("many") {
         field.only(&["many"], "one key")?;
-        return Ok(Evidence::Many(read_divisions(&many, counts, statement)?));
+        return Ok(Evidence::Many(read_divisions(&many, statement)?));
     }
     if let Some(witness) = field.optional("witness") {
         field.only(&["witness"], "one key")?;
@@ -328,7 +334,7 @@ pub(crate) fn list<T>(items: &[T], write: impl Fn(&T) -> Value) -> Value {
     Value::List(items.iter().map(write).collect())
 }
 
-fn write_family(family: &RootFamily) -> Value {
+pub(crate) fn write_family(family: &RootFamily) -> Value {
     let centre = |(re, im): &(_, _)| object(vec![("re", text(dyadic_text(re))), ("im", text(dyadic_text(im)))]);
     object(vec![
         ("polynomial", list(family.polynomial.coefficients(), |x| text(x))),

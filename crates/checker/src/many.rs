@@ -2,7 +2,7 @@
 //!
 //! As in [`crate::certificate`], nothing here is trusted. The rules that use it: `worst_case` and `witness`.
 
-use crate::certificate::{Angle, Factor};
+use crate::certificate::{Angle, Factor, RootFamily};
 use crate::number::Rational;
 use crate::statement::{Range, Variable};
 
@@ -19,6 +19,8 @@ pub enum Division {
 /// Evidence that no trajectory of one piece is in the zone.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct Piece {
+    /// Roots of polynomials, as in the certificate, for this piece.
+    pub families: Vec<RootFamily>,
     /// For each group of uncertain terms that is not constant a number that the size of its affine form never exceeds.
     pub bounds: Vec<Rational>,
     /// What is bounded: first, for each of these groups, its affine form and then the same negated; after them, what `functionals`

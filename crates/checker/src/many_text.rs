@@ -1,6 +1,8 @@
 //! Evidence about many trajectories as JSON.
 
-use crate::certificate_text::{Counts, list, read_angles, read_factors, write_angle, write_factor};
+use crate::certificate_text::{
+    Counts, list, read_angles, read_factors, read_families, write_angle, write_factor, write_family,
+};
 use crate::error::Rejection;
 use crate::field::Field;
 use crate::json::{Value, object, text};
@@ -24,11 +26,7 @@ fn rationals(field: &Field) -> Result<Vec<Rational>, Rejection> {
 }
 
 /// Reads the pieces.
-pub(crate) fn read_divisions(
-    field: &Field,
-    counts: &Counts,
-    statement: &Statement,
-) -> Result<Vec<Division>, Rejection> {
+pub(crate) fn read_divisions(field: &Field, statement: &Statement) -> Result<Vec<Division>, Rejection> {
     each(field, |f| {
         if f.optional("cut").is_some() {
             f.only(&["cut", "at"], "a cut: cut, at")?;
@@ -36,10 +34,14 @@ pub(crate) fn read_divisions(
             return Ok(Division::Cut(f.get("cut")?.position(axes)?, f.get("at")?.rational()?));
         }
         f.only(
-            &["bounds", "functionals", "splits", "cells", "tail"],
-            "a piece: bounds, functionals, splits, cells, tail",
+            &["families", "bounds", "functionals", "splits", "cells", "tail"],
+            "a piece: families, bounds, functionals, splits, cells, tail",
         )?;
+        let families = read_families(&f.get("families")?)?;
+        let roots = families.iter().map(|f| f.centres.len()).sum();
+        let counts = &Counts { families: families.len(), functions: 0, roots, sums: 0 };
         Ok(Division::Piece(Piece {
+            families,
             bounds: rationals(&f.get("bounds")?)?,
             functionals: each(&f.get("functionals")?, |g| read_functional(g, statement))?,
             splits: each(&f.get("splits")?, |g| each(g, |p| read_part(p, counts, statement)))?,
@@ -180,6 +182,7 @@ pub(crate) fn write_divisions(divisions: &[Division], statement: &Statement) -> 
         Division::Cut(axis, at) => object(vec![("cut", text(axis)), ("at", text(at))]),
         Division::Piece(piece) => {
             let mut fields = vec![
+                ("families", list(&piece.families, write_family)),
                 ("bounds", list(&piece.bounds, |b| text(b))),
                 ("functionals", list(&piece.functionals, |f| write_functional(f, statement))),
                 ("splits", list(&piece.splits, |parts| list(parts, write_part))),

@@ -13,24 +13,48 @@ use crate::number::Direction::Up;
 use crate::number::{Complex, Dyadic, Interval, Rational};
 use crate::support::{Inputs, Shape, Support};
 use crate::trace::ClosedForm;
+use num_traits::Zero;
 use std::cmp::Ordering;
 
 /// A tail, the leading terms of one functional, and their angles.
-type Leading<'a> = (&'a Tail, &'a TailLead, &'a [(usize, Vec<i64>)]);
+pub type Leading<'a> = (&'a Tail, &'a TailLead, &'a [(usize, Vec<i64>)]);
+
+/// The leading parts of one support function and a constant that bounds all else.
+pub struct TailForm {
+    central: LeadForm,
+    starts: Vec<LeadForm>,
+    shape: Shape,
+    constant: Dyadic,
+    bits: u32,
+}
+
+impl TailForm {
+    /// An upper bound on a box of angles, for all t from the tail's start on. `None`: an angle is out of range.
+    pub fn on_leaf(&self, angles: &AngleBox) -> Option<Dyadic> {
+        let value = on_leaf(&self.central, &self.starts, &self.shape, angles, self.bits)?;
+        // SOUND(hi): a sum of upper bounds, rounded up.
+        Some(value.add(&self.constant, self.bits, Up))
+    }
+
+    /// About the work of one leaf.
+    fn work(&self) -> usize {
+        200 * (self.central.count() + self.starts.iter().map(LeadForm::count).sum::<usize>() + 1)
+    }
+}
 
 impl Support {
-    /// An upper bound of S(t) / t^power for all t from the tail's start on; of S(t) itself for the power 0.
+    /// Splits S(t) / t^power for all t from the tail's start on.
     ///
     /// # Errors
     /// Inconclusive where a lower term may still increase or a signal's response does not decay.
-    pub fn on_tail(
+    pub fn tail_form(
         &self,
         inputs: &Inputs,
         integrals: &[Dyadic],
         (tail, lead, leading): Leading,
         position: usize,
-        (limits, bits, budget): (&Limits, u32, &mut Budget),
-    ) -> Result<Dyadic, Rejection> {
+        (bits, budget): (u32, &mut Budget),
+    ) -> Result<TailForm, Rejection> {
         let covers = Duty::new(Rule::WorstCase, Obligation::LeavesCoverTorus, position);
         let top = usize::try_from(lead.power).unwrap_or(usize::MAX).saturating_add(1);
         let split =
@@ -39,6 +63,11 @@ impl Support {
         let starts = self.responses.iter().map(split).collect::<Result<Vec<_>, _>>()?;
         let mut constant = Interval::rational(&self.direct, bits);
         for ((form, (_, size)), before) in self.signals.iter().zip(&inputs.signals).zip(integrals) {
+            budget.spend(400 * form.terms.len(), bits)?;
+            // A signal of size 0 adds nothing, whatever its response is.
+            if size.is_zero() {
+                continue;
+            }
             let rest = integral_from(form, &tail.from, position, bits)?;
             // SOUND(hi): a sum of upper bounds, rounded up.
             let whole = Interval::point(before.add(&rest, bits, Up));
@@ -46,11 +75,27 @@ impl Support {
         }
         let growth = Interval::rational(&tail.from, bits).power(lead.power, bits).recip(bits);
         let constant = constant.mul(&growth.ok_or_else(|| covers.inconclusive())?, bits);
-        let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(tail.base.len()), 0)];
+        Ok(TailForm { central, starts, shape: inputs.shape.clone(), constant: constant.hi().clone(), bits })
+    }
+
+    /// An upper bound of S(t) / t^power for all t from the tail's start on; of S(t) itself for the power 0.
+    ///
+    /// # Errors
+    /// As [`Support::tail_form`]; and where the boxes are not the whole torus.
+    pub fn on_tail(
+        &self,
+        inputs: &Inputs,
+        integrals: &[Dyadic],
+        leading: Leading,
+        position: usize,
+        (limits, bits, budget): (&Limits, u32, &mut Budget),
+    ) -> Result<Dyadic, Rejection> {
+        let covers = Duty::new(Rule::WorstCase, Obligation::LeavesCoverTorus, position);
+        let form = self.tail_form(inputs, integrals, leading, position, (bits, budget))?;
+        let mut open: Vec<(AngleBox, u64)> = vec![(whole_torus(leading.0.base.len()), 0)];
         let mut greatest: Option<Dyadic> = None;
-        let work = 200 * (central.count() + starts.iter().map(LeadForm::count).sum::<usize>() + 1);
-        for node in &lead.nodes {
-            budget.spend(work, bits)?;
+        for node in &leading.1.nodes {
+            budget.spend(form.work(), bits)?;
             let (angles, depth) = open.pop().ok_or_else(|| covers.refuted())?;
             if let Some(axis) = node {
                 within("depth", usize::try_from(depth + 1).unwrap_or(usize::MAX), limits.depth)?;
@@ -59,10 +104,7 @@ impl Support {
                 open.push((lower, depth + 1));
                 continue;
             }
-            let value =
-                on_leaf(&central, &starts, &inputs.shape, &angles, bits).ok_or_else(|| covers.inconclusive())?;
-            // SOUND(hi): a sum of upper bounds, rounded up.
-            let value = value.add(constant.hi(), bits, Up);
+            let value = form.on_leaf(&angles).ok_or_else(|| covers.inconclusive())?;
             greatest = Some(greatest.map_or(value.clone(), |g| g.max(value)));
         }
         covers.ensure(open.is_empty())?;

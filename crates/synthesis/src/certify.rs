@@ -1,5 +1,6 @@
 //! From a statement to an outcome.
 
+use crate::many::settle_many;
 use crate::margin::margin;
 use crate::options::Options;
 use crate::outcome::{Error, Outcome, Proof, Reason};
@@ -56,6 +57,9 @@ use num_traits::Zero;
 /// assert!(margin.certified > Rational::new(999_999.into(), 1_000_000.into()) && margin.certified < number(1));
 /// ```
 pub fn certify(statement: &Statement, options: &Options) -> Result<Outcome, Error> {
+    if !statement.is_single() {
+        return settle_many(statement, options);
+    }
     let mut effort = options.effort;
     match settle(statement, &Rational::zero(), options, &mut effort) {
         Finding::Open(reason) => Ok(unsettled(reason, options, effort)),

@@ -208,6 +208,6 @@ pub(crate) fn approx_value(x: &Rational) -> f64 {
 }
 
 /// The family of a polynomial, with approximations of its roots to a few bits more than asked for.
-fn family(polynomial: &keepout_core::IntegerPolynomial, bits: u32) -> RootFamily {
+pub(crate) fn family(polynomial: &keepout_core::IntegerPolynomial, bits: u32) -> RootFamily {
     RootFamily { polynomial: polynomial.to_monic(), centres: crate::strategy::root::centres(polynomial, bits) }
 }

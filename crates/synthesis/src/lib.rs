@@ -9,6 +9,7 @@ mod autonomous;
 mod certify;
 mod enclosure;
 mod explicit;
+mod many;
 mod margin;
 mod options;
 mod outcome;
@@ -19,6 +20,7 @@ mod strategy;
 
 pub use certify::{certify, certify_eventually};
 pub use explicit::{ExplicitSet, SetFormula, SetPolynomial, SetVariable, explicit};
+pub use many::{Peak, peak};
 pub use options::Options;
 pub use outcome::{Error, Margin, Outcome, Place, Proof, Reason};
 pub use region::{RegionFailure, certify_region};

@@ -76,6 +76,8 @@ pub enum Reason {
         /// The stretch of time from the window's start in which the zone is proved clear.
         clear_until: Rational,
     },
+    /// Many trajectories, and a polynomial of the zone is not affine in the states.
+    NotAffine,
     /// A claim about the trajectory cone needs a window without an end.
     WindowEnds,
     /// A limit of the checker would be exceeded.

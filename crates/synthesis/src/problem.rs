@@ -222,7 +222,7 @@ fn unscaled(sequence: &Sequence) -> Option<IntegerPolynomial> {
     Some(m.dilate_up(sequence.rate()).primitive_part())
 }
 
-fn multiplicities(m: &IntegerPolynomial, families: &[IntegerPolynomial]) -> Vec<Factor> {
+pub(crate) fn multiplicities(m: &IntegerPolynomial, families: &[IntegerPolynomial]) -> Vec<Factor> {
     let mut list = Vec::new();
     for (family, polynomial) in families.iter().enumerate() {
         let mut rest = m.clone();

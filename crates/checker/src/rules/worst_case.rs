@@ -17,8 +17,9 @@ use crate::far_field::{Turns, check_angles};
 use crate::formula::Conflict;
 use crate::limits::Budget;
 use crate::many::{Division, Functional, Piece, Ranges, Tail};
-use crate::model::Setting;
+use crate::model::{Model, Setting};
 use crate::number::{Dyadic, Interval, Rational};
+use crate::root::RootTable;
 use crate::substitution::{Group, substituted, whole};
 use crate::support::{Ground, Inputs, Support};
 use crate::trace::Stretch;
@@ -59,8 +60,13 @@ struct Bounded {
 }
 
 fn check_piece(piece: &Piece, ranges: &Ranges, on: Setting, budget: &mut Budget) -> Checked {
-    let Setting { certificate, model, limits } = on;
+    let Setting { certificate, limits, .. } = on;
     let fits = Duty::new(Rule::WorstCase, Obligation::EvidenceFitsClaim, 0);
+    // Each piece has its own roots; no sum of roots speaks of them.
+    fits.ensure(certificate.sums.is_empty() && certificate.families.is_empty())?;
+    let table = RootTable::new(&piece.families, certificate.bits, budget)?;
+    let model = &Model { formula: on.model.formula.clone(), table, functions: Vec::new() };
+    let on = Setting { model, ..on };
     let (plain, groups) = substituted(&certificate.statement, ranges).ok_or_else(|| fits.refuted())?;
     let forms: Vec<&Group> = groups.iter().filter(|g| g.constant().is_none()).collect();
     fits.ensure(forms.len() == piece.bounds.len() && piece.bounds.iter().all(|b| !b.is_negative()))?;
