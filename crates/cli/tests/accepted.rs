@@ -281,7 +281,7 @@ fn the_examples_of_the_documentation_are_accepted() {
     let here = Path::new(env!("CARGO_MANIFEST_DIR"));
     let page = std::fs::read_to_string(here.join("../../docs/model-format.md")).expect("the page");
     let examples: Vec<&str> = page.split("```toml\n").skip(1).filter_map(|rest| rest.split("```").next()).collect();
-    assert_eq!(examples.len(), 2);
+    assert_eq!(examples.len(), 3);
     for example in examples {
         let model = load_text(example, "example", "m", &here.join("tests/models/good"), Need::Zones);
         model.unwrap_or_else(|d| panic!("{d}"));

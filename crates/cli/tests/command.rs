@@ -102,6 +102,19 @@ fn help_and_version_exit_with_0() {
 }
 
 #[test]
+fn the_spectrum_of_a_model_with_uncertain_constants_is_that_at_the_centres_and_says_so() {
+    let path = folder("spectrum").join("m.toml");
+    let text_of = "[state.x]\nstart = [0, 1]\nrate = \"-k*x/m + w\"\n[disturbance.w]\nrange = [-1, 1]\n\
+                   [uncertain.k]\nrange = [5, 7]\n[uncertain.m]\nrange = [1, 3]\n";
+    std::fs::write(&path, text_of).expect("the model is written");
+    let output = keepout(&["spectrum", &path.to_string_lossy()]);
+    assert_eq!(status(&output), 0);
+    let found = text(&output.stdout);
+    assert!(found.contains("uncertain constants at the centres of their ranges: k = 6, m = 2\n"), "{found}");
+    assert!(found.contains("largest Jordan block 1, irreducible: s + 3\n"), "{found}");
+}
+
+#[test]
 fn an_unknown_zone_is_answered_with_the_nearest_and_all_names() {
     let path = model(&folder("names"), &[("end stop", "x > 2"), ("over speed", "p > 3")]);
     let output = keepout(&["certify", &path, "--zone", "end-stop"]);

@@ -50,7 +50,7 @@ fn wrong_models_exit_with_3_and_say_where_and_how_to_mend_it() {
         ("infinite", format!("[state.x]\nstart = inf\nrate = \"-x\"\n{zone}"), "expected a finite number"),
         ("cycle", format!("[constants]\na = \"b\"\nb = \"a\"\n{state}{zone}"), "is defined through itself"),
         ("window", format!("{state}{zone}from = 3\nuntil = 2\n"), "before it begins"),
-        ("range", format!("[state.x]\nstart = [0, 1]\nrate = \"-x\"\n{zone}"), "not supported yet"),
+        ("range", format!("[state.x]\nstart = [1, 0]\nrate = \"-x\"\n{zone}"), "the range begins at 1"),
         ("twice", format!("{state}{zone}{}", zone.replace("far", "FAR")), "another zone named"),
         ("reserved", format!("[constants]\npi = 3\n{state}{zone}"), "reserved word"),
     ];

@@ -4,7 +4,7 @@ use super::{CLEAR, WRONG, complain, loaded, print};
 use crate::model::{Model, Need};
 use crate::number::{for_people, nearest_decimal};
 use keepout_checker::number::{Interval, Rational};
-use keepout_checker::statement::Variable;
+use keepout_checker::statement::{Uncertain, UncertainTerm, Variable};
 use keepout_core::ToRational;
 use keepout_core::blocks::SparseMatrix;
 use keepout_core::structure::{Boundedness, Evidence, StructureOptions, spectral_structure_with};
@@ -32,7 +32,7 @@ pub fn run(arguments: &Arguments) -> u8 {
     }
 }
 
-/// The structure of the states' matrix A, drives and offset left out.
+/// The structure of the states' matrix A, inputs and offset left out; uncertain constants are at the centres of their ranges.
 fn structure(model: &Model) -> Result<SpectralStructure, CoreError> {
     let rows = model.phase.rates.iter().enumerate();
     let entries = rows.flat_map(|(i, rate)| {
@@ -45,12 +45,27 @@ fn structure(model: &Model) -> Result<SpectralStructure, CoreError> {
             | Variable::Disturbance(_) => None,
         })
     });
-    let a = SparseMatrix::new(model.states.len(), entries)?;
+    let uncertain = model.phase.uncertain.iter().filter_map(|term| match term.of {
+        Some(Variable::State(j)) => Some((term.state, j, at_centre(term, model))),
+        _ => None,
+    });
+    let a = SparseMatrix::new(model.states.len(), entries.chain(uncertain))?;
     spectral_structure_with(&a, &StructureOptions::default())
+}
+
+/// The factor of an uncertain term where each uncertain constant is in the middle of its range.
+fn at_centre(term: &UncertainTerm, model: &Model) -> Rational {
+    let power = |(position, exponent): &(usize, i32)| model.uncertain[*position].range.centre().pow(*exponent);
+    term.powers.iter().map(power).fold(term.factor.clone(), |product, power| product * power)
 }
 
 fn report(model: &Model, s: &SpectralStructure) -> String {
     let mut text = format!("{}\n{} states, {} blocks\n", model.title, s.order, s.blocks.len());
+    if !model.uncertain.is_empty() {
+        let centre = |u: &Uncertain| format!("{} = {}", u.name, exact_or_decimal(&u.range.centre()));
+        let list: Vec<String> = model.uncertain.iter().map(centre).collect();
+        let _ = writeln!(text, "uncertain constants at the centres of their ranges: {}", list.join(", "));
+    }
     blocks(&mut text, model, s);
     let _ = writeln!(text, "\nfactors of the characteristic polynomial");
     for (i, factor) in s.factors.iter().enumerate() {

@@ -44,6 +44,10 @@ pub trait Scope {
     fn names(&self) -> Vec<String>;
     /// What a function other than abs is refused with here, and what to do.
     fn function_hint(&self, function: Function) -> (String, String);
+    /// The reciprocal of a divisor that is no constant, or why there is none and what to do; `None`: divisors are constants.
+    fn reciprocal(&self, _divisor: &Polynomial) -> Option<Result<Polynomial, (String, String)>> {
+        None
+    }
     /// Whether abs may split cases here.
     fn splits(&self) -> bool {
         false
@@ -146,13 +150,26 @@ fn product(node: &Node, parts: &[(Step, Node)], scope: &dyn Scope) -> Cases {
             Step::Times => {
                 total = crossed(node, total, &evaluate(part, scope)?, |x, y| multiplied(node, &x, y, scope))?;
             }
-            Step::Over => total = scaled(total, &divisor(part, scope)?.recip()),
+            Step::Over => total = divided(node, total, part, scope)?,
         }
         for case in &total {
             check_size(node, &case.value, scope)?;
         }
     }
     Ok(total)
+}
+
+fn divided(node: &Node, cases: Vec<Case>, part: &Node, scope: &dyn Scope) -> Cases {
+    let by = evaluate(part, scope)?;
+    if let [Case { conditions, value }] = by.as_slice()
+        && conditions.is_empty()
+        && let Some(reciprocal) = scope.reciprocal(value)
+    {
+        let refused = |(message, help): (String, String)| Diagnostic::new(part.span.clone(), message).help(help);
+        let reciprocal = plain(reciprocal.map_err(refused)?);
+        return crossed(node, cases, &reciprocal, |x, y| multiplied(node, &x, y, scope));
+    }
+    Ok(scaled(cases, &constant_divisor(part, &by)?.recip()))
 }
 
 /// Each case of the left with each case of the right.
@@ -194,8 +211,11 @@ fn multiplied(node: &Node, x: &Polynomial, y: &Polynomial, scope: &dyn Scope) ->
 /// # Errors
 /// A diagnostic if it is not a constant, or 0.
 pub(super) fn divisor(node: &Node, scope: &dyn Scope) -> Result<BigRational, Diagnostic> {
-    let cases = evaluate(node, scope)?;
-    let value = single_constant(&cases).ok_or_else(|| {
+    constant_divisor(node, &evaluate(node, scope)?)
+}
+
+fn constant_divisor(node: &Node, cases: &[Case]) -> Result<BigRational, Diagnostic> {
+    let value = single_constant(cases).ok_or_else(|| {
         Diagnostic::new(node.span.clone(), "a divisor is a constant")
             .help("multiply through: x/y > 2 with y > 0 is x > 2*y")
     })?;

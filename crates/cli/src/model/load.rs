@@ -1,14 +1,13 @@
 //! From a file to a model.
 
-use super::later::refuse_later;
 use super::scope::{Kind, Names};
-use super::section::{self, Entry};
+use super::section::{self, Dynamics, Entry};
 use super::table::Refusals;
 use super::zone::zones;
-use super::{Model, matrix};
+use super::{Model, matrix, start, unknown};
 use crate::diagnostic::{Diagnostic, Diagnostics};
 use crate::expression::RESERVED;
-use keepout_checker::statement::{Affine, Phase, State};
+use keepout_checker::statement::Starts;
 use std::io::Read;
 use std::ops::Range;
 use std::path::Path;
@@ -17,7 +16,7 @@ use toml::de::{DeTable, DeValue};
 /// The most bytes of a model or a matrix file.
 pub const MAX_BYTES: u64 = 64 << 20;
 
-/// The most constants, states, drives, outputs or zones.
+/// The most constants, states, inputs, uncertain constants, outputs, zones, or vectors of a set of starts.
 pub const MAX_ENTRIES: usize = 4_000;
 
 /// The most faults in the TOML syntax that are told at once.
@@ -113,29 +112,42 @@ impl<'a> Loader<'a> {
         let outputs = self.named("output", &["value", "unit"]);
         self.declare_all(&constants, |_| Kind::Constant(None));
         self.declare_all(&states, Kind::State);
-        let matrix = self.root.get("matrix").and_then(|item| matrix::Form::new(item, refusals));
+        let set = self.root.get("start");
+        let matrix = self.root.get("matrix").and_then(|item| matrix::Form::new(item, set, refusals));
         for (i, (name, span)) in matrix.iter().flat_map(|m| m.names(refusals)).enumerate() {
             self.declare(&name, span, Kind::State(i));
         }
         self.declare_all(&drives, Kind::Drive);
         self.declare_all(&outputs, |i| Kind::Output(i, None));
-        for (section, kind) in [("disturbance", Kind::Disturbance), ("uncertain", Kind::Uncertain)] {
-            if self.root.get(section).is_some_and(|item| item.get_ref().as_table().is_some()) {
-                let entries = section::entries(self.root, section, refusals);
-                self.declare_all(&entries, |_| kind.clone());
-            }
-        }
+        let disturbances = self.named("disturbance", &["range", "unit"]);
+        let uncertain = self.named("uncertain", &["range", "unit", "varying"]);
+        self.declare_all(&disturbances, Kind::Disturbance);
+        self.declare_all(&uncertain, |i| Kind::Uncertain(i, None));
         section::constants(&constants, &mut self.names, refusals);
-        refuse_later(self.root, &self.names, refusals);
+        self.refuse_phases();
+        let disturbances = unknown::disturbances(&disturbances, &self.names, refusals);
+        let uncertain = unknown::uncertain(&uncertain, &mut self.names, refusals);
         let drives = section::drives(&drives, &self.names, refusals);
-        let (states, rates) = self.dynamics(&states, matrix.as_ref(), drives.len());
+        let Dynamics { mut states, radii, phase } =
+            self.dynamics(&states, matrix.as_ref(), (drives.len(), disturbances.len()));
+        let starts = match set {
+            // Without states the fault has been told.
+            Some(_) if states.is_empty() => Starts::One,
+            Some(item) => start::set(item, &mut states, &self.names, refusals).unwrap_or_default(),
+            None => start::of_radii(radii),
+        };
         let outputs = section::outputs(&outputs, &mut self.names, refusals);
         let zones = zones(self.root, need, &self.names, refusals);
         let (inputs, exponentials) = self.names.take_exponentials();
         let drives = drives.into_iter().chain(inputs).collect();
-        let (title, phase, source) =
-            (title.unwrap_or_default(), Phase { rates, uncertain: Vec::new() }, refusals.text.to_string());
-        Model { title, states, drives, outputs, exponentials, phase, zones, source }
+        let (title, source) = (title.unwrap_or_default(), refusals.text.to_string());
+        Model { title, states, starts, drives, disturbances, uncertain, outputs, exponentials, phase, zones, source }
+    }
+
+    fn refuse_phases(&self) {
+        let Some((key, _)) = self.root.get_key_value("phase") else { return };
+        let help = "describe one phase, with a zone's `until` for its end";
+        self.refusals.refuse(key.span(), "phases are not supported yet", help);
     }
 
     fn named(&self, section: &str, keys: &[&str]) -> Vec<Entry<'a>> {
@@ -144,13 +156,15 @@ impl<'a> Loader<'a> {
         entries
     }
 
-    fn dynamics(&self, states: &[Entry], matrix: Option<&matrix::Form>, drives: usize) -> (Vec<State>, Vec<Affine>) {
+    /// `inputs`: the numbers of drives and of disturbances.
+    fn dynamics(&self, states: &[Entry], matrix: Option<&matrix::Form>, inputs: (usize, usize)) -> Dynamics {
+        let has_set = self.root.contains_key("start");
         match (matrix, self.root.get("state")) {
-            (Some(matrix), None) => matrix.read(drives, self.folder, &self.names, self.refusals),
+            (Some(matrix), None) => matrix.read(inputs, self.folder, &self.names, self.refusals),
             (Some(matrix), Some(_)) => {
                 let message = "a model has [state] sections or a [matrix] section, not both";
                 self.refusals.refuse(matrix.place(self.refusals), message, "remove one of them");
-                section::states(states, &self.names, self.refusals)
+                section::states(states, has_set, &self.names, self.refusals)
             }
             (None, _) => {
                 let is_empty = |item: &toml::Spanned<DeValue>| item.get_ref().as_table().is_some_and(|t| t.is_empty());
@@ -158,7 +172,7 @@ impl<'a> Loader<'a> {
                     let help = "add a section such as [state.speed] with `start` and `rate`";
                     self.refusals.refuse(0..1, "the model has no state", help);
                 }
-                section::states(states, &self.names, self.refusals)
+                section::states(states, has_set, &self.names, self.refusals)
             }
         }
     }

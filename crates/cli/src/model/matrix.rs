@@ -1,12 +1,13 @@
-//! The matrix form of a model: x' = A x + c + B u.
+//! The matrix form of a model: x' = A x + c + B u + E d.
 
-use super::later::ONE_TRAJECTORY;
 use super::load::bounded_bytes;
 use super::scope::Names;
-use super::section::start;
+use super::section::Dynamics;
+use super::start::{dimension, refuse_second, start};
 use super::table::{Item, Refusals, kind_of};
+use super::unknown::Entered;
 use crate::matrix_market::{self, Matrix};
-use keepout_checker::statement::{Affine, State, Variable};
+use keepout_checker::statement::{Affine, Phase, State, Variable};
 use num_rational::BigRational;
 use num_traits::Zero;
 use std::collections::BTreeMap;
@@ -24,19 +25,25 @@ pub(super) struct Form<'a> {
 }
 
 impl<'a> Form<'a> {
-    /// The section with its number of states: that of the starts.
-    pub(super) fn new(item: Item<'a>, refusals: &Refusals) -> Option<Self> {
+    /// The section with its number of states: that of the starts, or of the set of starts.
+    pub(super) fn new(item: Item<'a>, set: Option<Item>, refusals: &Refusals) -> Option<Self> {
         let table = refusals.table(item, "a section [matrix]")?;
         refusals.only(table, &KEYS, "[matrix]");
-        let Some(starts) = table.get("start") else {
-            let help = "add start = [...], a list with one number for each state";
-            refusals.refuse(refusals.header(item), "[matrix] has no `start`", help);
-            return None;
+        let (starts, size) = match (table.get("start"), set) {
+            (Some(starts), None) => (starts, refusals.list_of(starts, "a list with one number for each state")?.len()),
+            (starts, Some(set)) => {
+                starts.into_iter().for_each(|item| refuse_second(item, refusals));
+                (set, dimension(set))
+            }
+            (None, None) => {
+                let help = "add start = [...], a list with one number for each state";
+                refusals.refuse(refusals.header(item), "[matrix] has no `start`", help);
+                return None;
+            }
         };
-        let size = refusals.list_of(starts, "a list with one number for each state")?.len();
         if size == 0 || size > super::MAX_ENTRIES {
             let message = format!("expected 1 to {} states, found {size}", super::MAX_ENTRIES);
-            refusals.refuse(starts.span(), message, "give one number for each state");
+            refusals.refuse(refusals.header(starts), message, "give one number for each state");
             return None;
         }
         Some(Self { item, table, size })
@@ -72,30 +79,15 @@ impl<'a> Form<'a> {
         Some(list)
     }
 
-    /// States and rates.
-    pub(super) fn read(
-        &self,
-        drives: usize,
-        folder: &Path,
-        names: &Names,
-        refusals: &Refusals,
-    ) -> (Vec<State>, Vec<Affine>) {
-        if let Some((key, _)) = self.table.get_key_value("E") {
-            refusals.refuse(
-                key.span(),
-                "disturbances are not supported yet",
-                format!("leave `E` out; {ONE_TRAJECTORY}"),
-            );
-        }
+    /// States and rates; `inputs`: the numbers of drives and of disturbances.
+    pub(super) fn read(&self, inputs: (usize, usize), folder: &Path, names: &Names, refusals: &Refusals) -> Dynamics {
         let reader = Reader { folder, names, refusals };
         let n = self.size;
-        let mut rates = vec![Affine::default(); n];
+        let mut phase = Phase { rates: vec![Affine::default(); n], uncertain: Vec::new() };
         match self.table.get("A") {
             Some(item) => {
                 let why = "one row and one column for each state";
-                reader.matrix(item).and_then(|a| reader.shaped(item, a, (n, n), why)).into_iter().for_each(|a| {
-                    add(&mut rates, a, Variable::State);
-                });
+                reader.shaped(item, (n, n), why).into_iter().for_each(|a| a.add(&mut phase, Variable::State));
             }
             None => refusals.refuse(
                 self.place(refusals),
@@ -103,32 +95,50 @@ impl<'a> Form<'a> {
                 "add A = [[...], ...], a list of rows, or A = \"file.mtx\"",
             ),
         }
-        match self.table.get("B") {
-            Some(item) if drives == 0 => {
-                refusals.refuse(item.span(), "there is a `B`, but no drive", "declare a [drive] for each column of B");
+        let (drives, disturbances) = inputs;
+        self.input(("B", "drive", drives), Variable::Drive, &reader, &mut phase);
+        self.input(("E", "disturbance", disturbances), Variable::Disturbance, &reader, &mut phase);
+        for (i, entry) in self.table.get("c").and_then(|item| reader.column(item, n)).into_iter().flatten().enumerate()
+        {
+            entry.add(None, i, &mut phase.rates[i], &mut phase.uncertain);
+        }
+        let (states, radii) = self.states(names, refusals);
+        Dynamics { states, radii, phase }
+    }
+
+    /// Adds what a matrix with a column for each input of a kind says.
+    fn input(
+        &self,
+        (key, word, count): (&str, &str, usize),
+        variable: fn(usize) -> Variable,
+        reader: &Reader,
+        phase: &mut Phase,
+    ) {
+        match self.table.get(key) {
+            Some(item) if count == 0 => {
+                let help = format!("declare a [{word}] for each column of {key}");
+                reader.refusals.refuse(item.span(), format!("there is {} `{key}`, but no {word}", article(key)), help);
             }
             Some(item) => {
-                let why = "a row for each state, a column for each drive in the order of the file";
-                reader.matrix(item).and_then(|b| reader.shaped(item, b, (n, drives), why)).into_iter().for_each(|b| {
-                    add(&mut rates, b, Variable::Drive);
-                });
+                let why = format!("a row for each state, a column for each {word} in the order of the file");
+                let matrix = reader.shaped(item, (self.size, count), &why);
+                matrix.into_iter().for_each(|m| m.add(phase, variable));
             }
-            None if drives > 0 => refusals.refuse(
-                self.place(refusals),
-                "there are drives, but [matrix] has no `B`",
-                "add B with a row for each state and a column for each drive",
+            None if count > 0 => reader.refusals.refuse(
+                self.place(reader.refusals),
+                format!("there are {word}s, but [matrix] has no `{key}`"),
+                format!("add {key} with a row for each state and a column for each {word}"),
             ),
             None => {}
         }
-        if let Some(offsets) = self.table.get("c").and_then(|item| reader.column(item, n)) {
-            rates.iter_mut().zip(offsets).for_each(|(rate, offset)| rate.offset = offset);
-        }
-        (self.states(names, refusals), rates)
     }
 
-    fn states(&self, names: &Names, refusals: &Refusals) -> Vec<State> {
+    /// The states, and the radii of their starts.
+    fn states(&self, names: &Names, refusals: &Refusals) -> (Vec<State>, Vec<BigRational>) {
+        let zero = || (BigRational::zero(), BigRational::zero());
         let starts = self.table.get("start").and_then(|i| i.get_ref().as_array());
-        let starts = starts.iter().flat_map(|a| a.iter()).map(|i| start(i, names, refusals));
+        let starts = starts.iter().flat_map(|a| a.iter()).map(|i| start(i, names, refusals).unwrap_or_else(zero));
+        let starts: Vec<_> = starts.chain(std::iter::repeat_with(zero)).take(self.size).collect();
         let units = self.labels("units", "a list of units", refusals);
         let units: Vec<Option<String>> = match units {
             Some(list) => list.iter().map(|i| refusals.text_of(i, "a unit")).collect(),
@@ -136,18 +146,33 @@ impl<'a> Form<'a> {
         };
         // The faults of the names have been told when they were declared.
         let list = self.names(&Refusals::new(refusals.text));
-        let state = |(((name, _), unit), start): (((String, _), _), Option<BigRational>)| State {
-            name,
-            unit,
-            start: start.unwrap_or_else(BigRational::zero),
+        let state = |(((name, _), unit), (start, radius)): (((String, _), _), (BigRational, BigRational))| {
+            (State { name, unit, start }, radius)
         };
-        list.into_iter().zip(units).zip(starts).map(state).collect()
+        list.into_iter().zip(units).zip(starts).map(state).unzip()
     }
 }
 
-fn add(rates: &mut [Affine], matrix: Matrix, variable: fn(usize) -> Variable) {
-    for ((i, j), value) in matrix.entries {
-        rates[i].terms.push((value, variable(j)));
+/// The article before the name of a matrix.
+fn article(key: &str) -> &'static str {
+    if key == "E" { "an" } else { "a" }
+}
+
+/// A matrix with its uncertain entries.
+struct Entries {
+    exact: Matrix,
+    uncertain: Vec<((usize, usize), Entered)>,
+}
+
+impl Entries {
+    /// Adds matrix * variables to the rates.
+    fn add(self, phase: &mut Phase, variable: fn(usize) -> Variable) {
+        for ((i, j), value) in self.exact.entries {
+            phase.rates[i].terms.push((value, variable(j)));
+        }
+        for ((i, j), value) in self.uncertain {
+            value.add(Some(variable(j)), i, &mut phase.rates[i], &mut phase.uncertain);
+        }
     }
 }
 
@@ -160,9 +185,9 @@ struct Reader<'r> {
 
 impl Reader<'_> {
     /// A matrix, given as rows or as the name of a Matrix Market file beside the model.
-    fn matrix(&self, item: Item) -> Option<Matrix> {
+    fn matrix(&self, item: Item) -> Option<Entries> {
         match item.get_ref() {
-            DeValue::String(name) => self.file(name, item.span()),
+            DeValue::String(name) => self.file(name, item.span()).map(|exact| Entries { exact, uncertain: Vec::new() }),
             DeValue::Array(_) => self.rows(item),
             DeValue::Integer(_)
             | DeValue::Float(_)
@@ -176,9 +201,9 @@ impl Reader<'_> {
         }
     }
 
-    fn rows(&self, item: Item) -> Option<Matrix> {
+    fn rows(&self, item: Item) -> Option<Entries> {
         let rows = self.refusals.list_of(item, "a list of rows")?;
-        let mut entries = BTreeMap::new();
+        let (mut entries, mut uncertain) = (BTreeMap::new(), Vec::new());
         let mut columns = None;
         let mut complete = true;
         for (i, row) in rows.iter().enumerate() {
@@ -193,14 +218,16 @@ impl Reader<'_> {
                 complete = false;
             }
             for (j, entry) in list.iter().enumerate() {
-                match self.refusals.number(entry, self.names) {
-                    Some(value) if value.is_zero() => {}
-                    Some(value) => drop(entries.insert((i, j), value)),
+                match Entered::read(entry, self.names, self.refusals) {
+                    Some(Entered::Exact(value)) if value.is_zero() => {}
+                    Some(Entered::Exact(value)) => drop(entries.insert((i, j), value)),
+                    Some(value) => uncertain.push(((i, j), value)),
                     None => complete = false,
                 }
             }
         }
-        complete.then_some(Matrix { rows: rows.len(), columns: columns.unwrap_or(0), entries })
+        let exact = Matrix { rows: rows.len(), columns: columns.unwrap_or(0), entries };
+        complete.then_some(Entries { exact, uncertain })
     }
 
     fn file(&self, name: &str, span: Range<usize>) -> Option<Matrix> {
@@ -227,30 +254,33 @@ impl Reader<'_> {
     }
 
     /// The matrix, if it has the wanted shape.
-    fn shaped(&self, item: Item, matrix: Matrix, wanted: (usize, usize), why: &str) -> Option<Matrix> {
-        if (matrix.rows, matrix.columns) == wanted {
+    fn shaped(&self, item: Item, wanted: (usize, usize), why: &str) -> Option<Entries> {
+        let matrix = self.matrix(item)?;
+        let found = (matrix.exact.rows, matrix.exact.columns);
+        if found == wanted {
             return Some(matrix);
         }
-        let (rows, columns) = wanted;
-        let message = format!("expected {rows} x {columns} entries, found {} x {}", matrix.rows, matrix.columns);
+        let message = format!("expected {} x {} entries, found {} x {}", wanted.0, wanted.1, found.0, found.1);
         self.refusals.refuse(self.refusals.header(item), message, format!("give {why}"));
         None
     }
 
     /// The offset c: a list of numbers, or a matrix with one column.
-    fn column(&self, item: Item, length: usize) -> Option<Vec<BigRational>> {
+    fn column(&self, item: Item, length: usize) -> Option<Vec<Entered>> {
         let list = item.get_ref().as_array().filter(|a| a.iter().all(|e| e.get_ref().as_array().is_none()));
         let Some(list) = list else {
-            let mut matrix = self.shaped(item, self.matrix(item)?, (length, 1), "one number for each state")?;
-            let entry = |i: usize| matrix.entries.remove(&(i, 0)).unwrap_or_else(BigRational::zero);
-            return Some((0..length).map(entry).collect());
+            let Entries { mut exact, uncertain } = self.shaped(item, (length, 1), "one number for each state")?;
+            let entry = |i: usize| exact.entries.remove(&(i, 0)).unwrap_or_else(BigRational::zero);
+            let mut column: Vec<Entered> = (0..length).map(entry).map(Entered::Exact).collect();
+            uncertain.into_iter().for_each(|((i, _), value)| column[i] = value);
+            return Some(column);
         };
         if list.len() != length {
             let message = format!("expected {length} entries in `c`, one for each state, found {}", list.len());
             self.refusals.refuse(item.span(), message, "give one number for each state");
             return None;
         }
-        let entries: Vec<Option<BigRational>> = list.iter().map(|e| self.refusals.number(e, self.names)).collect();
+        let entries: Vec<Option<Entered>> = list.iter().map(|e| Entered::read(e, self.names, self.refusals)).collect();
         entries.into_iter().collect()
     }
 }

@@ -4,18 +4,20 @@
 //! fault is collected with its place; a model without faults is the only result.
 
 mod dependency;
-mod later;
 mod load;
 mod matrix;
 mod scope;
 mod section;
+mod start;
 mod table;
+mod unknown;
 mod zone;
 
 pub use load::{MAX_BYTES, MAX_ENTRIES, Need, load, load_text};
 
 use keepout_checker::statement::{
-    Claim, Drive, Exponential, Formula, Output, Phase, Rational, Starts, State, Statement, Variable, Zone,
+    Claim, Disturbance, Drive, Exponential, Formula, Output, Phase, Rational, Starts, State, Statement, Uncertain,
+    Variable, Zone,
 };
 use num_traits::Zero;
 
@@ -26,8 +28,14 @@ pub struct Model {
     pub title: String,
     /// The states in the order of the file.
     pub states: Vec<State>,
+    /// The admissible starts about those of the states.
+    pub starts: Starts,
     /// The known inputs in the order of the file.
     pub drives: Vec<Drive>,
+    /// The unknown inputs in the order of the file.
+    pub disturbances: Vec<Disturbance>,
+    /// The uncertain constants in the order of the file.
+    pub uncertain: Vec<Uncertain>,
     /// The named expressions in the order of the file; no value refers to an output.
     pub outputs: Vec<Output>,
     /// What exp stands for in zones.
@@ -49,9 +57,9 @@ impl Model {
         Statement {
             title: self.title.clone(),
             states: self.states.clone(),
-            starts: Starts::One,
-            disturbances: Vec::new(),
-            uncertain: Vec::new(),
+            starts: self.starts.clone(),
+            disturbances: self.disturbances.clone(),
+            uncertain: self.uncertain.clone(),
             drives: self.drives.clone(),
             outputs: self.outputs.clone(),
             exponentials: if has_exponential(&self.zones[zone].inside) {

@@ -1,5 +1,6 @@
 //! The names of a model, and what they mean in numbers, rates, signals, outputs and zones.
 
+use super::unknown;
 use crate::expression::{Function, Polynomial, Scope, Value};
 use keepout_checker::statement::{Affine, Drive, Exponential, SignalTerm, Variable, Wave};
 use num_rational::BigRational;
@@ -17,8 +18,9 @@ pub(super) enum Kind {
     Drive(usize),
     /// A named expression; `None` until its value is known, or if it has none.
     Output(usize, Option<Polynomial>),
-    Disturbance,
-    Uncertain,
+    Disturbance(usize),
+    /// An uncertain constant; `None` until its range is known, or if it has none.
+    Uncertain(usize, Option<keepout_checker::statement::Range>),
 }
 
 impl Kind {
@@ -28,8 +30,8 @@ impl Kind {
             Self::State(_) => "a state",
             Self::Drive(_) => "a drive",
             Self::Output(..) => "an output",
-            Self::Disturbance => "a disturbance",
-            Self::Uncertain => "an uncertain constant",
+            Self::Disturbance(_) => "a disturbance",
+            Self::Uncertain(..) => "an uncertain constant",
         }
     }
 }
@@ -66,6 +68,14 @@ impl Names {
             self.outputs.insert(i, name.clone());
         }
         self.list.push((name, kind, span));
+    }
+
+    /// The name and the range of an uncertain constant.
+    pub(super) fn uncertain(&self, position: usize) -> Option<(&str, &keepout_checker::statement::Range)> {
+        self.list.iter().find_map(|(name, kind, _)| match kind {
+            Kind::Uncertain(i, Some(range)) if *i == position => Some((name.as_str(), range)),
+            _ => None,
+        })
     }
 
     /// The number of declared drives.
@@ -108,6 +118,8 @@ impl Names {
 pub(super) enum Place {
     /// A number: constants only.
     Number,
+    /// An entry of a matrix: constants and uncertain constants.
+    Entry,
     Rate,
     Signal,
     Output,
@@ -137,7 +149,7 @@ impl NameScope<'_> {
                 "a rate does not use t".into(),
                 "declare a [drive] with the time-dependent part and use its name",
             ),
-            Place::Number => refused("t is not a constant".into(), "use numbers and constants only"),
+            Place::Number | Place::Entry => refused("t is not a constant".into(), "use numbers and constants only"),
             Place::Signal | Place::Output | Place::Zone => Value::Variable(Variable::Time),
         }
     }
@@ -146,15 +158,29 @@ impl NameScope<'_> {
         let word = kind.word();
         match (kind, self.place) {
             (Kind::Constant(Some(value)), _) => Value::Constant(value.clone()),
-            (Kind::Disturbance | Kind::Uncertain, Place::Zone) => refused(
+            (Kind::Disturbance(_) | Kind::Uncertain(..), Place::Zone) => refused(
                 format!("`{name}` is {word}: a zone does not use it"),
                 "describe the zone by states, drives, outputs, constants and t",
             ),
-            (Kind::Constant(None) | Kind::Uncertain, _) => stand_in(),
-            (Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance, Place::Number) => {
-                refused(format!("`{name}` is {word}, not a constant"), "use numbers and constants only")
-            }
-            (Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance, Place::Signal) => refused(
+            (Kind::Disturbance(_) | Kind::Uncertain(..), Place::Output) => refused(
+                format!("`{name}` is {word}: an output does not use it"),
+                "describe the output by states, drives, constants and t; a nominal value stands under [constants]",
+            ),
+            (Kind::Uncertain(..), Place::Number) => refused(
+                format!("`{name}` is {word}: only rates use it"),
+                "use an exact value, or declare what depends on it under [uncertain], with a range of its own",
+            ),
+            (Kind::Uncertain(..), Place::Signal) => refused(
+                format!("`{name}` is {word}: a signal does not use it"),
+                "multiply the drive by it in a rate, or declare a [disturbance] for what is not known of the signal",
+            ),
+            (Kind::Uncertain(i, Some(_)), Place::Rate | Place::Entry) => Value::Variable(unknown::factor(*i, false)),
+            (Kind::Constant(None) | Kind::Uncertain(_, None), _) => stand_in(),
+            (
+                Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance(_),
+                Place::Number | Place::Entry,
+            ) => refused(format!("`{name}` is {word}, not a constant"), "use numbers and constants only"),
+            (Kind::State(_) | Kind::Drive(_) | Kind::Output(..) | Kind::Disturbance(_), Place::Signal) => refused(
                 format!("`{name}` is {word}: a signal uses only constants and t"),
                 "feedback belongs into a rate; a signal is known beforehand",
             ),
@@ -162,7 +188,7 @@ impl NameScope<'_> {
                 format!("`{name}` is an output: a rate does not use outputs"),
                 "write the expression of the output in its place",
             ),
-            (Kind::Disturbance, Place::Rate | Place::Output) => stand_in(),
+            (Kind::Disturbance(i), Place::Rate) => Value::Variable(Variable::Disturbance(*i)),
             (Kind::State(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::State(*i)),
             (Kind::Drive(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::Drive(*i)),
             (Kind::Output(_, Some(value)), Place::Output) => Value::Polynomial(value.clone()),
@@ -183,13 +209,13 @@ impl Scope for NameScope<'_> {
     fn names(&self) -> Vec<String> {
         let allowed = |kind: &Kind| match self.place {
             Place::Number | Place::Signal => matches!(kind, Kind::Constant(_)),
+            Place::Entry => matches!(kind, Kind::Constant(_) | Kind::Uncertain(..)),
             Place::Rate => !matches!(kind, Kind::Output(..)),
-            Place::Output => true,
-            Place::Zone => !matches!(kind, Kind::Disturbance | Kind::Uncertain),
+            Place::Output | Place::Zone => !matches!(kind, Kind::Disturbance(_) | Kind::Uncertain(..)),
         };
         let mut names: Vec<String> =
             self.names.list.iter().filter(|(_, k, _)| allowed(k)).map(|(n, ..)| n.clone()).collect();
-        if !matches!(self.place, Place::Rate | Place::Number) {
+        if !matches!(self.place, Place::Rate | Place::Number | Place::Entry) {
             names.insert(0, "t".into());
         }
         names
@@ -199,7 +225,7 @@ impl Scope for NameScope<'_> {
         let name = function.name();
         let drive = "declare a [drive] for a known signal and use its name; a nonlinear plant has to be linearised";
         match (self.place, function) {
-            (Place::Number, _) => (
+            (Place::Number | Place::Entry, _) => (
                 format!("{name} is not exact in a constant"),
                 "give the value as an exact number, or a range around it under [uncertain]".into(),
             ),
@@ -214,6 +240,11 @@ impl Scope for NameScope<'_> {
                 format!("declare a [drive] such as signal = \"{name}(2*t)\" and use its name"),
             ),
         }
+    }
+
+    fn reciprocal(&self, divisor: &Polynomial) -> Option<Result<Polynomial, (String, String)>> {
+        let is_rate = matches!(self.place, Place::Rate | Place::Entry);
+        (is_rate && unknown::is_uncertain(divisor)).then(|| unknown::reciprocal(divisor, self.names))
     }
 
     fn splits(&self) -> bool {

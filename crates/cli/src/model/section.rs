@@ -1,12 +1,12 @@
 //! The named sections: constants, drives, states, outputs.
 
 use super::dependency::order;
-use super::later::ONE_TRAJECTORY;
 use super::scope::{Kind, NameScope, Names, Place};
+use super::start::{refuse_second, start};
 use super::table::{Item, Refusals};
-use crate::diagnostic::Diagnostic;
-use crate::expression::{Node, NodeKind, Polynomial, Scope, parse, polynomial, signal};
-use keepout_checker::statement::{Affine, Drive, Output, State};
+use super::unknown::rate;
+use crate::expression::{Node, Polynomial, parse, polynomial, signal};
+use keepout_checker::statement::{Drive, Output, Phase, State};
 use num_rational::BigRational;
 use num_traits::Zero;
 use std::collections::HashMap;
@@ -21,12 +21,12 @@ pub(super) struct Entry<'a> {
 }
 
 impl<'a> Entry<'a> {
-    fn get(&self, key: &str) -> Option<Item<'a>> {
+    pub(super) fn get(&self, key: &str) -> Option<Item<'a>> {
         self.item.get_ref().as_table().and_then(|t| t.get(key))
     }
 
     /// A key that the section must have.
-    fn required(&self, key: &str, example: &str, refusals: &Refusals) -> Option<Item<'a>> {
+    pub(super) fn required(&self, key: &str, example: &str, refusals: &Refusals) -> Option<Item<'a>> {
         let found = self.get(key);
         if found.is_none() && self.item.get_ref().as_table().is_some() {
             refusals.refuse(
@@ -38,7 +38,7 @@ impl<'a> Entry<'a> {
         found
     }
 
-    fn unit(&self, refusals: &Refusals) -> Option<String> {
+    pub(super) fn unit(&self, refusals: &Refusals) -> Option<String> {
         self.get("unit").and_then(|u| refusals.text_of(u, "a unit"))
     }
 }
@@ -122,36 +122,37 @@ pub(super) fn drives(entries: &[Entry], names: &Names, refusals: &Refusals) -> V
     entries.iter().map(read).collect()
 }
 
-/// Reads the states with their rates.
-pub(super) fn states(entries: &[Entry], names: &Names, refusals: &Refusals) -> (Vec<State>, Vec<Affine>) {
-    let scope = NameScope { names, place: Place::Rate };
-    let read = |entry: &Entry| {
-        let value = entry.required("start", "0", refusals).and_then(|i| start(i, names, refusals));
-        let affine = entry.required("rate", "\"...\", the time derivative", refusals).and_then(|i| {
-            let node = refusals.expression(i, "a rate such as \"-2*x + u\"")?;
-            refusals.keep(rate(&node, &scope).map_err(|d| refusals.inside(i, d)))
-        });
-        let start = value.unwrap_or_else(BigRational::zero);
-        (State { name: entry.name.clone(), unit: entry.unit(refusals), start }, affine.unwrap_or_default())
-    };
-    entries.iter().map(read).unzip()
+/// The states, the radii of their starts, and their rates.
+pub(super) struct Dynamics {
+    pub(super) states: Vec<State>,
+    pub(super) radii: Vec<BigRational>,
+    pub(super) phase: Phase,
 }
 
-/// A start: a number, or a range of length 0.
-pub(super) fn start(item: Item, names: &Names, refusals: &Refusals) -> Option<BigRational> {
-    if item.get_ref().as_array().is_none() {
-        return refusals.number(item, names);
+/// Reads the states with their rates; with a section [start] they have no starts of their own.
+pub(super) fn states(entries: &[Entry], has_set: bool, names: &Names, refusals: &Refusals) -> Dynamics {
+    let scope = NameScope { names, place: Place::Rate };
+    let mut dynamics =
+        Dynamics { states: Vec::new(), radii: Vec::new(), phase: Phase { rates: Vec::new(), uncertain: Vec::new() } };
+    for (i, entry) in entries.iter().enumerate() {
+        let given = if has_set {
+            entry.get("start").into_iter().for_each(|item| refuse_second(item, refusals));
+            None
+        } else {
+            entry.required("start", "0", refusals).and_then(|item| start(item, names, refusals))
+        };
+        let (start, radius) = given.unwrap_or_else(|| (BigRational::zero(), BigRational::zero()));
+        dynamics.states.push(State { name: entry.name.clone(), unit: entry.unit(refusals), start });
+        dynamics.radii.push(radius);
+        let parts = entry.required("rate", "\"...\", the time derivative", refusals).and_then(|item| {
+            let node = refusals.expression(item, "a rate such as \"-2*x + u\"")?;
+            refusals.keep(rate(&node, i, &scope).map_err(|d| refusals.inside(item, d)))
+        });
+        let (affine, uncertain) = parts.unwrap_or_default();
+        dynamics.phase.rates.push(affine);
+        dynamics.phase.uncertain.extend(uncertain);
     }
-    let (lo, hi) = refusals.range(item, names)?;
-    if lo != hi {
-        refusals.refuse(
-            item.span(),
-            "ranges of starts are not supported yet",
-            format!("give one number; {ONE_TRAJECTORY}"),
-        );
-        return None;
-    }
-    Some(lo)
+    dynamics
 }
 
 /// Reads the outputs in terms of states, drives and time; each may use the others, in any order.
@@ -178,37 +179,4 @@ pub(super) fn outputs(entries: &[Entry], names: &mut Names, refusals: &Refusals)
         value: value.expression(),
     };
     entries.iter().zip(values).map(output).collect()
-}
-
-/// A rate: affine in states and drives.
-fn rate(node: &Node, scope: &NameScope) -> Result<Affine, Diagnostic> {
-    let value = polynomial(node, scope)?;
-    if value.degree() > 1 {
-        let culprit = nonlinear(node, scope).unwrap_or(node);
-        return Err(Diagnostic::new(
-            culprit.span.clone(),
-            "a rate is affine in states and drives: this product is not",
-        )
-        .help("linearise about the operating point, or make one of the factors a constant"));
-    }
-    let mut affine = Affine { terms: Vec::new(), offset: BigRational::zero() };
-    for (powers, coefficient) in value.terms() {
-        match powers {
-            [(variable, _)] => affine.terms.push((coefficient.clone(), *variable)),
-            _ => affine.offset = coefficient.clone(),
-        }
-    }
-    Ok(affine)
-}
-
-/// The smallest part of an expression that has a degree above 1.
-fn nonlinear<'n>(node: &'n Node, scope: &dyn Scope) -> Option<&'n Node> {
-    if !polynomial(node, scope).is_ok_and(|p| p.degree() > 1) {
-        return None;
-    }
-    let inner = match &node.kind {
-        NodeKind::Power(..) => None,
-        _ => node.children().into_iter().find_map(|child| nonlinear(child, scope)),
-    };
-    Some(inner.unwrap_or(node))
 }

@@ -91,6 +91,15 @@ impl<'a> Refusals<'a> {
         text
     }
 
+    /// true or false at an item; false if it is neither.
+    pub(super) fn flag(&self, item: Item) -> bool {
+        item.get_ref().as_bool().unwrap_or_else(|| {
+            let message = format!("expected true or false, found {}", kind_of(item));
+            self.refuse(item.span(), message, "write true or false, without quotation marks");
+            false
+        })
+    }
+
     /// The list at an item.
     pub(super) fn list_of<'b>(&self, item: Item<'b>, what: &str) -> Option<Vec<Item<'b>>> {
         let list = item.get_ref().as_array().map(|a| a.iter().collect());
