@@ -43,6 +43,7 @@ pub mod tail;
 pub mod taylor;
 pub mod trace;
 
+mod admissible;
 mod bisection;
 mod certificate_text;
 mod check;

@@ -160,7 +160,7 @@ fn write_part(part: &Part) -> Value {
 }
 
 fn write_tail(tail: &Tail) -> Value {
-    let node = |node: &Option<usize>| node.map_or_else(|| text("leaf"), |axis| text(axis));
+    let node = |node: &Option<usize>| node.map_or_else(|| text("leaf"), text);
     let lead = |lead: &TailLead| {
         object(vec![
             ("power", text(lead.power)),

@@ -91,7 +91,7 @@ pub(crate) fn read_uncertain_terms(
             let has_zero =
                 uncertain.get(position).is_none_or(|u| !u.range.from.is_positive() && !u.range.to.is_negative());
             let increasing = powers.last().is_none_or(|(last, _)| *last < position);
-            if power == 0 || (power < 0 && has_zero) || !increasing {
+            if power == 0_i32 || (power < 0_i32 && has_zero) || !increasing {
                 return Err(factor.refuse(
                     "powers other than 0 in the order of declaration, negative ones of ranges without 0 alone",
                 ));

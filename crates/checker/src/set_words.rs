@@ -80,7 +80,7 @@ impl Statement {
         let factor = |(position, power): &(usize, i32)| {
             let name = self.uncertain.get(*position).map_or("?", |u| u.name.as_str());
             let positive = raised(name, power.unsigned_abs());
-            if *power < 0 { format!("(1 / {positive})") } else { positive }
+            if *power < 0_i32 { format!("(1 / {positive})") } else { positive }
         };
         let variable = |v: Variable| self.name(v).to_string();
         term.powers.iter().map(factor).chain(term.of.map(variable)).collect()

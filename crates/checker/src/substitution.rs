@@ -89,17 +89,17 @@ fn product(powers: &[(usize, i32)], ranges: &[Range]) -> Option<(Rational, Ratio
 }
 
 fn raised(x: &Rational, power: i32) -> Option<Rational> {
-    if power < 0 && x.is_zero() {
+    if power < 0_i32 && x.is_zero() {
         return None;
     }
     let exponent = power.unsigned_abs();
     let value = (0..exponent).fold(Rational::one(), |y, _| y * x);
-    Some(if power < 0 { value.recip() } else { value })
+    Some(if power < 0_i32 { value.recip() } else { value })
 }
 
 /// The hull of the powers of the members: they are monotone on each side of 0.
 fn power_of(range: &Range, power: i32) -> Option<Range> {
-    if power < 0 && !range.from.is_positive() && !range.to.is_negative() {
+    if power < 0_i32 && !range.from.is_positive() && !range.to.is_negative() {
         return None;
     }
     let (a, b) = (raised(&range.from, power)?, raised(&range.to, power)?);

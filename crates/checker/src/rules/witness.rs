@@ -7,6 +7,7 @@
 //! At t = 0 all is exact.
 //! Source: docs/theorems/witness.md.
 
+use crate::admissible::chosen;
 use crate::affine_form::expression;
 use crate::certificate::Sign;
 use crate::error::{Checked, Duty, Obligation, Rejection, Rule};
@@ -16,20 +17,17 @@ use crate::model::Setting;
 use crate::number::{Interval, Rational};
 use crate::sequence::Flow;
 use crate::signs::SignSet;
-use crate::statement::{Expression, Range, Starts, Statement, Variable};
-use crate::substitution::substituted;
+use crate::statement::{Expression, Statement, Variable};
 use crate::support::{Ground, Inputs, Support};
 use crate::trace::{ClosedForm, Stretch};
-use num_traits::{One, Signed, Zero};
+use num_traits::{One, Zero};
 use std::collections::BTreeMap;
 
 /// Checks that the trajectory of the witness is in the zone at its instant.
 pub(crate) fn check(witness: &Witness, on: Setting, budget: &mut Budget) -> Checked {
     let Setting { certificate, model, limits } = on;
     let admissible = Duty::new(Rule::Witness, Obligation::WitnessIsAdmissible, 0);
-    let plain = plain(witness, &certificate.statement).ok_or_else(|| admissible.refuted())?;
-    admissible.ensure(starts_there(witness, &certificate.statement))?;
-    admissible.ensure(signals_are_admissible(witness, &certificate.statement))?;
+    let plain = chosen(witness, &certificate.statement).ok_or_else(|| admissible.refuted())?;
     let mut signs = vec![SignSet::ANY; model.formula.polynomials.len()];
     let mut learn = |index: usize, sign: Option<Sign>| {
         if let (Some(slot), Some(sign)) = (signs.get_mut(index), sign) {
@@ -64,69 +62,6 @@ pub(crate) fn check(witness: &Witness, on: Setting, budget: &mut Budget) -> Chec
         }
     }
     Duty::new(Rule::Witness, Obligation::ZoneIsProvedAtInstant, 0).decide(model.formula.truth(&signs) == Some(true))
-}
-
-/// The plain statement of the witness's values and start. `None`: these are not admissible.
-fn plain(witness: &Witness, statement: &Statement) -> Option<Statement> {
-    let inside = |(value, range): (&Rational, &Range)| range.from <= *value && *value <= range.to;
-    let ranges: Vec<&Range> = statement.uncertain.iter().map(|u| &u.range).collect();
-    let fits = ranges.len() == witness.uncertain.len() && witness.start.len() == statement.states.len();
-    if !fits || !witness.uncertain.iter().zip(ranges).all(inside) {
-        return None;
-    }
-    let mut single = statement.clone();
-    single.starts = Starts::One;
-    single.states.iter_mut().zip(&witness.start).for_each(|(state, start)| state.start.clone_from(start));
-    let points: Vec<Range> = witness.uncertain.iter().map(|p| Range { from: p.clone(), to: p.clone() }).collect();
-    // Without deviation there is no group.
-    Some(substituted(&single, &points)?.0)
-}
-
-/// Whether the start is admissible.
-fn starts_there(witness: &Witness, statement: &Statement) -> bool {
-    let centre = statement.states.iter().map(|s| &s.start);
-    let offset: Vec<Rational> = witness.start.iter().zip(centre).map(|(x, c)| x - c).collect();
-    let one = Rational::one();
-    let combined = |vectors: &[Vec<Rational>]| -> Vec<Rational> {
-        let entry = |i: usize| vectors.iter().zip(&witness.weights).filter_map(|(v, w)| Some(v.get(i)? * w)).sum();
-        (0..offset.len()).map(entry).collect()
-    };
-    match &statement.starts {
-        Starts::One => offset.iter().all(Zero::is_zero),
-        Starts::Box(radii) => offset.iter().zip(radii).all(|(x, r)| x.abs() <= *r),
-        Starts::Zonotope(generators) => {
-            let bounded = witness.weights.iter().all(|w| w.abs() <= one);
-            witness.weights.len() == generators.len() && bounded && combined(generators) == offset
-        }
-        Starts::Hull(points) => {
-            // x = (1 - sum of weights) c + sum of weights p_i.
-            let total: Rational = witness.weights.iter().sum();
-            let convex = witness.weights.iter().all(|w| !w.is_negative()) && total <= one;
-            let centres = statement.states.iter().map(|s| &s.start * &total);
-            let moved: Vec<Rational> = combined(points).into_iter().zip(centres).map(|(x, c)| x - c).collect();
-            witness.weights.len() == points.len() && convex && moved == offset
-        }
-        Starts::Ellipsoid(shape) => {
-            // Lemma: with x - c = Q v and v' Q v <= 1, h (x - c) = h Q v <= sqrt(h Q h') sqrt(v' Q v) for each h.
-            let form: Rational = witness.weights.iter().zip(&offset).map(|(v, x)| v * x).sum();
-            witness.weights.len() == shape.len() && combined(shape) == offset && form <= one
-        }
-    }
-}
-
-/// Whether each disturbance has values in its range, on stretches that lead from 0 to the instant.
-fn signals_are_admissible(witness: &Witness, statement: &Statement) -> bool {
-    let one = |(signal, range): (&Vec<(Rational, Rational)>, &Range)| {
-        let mut reached = Rational::zero();
-        let increasing = signal.iter().all(|(until, level)| {
-            let fits = reached <= *until && range.from <= *level && *level <= range.to;
-            reached.clone_from(until);
-            fits
-        });
-        increasing && reached == witness.at
-    };
-    let ranges = statement.disturbances.iter().map(|d| &d.range);
-    witness.signals.len() == statement.disturbances.len() && witness.signals.iter().zip(ranges).all(one)
 }
 
 /// The value of a functional at the witness's instant.
@@ -179,7 +114,11 @@ fn evaluated(
                     Some(output) => evaluated(&output.value, values, plain, bits, budget)?,
                     None => None,
                 },
-                _ => values.get(variable).cloned(),
+                Variable::State(_)
+                | Variable::Drive(_)
+                | Variable::Time
+                | Variable::Exponential(_)
+                | Variable::Disturbance(_) => values.get(variable).cloned(),
             };
             let Some(value) = value else { return Ok(None) };
             product = product.mul(&value.power(*power, bits), bits);

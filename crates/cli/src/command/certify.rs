@@ -316,6 +316,9 @@ fn reason_words(reason: &Reason) -> String {
         Reason::Effort { clear_until } => {
             format!("the work allowed was used up; the zone is not entered before t = {}", to_decimal(clear_until, 6))
         }
+        Reason::NotAffine => {
+            "for many trajectories zones are settled whose polynomials are affine in the states with constant coefficients".into()
+        }
         Reason::WindowEnds => "a window with `until` has no large times".into(),
         Reason::Limit(rejection) => rejection.to_string(),
     }
@@ -328,6 +331,7 @@ fn help_words(reason: &Reason) -> &'static str {
         }
         Reason::EqualRates => "what would help: a window with `until`",
         Reason::Effort { .. } => "what would help: a greater --effort, or a window with `until`",
+        Reason::NotAffine => "what would help: a zone of half-spaces that contains this one",
         Reason::WindowEnds => "what would help: a zone without `until`",
         Reason::Limit(_) => "what would help: a smaller model, or a zone of a lower degree",
     }

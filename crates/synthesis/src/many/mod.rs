@@ -26,6 +26,9 @@ use scan::{Scan, rounded_near};
 /// Mantissa bits that are tried one after the other.
 const PRECISIONS: [u32; 3] = [128, 256, 512];
 
+/// Bounds of the groups' forms are larger than their suprema at samples by this factor.
+const SPARE: f64 = 1.05;
+
 /// The most pieces of a division.
 const MAX_PIECES: usize = 4_096;
 
@@ -172,7 +175,7 @@ impl<'a> Search<'a> {
                     open.push(upper);
                     open.push(lower);
                 }
-                _ => return Verdict::Open(self.open_reason(&analysis, stuck)),
+                _ => return Verdict::Open(self.open_reason(stuck)),
             }
         }
         Verdict::Clear(Box::new(Certificate {
@@ -187,8 +190,7 @@ impl<'a> Search<'a> {
         }))
     }
 
-    fn open_reason(&self, analysis: &Analysis, stuck: Option<Stuck>) -> Reason {
-        let _ = analysis;
+    fn open_reason(&self, stuck: Option<Stuck>) -> Reason {
         match stuck {
             Some(Stuck { at }) if self.effort > 0 => {
                 Reason::Touches { from: rounded_near(at), to: rounded_near(at * (1.0 + 1e-6) + 1e-9) }
@@ -229,9 +231,8 @@ impl<'a> Search<'a> {
         let from = approx_value(&self.statement.zone.from);
         let until = self.statement.zone.until.as_ref().map(approx_value);
         let forms = plan.forms();
-        let strict = self.strictly();
         let mut scan = Scan::new(&plan, sizes.clone(), until, |sample| {
-            forms == 0 && sample.t >= from && self.inside(&|i| sample.values[i]) > strict
+            forms == 0 && sample.t >= from && self.inside(&|i| sample.values[i]) > 0.0
         });
         let mut bounds = Vec::new();
         if forms > 0 {
@@ -258,8 +259,8 @@ impl<'a> Search<'a> {
             }
             if settled {
                 for ((k, d), b) in varying.iter().zip(&deviations).zip(&values) {
-                    let bound = rounded_near(b * 1.01 + 1e-12);
-                    scan.sizes[first + k] = d * b * 1.01 + 1e-12 * d;
+                    let bound = rounded_near(b * SPARE + 1e-12);
+                    scan.sizes[first + k] = d * (b * SPARE + 1e-12);
                     plan.inputs.signals[first + k].1 = &plan.groups[*k].deviation * &bound;
                     bounds.push(bound);
                 }
@@ -282,10 +283,6 @@ impl<'a> Search<'a> {
             let find = |w: &Rational| self.functionals.iter().position(|f| f.polynomials[0] == (position, w.clone()));
             weights.iter().filter_map(find).map(value).fold(f64::INFINITY, f64::min)
         })
-    }
-
-    fn strictly(&self) -> f64 {
-        0.0
     }
 
     fn nearest(&self, scan: &Scan, forms: usize, from: f64) -> (f64, f64) {
@@ -446,7 +443,7 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
     let scale = analysis.scan.scale.max(analysis.nearest.0.abs());
     let mut centre = analysis.nearest.0;
     if !statement.uncertain.is_empty() {
-        centre = refine_uncertain(statement, &about, upward, &options, centre);
+        centre = refine_uncertain(statement, &about, &options, centre);
     }
     if grows {
         peak.reason = Some("it grows without bound, as far as can be seen".into());
@@ -489,7 +486,6 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
 fn refine_uncertain(
     statement: &Statement,
     about: &dyn Fn(&Rational, bool) -> Statement,
-    _upward: bool,
     options: &Options,
     fallback: f64,
 ) -> f64 {

@@ -58,8 +58,7 @@ pub(crate) fn prove(plan: &Plan, scan: &Scan, goal: &Goal, effort: &mut u64, lim
             all.push(Bounded { support: std::borrow::Cow::Borrowed(support), bound: None, conflict, index });
         }
     }
-    let mut prover =
-        Prover { plan, scan, goal, all, limits, budget: Budget::new(&Limits { work: u64::MAX, ..Limits::default() }) };
+    let mut prover = Prover { plan, scan, goal, all, budget: Budget::new(&limits) };
     let (cells, tail) = prover.run(effort)?;
     Ok(Piece {
         families: plan.families.clone(),
@@ -76,7 +75,6 @@ struct Prover<'a> {
     scan: &'a Scan,
     goal: &'a Goal<'a>,
     all: Vec<Bounded<'a>>,
-    limits: Limits,
     budget: Budget,
 }
 
@@ -309,7 +307,6 @@ impl Prover<'_> {
             open.push(higher);
             open.push(lower);
         }
-        let _ = &self.limits;
         tail.leads[position] = lead;
         greatest
     }
