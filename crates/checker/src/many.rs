@@ -64,6 +64,8 @@ pub struct TimeCell {
     pub to: Rational,
     /// The number of Taylor terms, >= 1.
     pub order: u32,
+    /// Mantissa bits of the enclosures on it.
+    pub bits: u32,
 }
 
 /// Bounds for all times from `from` on.

@@ -86,13 +86,17 @@ fn read_part(field: &Field, counts: &Counts, statement: &Statement) -> Result<Pa
 }
 
 fn read_cell(field: &Field) -> Result<TimeCell, Rejection> {
-    field.only(&["to", "order"], "a cell: to, order")?;
+    field.only(&["to", "order", "bits"], "a cell: to, order, bits")?;
     let order = field.get("order")?;
     let count = order.count_within("order", field.limits().order)?;
     if count == 0 {
         return Err(order.refuse("at least 1"));
     }
-    Ok(TimeCell { to: field.get("to")?.rational()?, order: count })
+    let bits = field.get("bits")?.count_within("bits", field.limits().bits)?;
+    if bits < 2 {
+        return Err(field.get("bits")?.refuse("at least 2 bits"));
+    }
+    Ok(TimeCell { to: field.get("to")?.rational()?, order: count, bits })
 }
 
 fn read_tail(field: &Field, counts: &Counts) -> Result<Tail, Rejection> {
@@ -177,7 +181,8 @@ fn write_tail(tail: &Tail) -> Value {
 }
 
 pub(crate) fn write_divisions(divisions: &[Division], statement: &Statement) -> Value {
-    let cell = |cell: &TimeCell| object(vec![("to", text(&cell.to)), ("order", text(cell.order))]);
+    let cell =
+        |cell: &TimeCell| object(vec![("to", text(&cell.to)), ("order", text(cell.order)), ("bits", text(cell.bits))]);
     list(divisions, |division| match division {
         Division::Cut(axis, at) => object(vec![("cut", text(axis)), ("at", text(at))]),
         Division::Piece(piece) => {

@@ -115,8 +115,7 @@ fn check_times(piece: &Piece, all: &[Bounded], inputs: &Inputs, on: Setting, bud
         Duty::new(Rule::WorstCase, Obligation::CellsCoverWindow, position).ensure(reached <= cell.to)?;
         let on_cell = Duty::new(Rule::WorstCase, Obligation::SignOnCell, position);
         let (centre, half_width) = ((&reached + &cell.to) * &half, (&cell.to - &reached) * &half);
-        let stretch =
-            Stretch { centre: &centre, half_width: &half_width, order: cell.order, bits: on.certificate.bits };
+        let stretch = Stretch { centre: &centre, half_width: &half_width, order: cell.order, bits: cell.bits };
         let mut conflicts = Vec::new();
         for (index, (one, integrals)) in all.iter().zip(&mut integrals).enumerate() {
             let bounded = one.support.on_cell(inputs, integrals, stretch, budget)?;

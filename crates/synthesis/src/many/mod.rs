@@ -140,14 +140,7 @@ impl<'a> Search<'a> {
                 Err(reason) => return Verdict::Open(reason),
             };
             let (distance, at) = analysis.nearest;
-            if let Some(best) = self.supremum.as_mut() {
-                if distance > best.0 {
-                    *best = (distance, at);
-                }
-            } else {
-                self.supremum = Some((distance, at));
-            }
-            if distance >= 0.0 || analysis.bounds.is_empty() {
+            if distance >= -1e-9 * analysis.scan.scale {
                 if let Some(certificate) = self.entry(&ranges, &analysis, bits) {
                     return Verdict::Enters(Box::new(certificate));
                 }
@@ -156,6 +149,9 @@ impl<'a> Search<'a> {
             let stuck = if distance <= 1e-7 * analysis.scan.scale && bounded {
                 match self.piece(&analysis) {
                     Ok(piece) => {
+                        if self.supremum.is_none_or(|(best, _)| distance > best) {
+                            self.supremum = Some((distance, at));
+                        }
                         divisions.push(Division::Piece(piece));
                         continue;
                     }
@@ -388,7 +384,9 @@ impl<'a> Search<'a> {
             let margin = Margin { certified: Rational::zero(), at_most: None, place };
             return Some((proof.clone(), margin));
         }
-        for part in [1e-7, 1e-6] {
+        // Over uncertain quantities the distance is that of bounds which overlap: less may be had.
+        let parts = if self.statement.uncertain.is_empty() { [1e-7, 1e-6] } else { [1e-3, 0.3] };
+        for part in parts {
             let wanted = rounded_near(-distance * (1.0 - part));
             let statement = Statement { claim: Claim::Never { margin: wanted.clone() }, ..self.statement.clone() };
             let mut search = Search::of(statement, self.options);

@@ -15,6 +15,8 @@ use keepout_checker::statement::{Expression, Statement, Term, Variable};
 use keepout_checker::substitution::{Group, substituted};
 use keepout_checker::support::{Ground, Inputs, Support};
 use keepout_core::{IntegerPolynomial, factorize, minimal_annihilator};
+use num_bigint::BigInt;
+use num_integer::Integer;
 use num_traits::{One, Zero};
 use std::cmp::Ordering;
 use std::collections::BTreeMap;
@@ -197,43 +199,48 @@ fn annihilator(sequence: &Sequence) -> Result<IntegerPolynomial, NoPlan> {
     Ok(m.dilate_up(sequence.rate()).primitive_part())
 }
 
-/// The rows h A^k, k = 0, 1, ..., by entries.
+/// The rows h A^k = values_k / (D rate^k), k = 0, 1, ..., as integers by entries.
 struct Orbit {
-    row: Sparse,
-    rows: Vec<BTreeMap<usize, Rational>>,
+    rate: BigInt,
+    rows: Vec<BTreeMap<usize, BigInt>>,
 }
 
 impl Orbit {
     fn new(row: &Sparse, plain: &Statement) -> Self {
-        let mut orbit = Self { row: row.clone(), rows: vec![row.iter().cloned().collect()] };
         // The states that the row depends on, closed under rates.
         let rates = &plain.phases[0].rates;
         let mut support: Vec<usize> = row.iter().map(|(i, _)| *i).collect();
         let mut known = vec![false; plain.states.len()];
         support.iter().for_each(|i| known[*i] = true);
+        let mut rate = BigInt::one();
         let mut next = 0;
         while next < support.len() {
-            for (_, variable) in &rates[support[next]].terms {
-                if let Variable::State(j) = variable
-                    && !std::mem::replace(&mut known[*j], true)
-                {
-                    support.push(*j);
+            for (factor, variable) in &rates[support[next]].terms {
+                if let Variable::State(j) = variable {
+                    rate = rate.lcm(factor.denom());
+                    if !std::mem::replace(&mut known[*j], true) {
+                        support.push(*j);
+                    }
                 }
             }
             next += 1;
         }
+        let common = row.iter().fold(BigInt::one(), |d, (_, x)| d.lcm(x.denom()));
+        let first = row.iter().map(|(i, x)| (*i, x.numer() * (&common / x.denom()))).collect();
+        let mut rows: Vec<BTreeMap<usize, BigInt>> = vec![first];
         for _ in 0..2 * support.len() {
-            let mut following: BTreeMap<usize, Rational> = BTreeMap::new();
-            for (i, value) in orbit.rows.last().into_iter().flatten() {
+            let mut following: BTreeMap<usize, BigInt> = BTreeMap::new();
+            for (i, value) in rows.last().into_iter().flatten() {
                 for (factor, variable) in &rates[*i].terms {
                     if let Variable::State(j) = variable {
-                        *following.entry(*j).or_insert_with(Rational::zero) += value * factor;
+                        let weight = factor.numer() * (&rate / factor.denom());
+                        *following.entry(*j).or_default() += value * weight;
                     }
                 }
             }
-            orbit.rows.push(following);
+            rows.push(following);
         }
-        orbit
+        Self { rate, rows }
     }
 
     fn size(&self) -> usize {
@@ -242,60 +249,38 @@ impl Orbit {
 
     /// The minimal annihilator of the response to a vector, from the first 2 count derivatives.
     fn response_annihilator(&self, vector: &Sparse, count: usize) -> Result<IntegerPolynomial, NoPlan> {
-        let value = |row: &BTreeMap<usize, Rational>| -> Rational {
-            vector.iter().filter_map(|(i, x)| row.get(i).map(|r| r * x)).sum()
+        let common = vector.iter().fold(BigInt::one(), |d, (_, x)| d.lcm(x.denom()));
+        let value = |row: &BTreeMap<usize, BigInt>| -> BigInt {
+            vector.iter().filter_map(|(i, x)| row.get(i).map(|r| r * x.numer() * (&common / x.denom()))).sum()
         };
-        let derivatives: Vec<Rational> = self.rows.iter().take(2 * count.max(1)).map(value).collect();
-        rational_annihilator(&derivatives)
+        let values: Vec<BigInt> = self.rows.iter().take(2 * count.max(1)).map(value).collect();
+        let m = minimal_annihilator(&values).ok_or(NoPlan::NotAffine)?;
+        Ok(m.dilate_up(&self.rate).primitive_part())
     }
 
-    /// An annihilator of all responses: of the response to a vector in general position, proved as the checker does.
+    /// An annihilator of all responses: of the response to a vector in general position, looked at row by row.
     fn annihilator(&self, plain: &Statement) -> Result<IntegerPolynomial, NoPlan> {
         for attempt in 0_i64..4 {
             let weight = |i: usize| Rational::from_integer(((i as i64 * 37 + attempt * 11) % 23 + 1).into());
             let vector: Sparse = (0..plain.states.len()).map(|i| (i, weight(i))).collect();
             let m = self.response_annihilator(&vector, self.size())?;
-            if self.row.is_empty() || self.is_annihilated(&m) {
+            if self.is_annihilated(&m) {
                 return Ok(m);
             }
         }
         Err(NoPlan::NotAffine)
     }
 
+    /// Whether sum_j m_j h A^j = 0.
     fn is_annihilated(&self, m: &IntegerPolynomial) -> bool {
-        let mut sum: BTreeMap<usize, Rational> = BTreeMap::new();
-        for (c, row) in m.coefficients().iter().zip(&self.rows) {
+        let mut sum: BTreeMap<usize, BigInt> = BTreeMap::new();
+        let mut power = BigInt::one();
+        for (c, row) in m.coefficients().iter().zip(&self.rows).rev() {
             for (i, x) in row {
-                *sum.entry(*i).or_insert_with(Rational::zero) += x * Rational::from_integer(c.clone());
+                *sum.entry(*i).or_default() += x * c * &power;
             }
+            power *= &self.rate;
         }
         sum.values().all(Zero::is_zero)
     }
-}
-
-/// The minimal annihilator of a sequence of rationals y_k: integers y_k D q^k have one in scaled time.
-fn rational_annihilator(derivatives: &[Rational]) -> Result<IntegerPolynomial, NoPlan> {
-    use num_integer::Integer;
-    // The least q with all denominators dividing D q^k is not looked for: the quotients of neighbours give a multiple.
-    let mut rate = num_bigint::BigInt::one();
-    for pair in derivatives.windows(2) {
-        let quotient = pair[1].denom() / pair[1].denom().gcd(pair[0].denom());
-        rate = rate.lcm(&quotient);
-    }
-    let mut power = num_bigint::BigInt::one();
-    let mut common = num_bigint::BigInt::one();
-    for y in derivatives {
-        let scaled = y * Rational::from_integer(power.clone());
-        common = common.lcm(scaled.denom());
-        power *= &rate;
-    }
-    power = num_bigint::BigInt::one();
-    let mut values = Vec::new();
-    for y in derivatives {
-        let scaled = y * Rational::from_integer(&power * &common);
-        values.push(scaled.to_integer());
-        power *= &rate;
-    }
-    let m = minimal_annihilator(&values).ok_or(NoPlan::NotAffine)?;
-    Ok(m.dilate_up(&rate).primitive_part())
 }

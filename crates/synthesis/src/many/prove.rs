@@ -58,7 +58,9 @@ pub(crate) fn prove(plan: &Plan, scan: &Scan, goal: &Goal, effort: &mut u64, lim
             all.push(Bounded { support: std::borrow::Cow::Borrowed(support), bound: None, conflict, index });
         }
     }
-    let mut prover = Prover { plan, scan, goal, all, budget: Budget::new(&limits) };
+    let rest = (goal.slack / scan.scale.max(1e-300) * 1e-3).clamp(1e-30, 1e-4);
+    let bits = plan.bits.min(if rest > 1e-12 { 60 } else { 124 });
+    let mut prover = Prover { plan, scan, goal, all, budget: Budget::new(&limits), bits, rest };
     let (cells, tail) = prover.run(effort)?;
     Ok(Piece {
         families: plan.families.clone(),
@@ -76,6 +78,9 @@ struct Prover<'a> {
     goal: &'a Goal<'a>,
     all: Vec<Bounded<'a>>,
     budget: Budget,
+    /// Mantissa bits on cells, and the size of a Taylor rest that does not matter: as the distance to the zone asks for.
+    bits: u32,
+    rest: f64,
 }
 
 /// Why a cell is not accepted.
@@ -115,7 +120,7 @@ impl Prover<'_> {
             match self.cell(&reached, &end, order, &integrals) {
                 Ok(after) => {
                     integrals = after;
-                    cells.push(TimeCell { to: end.clone(), order });
+                    cells.push(TimeCell { to: end.clone(), order, bits: self.bits });
                     reached = end;
                 }
                 Err(fault) => {
@@ -156,7 +161,7 @@ impl Prover<'_> {
         let x = (REACH * 2.0 / self.scan.stride(at).max(1e-300) * half).min(8.0);
         let mut order = 2.0_f64.max(2.0 * x).ceil();
         let mut term: f64 = (1..=(order as u32)).map(|k| x / f64::from(k)).product();
-        while term > 1e-18 && order < 60.0 {
+        while term > self.rest && order < 80.0 {
             order += 1.0;
             term *= x / order;
         }
@@ -173,7 +178,7 @@ impl Prover<'_> {
     ) -> Result<Vec<Vec<Dyadic>>, Fault> {
         let half = Rational::new(1.into(), 2.into());
         let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
-        let bits = self.plan.bits;
+        let bits = self.bits;
         let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits };
         let share = self.goal.slack * approx_value(&(to - from)) / self.goal.horizon;
         let mut conflicts = Vec::new();
