@@ -197,7 +197,7 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
 }
 
 /// A path for a command line.
-fn quoted(path: &Path) -> String {
+pub(super) fn quoted(path: &Path) -> String {
     let text = path.display().to_string();
     if text.contains(|c: char| c.is_whitespace() || "'\"\\$&;()".contains(c)) {
         format!("'{}'", text.replace('\'', "'\\''"))
@@ -234,7 +234,7 @@ impl Settled {
     }
 
     fn margin_words(&self, margin: &Margin) -> String {
-        let unit = margin_unit(&self.statement).map_or(String::new(), |u| format!(" {u}"));
+        let unit = unit_of(&self.statement).map_or(String::new(), |u| format!(" {u}"));
         let place = match &margin.place {
             Place::Near(t) => format!("near t = {}", to_decimal(t, 6)),
             Place::Late => "approached as t -> infinity".into(),
@@ -268,7 +268,7 @@ fn rounded_up(x: &Rational) -> String {
     }
 }
 
-fn bracket(from: &Rational, to: &Rational) -> String {
+pub(super) fn bracket(from: &Rational, to: &Rational) -> String {
     if from == to {
         return format!("at t = {}", for_people(from, 12));
     }
@@ -280,7 +280,7 @@ fn bracket(from: &Rational, to: &Rational) -> String {
 }
 
 /// The unit of the zone's polynomial where it is that of a single quantity.
-fn margin_unit(statement: &Statement) -> Option<&str> {
+pub(super) fn unit_of(statement: &Statement) -> Option<&str> {
     let Formula::Atom(atom) = &statement.zone.inside else { return None };
     let mut unit = None;
     for term in atom.polynomial.terms.iter().filter(|t| !t.powers.is_empty()) {

@@ -4,6 +4,7 @@
 
 pub mod certify;
 mod invariant;
+pub mod peak;
 mod progress;
 pub mod spectrum;
 
