@@ -163,6 +163,38 @@ fn a_peak_is_asked_in_the_names_of_the_model_and_answered_with_both_extremes() {
 }
 
 #[test]
+fn an_entered_zone_of_many_trajectories_has_a_witness_for_people() {
+    let folder = folder("witness");
+    let path = folder.join("m.toml");
+    let model = "[state.x]\nstart = [0, 1]\nrate = \"-x + w\"\n[disturbance.w]\nrange = [-1, 1]\n\
+                 [[zone]]\nname = \"low\"\ninside = \"x <= -0.5\"\n[[zone]]\nname = \"far\"\ninside = \"x > 2\"\n";
+    std::fs::write(&path, model).expect("the model is written");
+    let (path, out) = (path.to_string_lossy().into_owned(), folder.join("out"));
+    let found = keepout(&["certify", &path, "--out", &out.to_string_lossy(), "--json"]);
+    assert_eq!(status(&found), 1, "{}{}", text(&found.stdout), text(&found.stderr));
+    let object: serde_json::Value = serde_json::from_str(&text(&found.stdout)).expect("JSON");
+    let (low, far) = (&object["zones"][0], &object["zones"][1]);
+    assert_eq!((&low["verdict"], &far["verdict"]), (&"enters".into(), &"clear".into()), "{object}");
+    let file = std::fs::read_to_string(out.join("low.witness.json")).expect("a witness");
+    let witness: serde_json::Value = serde_json::from_str(&file).expect("JSON");
+    assert_eq!(low["witness"]["start"], witness["start"]);
+    assert!(!out.join("far.witness.json").exists() && far["witness"].is_null());
+    // x(at) by exact steps in doubles: x' = -x + w with constant w up to each `until`.
+    let number = |v: &serde_json::Value| v.as_f64().expect("a number");
+    let (mut x, mut t) = (number(&witness["start"]["x"]["decimal"]), 0.0);
+    assert!((0.0..=1.0).contains(&x));
+    for step in witness["signals"]["w"].as_array().expect("a list") {
+        let (until, w) = (number(&step["until_decimal"]), number(&step["value_decimal"]));
+        assert!((-1.0..=1.0).contains(&w) && until >= t);
+        x = w + (x - w) * f64::exp(t - until);
+        t = until;
+    }
+    assert!((t - number(&witness["at_decimal"])).abs() < 1e-12 && x <= -0.5 + 1e-9, "x = {x} at {t}");
+    let told = text(&keepout(&["certify", &path, "--out", &out.to_string_lossy()]).stdout);
+    assert!(told.contains("worst case: start x = ") && told.contains("(see low.witness.json)"), "{told}");
+}
+
+#[test]
 fn an_unknown_zone_is_answered_with_the_nearest_and_all_names() {
     let path = model(&folder("names"), &[("end stop", "x > 2"), ("over speed", "p > 3")]);
     let output = keepout(&["certify", &path, "--zone", "end-stop"]);
