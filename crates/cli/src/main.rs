@@ -1,7 +1,7 @@
 //! The program `keepout`.
 
 use clap::{Parser, Subcommand};
-use keepout::command::{CLEAR, WRONG, certify, spectrum};
+use keepout::command::{CLEAR, WRONG, certify, peak, spectrum};
 use std::process::ExitCode;
 
 /// Shows that a linear system never enters a keep-out zone, for all time, with evidence that others can re-check.
@@ -20,6 +20,10 @@ enum Command {
     /// settled, or inseparable;
     /// 3 the model or the command is wrong.
     Certify(certify::Arguments),
+    /// Bound the maximum and the minimum of an expression over all time, or over a window, with evidence
+    ///
+    /// Exit status: 0 both are bounded from both sides; 2 some bound is missing; 3 the model or the command is wrong.
+    Peak(peak::Arguments),
     /// Print the exact structure of a model's dynamics: blocks, factors, eigenvalues, growth, frequencies
     Spectrum(spectrum::Arguments),
 }
@@ -36,6 +40,7 @@ fn main() -> ExitCode {
     // Whatever happens, the exit status is one of those that the program promises.
     let status = std::panic::catch_unwind(|| match &cli.command {
         Command::Certify(arguments) => certify::run(arguments),
+        Command::Peak(arguments) => peak::run(arguments),
         Command::Spectrum(arguments) => spectrum::run(arguments),
     });
     ExitCode::from(status.unwrap_or(WRONG))

@@ -2,7 +2,7 @@
 
 use num_bigint::BigInt;
 use num_rational::BigRational;
-use num_traits::Zero;
+use num_traits::{Signed, Zero};
 
 /// The most characters of a number.
 pub const MAX_LENGTH: usize = 10_000;
@@ -106,16 +106,57 @@ pub fn nearest_decimal(value: &BigRational, digits: usize) -> String {
 
 /// A decimal of at most `digits` significant digits, rounded towards zero.
 pub fn to_decimal(value: &BigRational, digits: usize) -> String {
+    cut(value, digits, false)
+}
+
+/// Which way a bound is rounded.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Rounding {
+    /// To a value not below.
+    Up,
+    /// To a value not above.
+    Down,
+}
+
+/// A decimal of at most `digits` significant digits on the side of the value that is named.
+pub fn rounded(value: &BigRational, digits: usize, rounding: Rounding) -> String {
+    cut(value, digits, value.is_negative() == (rounding == Rounding::Down))
+}
+
+/// A finite double on the side of the value that is named, next to it or nearly so; `None` beyond their range.
+pub fn rounded_float(value: &BigRational, rounding: Rounding) -> Option<f64> {
+    let mut near: f64 = to_decimal(value, 17).parse().ok()?;
+    // The nearest double to a decimal that is cut off after 17 digits is at most a few doubles away from the value.
+    for _ in 0..8 {
+        let exact = BigRational::from_float(near)?;
+        let is_there = match rounding {
+            Rounding::Up => exact >= *value,
+            Rounding::Down => exact <= *value,
+        };
+        if is_there {
+            return Some(near);
+        }
+        near = match rounding {
+            Rounding::Up => near.next_up(),
+            Rounding::Down => near.next_down(),
+        };
+    }
+    None
+}
+
+/// A decimal of at most `digits` significant digits, rounded towards zero, or away from it.
+fn cut(value: &BigRational, digits: usize, is_away: bool) -> String {
     if value.is_zero() {
         return "0".into();
     }
     let ten = BigInt::from(10);
     let magnitude = BigRational::new(value.numer().magnitude().clone().into(), value.denom().clone());
     let estimate = (value.numer().bits() as f64 - value.denom().bits() as f64) * std::f64::consts::LOG10_2;
-    let scaled = |shift: i64| {
+    let exact = |shift: i64| {
         let power = BigRational::from_integer(ten.pow(shift.unsigned_abs() as u32));
-        (if shift >= 0 { &magnitude * power } else { &magnitude / power }).floor().to_integer()
+        if shift >= 0 { &magnitude * power } else { &magnitude / power }
     };
+    let scaled = |shift: i64| exact(shift).floor().to_integer();
     let mut shift = digits as i64 - 1 - estimate.floor() as i64;
     while scaled(shift) >= ten.pow(digits as u32) {
         shift -= 1;
@@ -123,7 +164,8 @@ pub fn to_decimal(value: &BigRational, digits: usize) -> String {
     while scaled(shift) < ten.pow(digits as u32 - 1) {
         shift += 1;
     }
-    let text = scaled(shift).to_string();
+    let whole = if is_away { exact(shift).ceil().to_integer() } else { scaled(shift) };
+    let text = whole.to_string();
     let sign = if value.numer().sign() == num_bigint::Sign::Minus { "-" } else { "" };
     let point = text.len() as i64 - shift;
     format!("{sign}{}", place_point(&text, point))
@@ -145,4 +187,34 @@ fn place_point(digits: &str, point: i64) -> String {
     }
     let (whole, fraction) = trimmed.split_at(point as usize);
     format!("{whole}.{fraction}")
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn q(p: i64, d: i64) -> BigRational {
+        BigRational::new(p.into(), d.into())
+    }
+
+    #[test]
+    fn rounded_decimals_and_doubles_are_on_their_side_and_close() {
+        for value in
+            [q(1, 3), q(-1, 3), q(2, 3), q(-2, 3), q(999_999_999_999, 1_000_000_000_000), q(1, 10), q(-7, 1), q(0, 1)]
+        {
+            for digits in [1, 3, 9] {
+                let up = decimal(&rounded(&value, digits, Rounding::Up)).expect("a decimal");
+                let down = decimal(&rounded(&value, digits, Rounding::Down)).expect("a decimal");
+                assert!(down <= value && value <= up, "{value}, {digits}");
+                let width = value.abs() * q(10, 1) / BigRational::from_integer(BigInt::from(10).pow(digits as u32));
+                assert!(&up - &down <= width, "{value}, {digits}");
+            }
+            let float = |r| rounded_float(&value, r).and_then(BigRational::from_float).expect("a double");
+            let (up, down) = (float(Rounding::Up), float(Rounding::Down));
+            assert!(down <= value && value <= up && &up - &down <= value.abs() * q(1, 1 << 49), "{value}");
+        }
+        assert_eq!(rounded(&q(9_999, 10_000), 3, Rounding::Up), "1");
+        assert_eq!(rounded(&q(-9_999, 10_000), 3, Rounding::Up), "-0.999");
+        assert_eq!(rounded_float(&decimal("1e400").expect("a number"), Rounding::Up), None);
+    }
 }

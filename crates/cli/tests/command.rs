@@ -84,6 +84,9 @@ fn every_misuse_of_the_command_line_exits_with_3() {
         &["certify", "a.toml", "--zone"],
         &["spectrum"],
         &["spectrum", "absent.toml"],
+        &["peak"],
+        &["peak", "absent.toml", "--of", "x"],
+        &["peak", "a.toml", "--of"],
     ] {
         let output = keepout(arguments);
         assert_eq!(status(&output), 3, "{arguments:?}");
@@ -94,7 +97,14 @@ fn every_misuse_of_the_command_line_exits_with_3() {
 
 #[test]
 fn help_and_version_exit_with_0() {
-    for arguments in [&["--help"][..], &["--version"], &["certify", "--help"], &["help"], &["spectrum", "--help"]] {
+    for arguments in [
+        &["--help"][..],
+        &["--version"],
+        &["certify", "--help"],
+        &["help"],
+        &["spectrum", "--help"],
+        &["peak", "--help"],
+    ] {
         let output = keepout(arguments);
         assert_eq!(status(&output), 0, "{arguments:?}");
         assert!(!output.stdout.is_empty(), "{arguments:?}");
@@ -112,6 +122,76 @@ fn the_spectrum_of_a_model_with_uncertain_constants_is_that_at_the_centres_and_s
     let found = text(&output.stdout);
     assert!(found.contains("uncertain constants at the centres of their ranges: k = 6, m = 2\n"), "{found}");
     assert!(found.contains("largest Jordan block 1, irreducible: s + 3\n"), "{found}");
+}
+
+#[test]
+fn a_peak_is_asked_in_the_names_of_the_model_and_answered_with_both_extremes() {
+    let path = folder("peak").join("m.toml");
+    let model = "title = \"P\"\n[constants]\nc = 3\n[state.x]\nstart = 1\nunit = \"rad\"\nrate = \"-x + w\"\n\
+                 [disturbance.w]\nrange = [-1, 1]\n[output.y]\nvalue = \"2*x\"\n[output.z]\nvalue = \"x^2\"\n";
+    std::fs::write(&path, model).expect("the model is written");
+    let path = path.to_string_lossy().into_owned();
+    let found = keepout(&["peak", &path, "--of", "y - c*t", "--from", "1/c", "--until", "2*c", "--json"]);
+    assert!([0, 2].contains(&status(&found)), "{}", text(&found.stderr));
+    let object: serde_json::Value = serde_json::from_str(&text(&found.stdout)).expect("JSON");
+    assert_eq!((&object["of"], &object["title"]), (&"y - c*t".into(), &"P".into()));
+    assert_eq!((&object["from"], &object["until"]), (&"1/3".into(), &"6".into()));
+    for extreme in ["max", "min"] {
+        let bounds = ["upper", "lower"].map(|side| object[extreme][side].is_string());
+        let is_told = object[extreme]["reason"].is_string();
+        assert_eq!(bounds != [true, true], is_told, "{extreme}: {object}");
+        assert!(status(&found) == 2 || bounds == [true, true], "{extreme}: {object}");
+    }
+    for (of, window, message) in [
+        ("x^2", &[][..], "--of:1:1: the expression is affine"),
+        ("1 + z", &[], "--of:1:1: the expression is affine"),
+        ("x + w", &[], "--of:1:5: `w` is a disturbance: the expression does not use it"),
+        ("x > 1", &[], "--of:1:1: expected a number-valued expression"),
+        ("x + sin(t)", &[], "--of:1:5: sin is not allowed here"),
+        ("abs(x)", &[], "--of:1:1: abs is for zones"),
+        ("xx", &[], "did you mean `x`?"),
+        ("", &[], "--of:1:1: the expression ends too early"),
+        ("x", &["--from", "-1"], "--from is a time >= 0, found -1"),
+        ("x", &["--until", "t"], "--until:1:1: t is not a constant"),
+        ("x", &["--from", "2", "--until", "1"], "the window ends at 1, before it begins at 2"),
+    ] {
+        let refused = keepout(&[&["peak", path.as_str(), "--of", of], window].concat());
+        let told = text(&refused.stderr);
+        assert_eq!((status(&refused), text(&refused.stdout).as_str()), (3, ""), "{of}: {told}");
+        assert!(told.contains(message), "{of}: {told}");
+    }
+}
+
+#[test]
+fn an_entered_zone_of_many_trajectories_has_a_witness_for_people() {
+    let folder = folder("witness");
+    let path = folder.join("m.toml");
+    let model = "[state.x]\nstart = [0, 1]\nrate = \"-x + w\"\n[disturbance.w]\nrange = [-1, 1]\n\
+                 [[zone]]\nname = \"low\"\ninside = \"x <= -0.5\"\n[[zone]]\nname = \"far\"\ninside = \"x > 2\"\n";
+    std::fs::write(&path, model).expect("the model is written");
+    let (path, out) = (path.to_string_lossy().into_owned(), folder.join("out"));
+    let found = keepout(&["certify", &path, "--out", &out.to_string_lossy(), "--json"]);
+    assert_eq!(status(&found), 1, "{}{}", text(&found.stdout), text(&found.stderr));
+    let object: serde_json::Value = serde_json::from_str(&text(&found.stdout)).expect("JSON");
+    let (low, far) = (&object["zones"][0], &object["zones"][1]);
+    assert_eq!((&low["verdict"], &far["verdict"]), (&"enters".into(), &"clear".into()), "{object}");
+    let file = std::fs::read_to_string(out.join("low.witness.json")).expect("a witness");
+    let witness: serde_json::Value = serde_json::from_str(&file).expect("JSON");
+    assert_eq!(low["witness"]["start"], witness["start"]);
+    assert!(!out.join("far.witness.json").exists() && far["witness"].is_null());
+    // x(at) by exact steps in doubles: x' = -x + w with constant w up to each `until`.
+    let number = |v: &serde_json::Value| v.as_f64().expect("a number");
+    let (mut x, mut t) = (number(&witness["start"]["x"]["decimal"]), 0.0);
+    assert!((0.0..=1.0).contains(&x));
+    for step in witness["signals"]["w"].as_array().expect("a list") {
+        let (until, w) = (number(&step["until_decimal"]), number(&step["value_decimal"]));
+        assert!((-1.0..=1.0).contains(&w) && until >= t);
+        x = w + (x - w) * f64::exp(t - until);
+        t = until;
+    }
+    assert!((t - number(&witness["at_decimal"])).abs() < 1e-12 && x <= -0.5 + 1e-9, "x = {x} at {t}");
+    let told = text(&keepout(&["certify", &path, "--out", &out.to_string_lossy()]).stdout);
+    assert!(told.contains("worst case: start x = ") && told.contains("(see low.witness.json)"), "{told}");
 }
 
 #[test]

@@ -3,7 +3,7 @@
 //! Search is free: candidates come from guesses and enclosures, and are returned only after [`keepout_checker::check`] has
 //! verified them. What cannot be settled is reported as [`Outcome::Unsettled`] with the reason.
 //!
-//! Start at [`certify`]; [`certify_eventually`] is about large times alone.
+//! Start at [`certify`]; [`certify_eventually`] is about large times alone, [`peak`] about extreme values.
 
 mod autonomous;
 mod certify;

@@ -1,10 +1,11 @@
 //! `keepout certify`: settles the zones of a model and writes the evidence.
 
 use super::progress::Progress;
-use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, invariant, loaded, print};
+use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, invariant, loaded, print, worst_case};
 use crate::diagnostic::nearest;
 use crate::model::{Model, Need};
 use crate::number::{decimal, for_people, to_decimal};
+use keepout_checker::many::Witness;
 use keepout_checker::statement::{Claim, Formula, Rational, Statement, Variable};
 use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify, certify_eventually};
 use num_traits::{One, Signed, Zero};
@@ -157,16 +158,25 @@ impl Settled {
         }
     }
 
+    /// The trajectory that shows that a zone of many trajectories is entered.
+    fn witness(&self) -> Option<&Witness> {
+        self.proof().and_then(worst_case::witness)
+    }
+
     /// Writes the evidence; evidence of an earlier run for this zone does not stay beside another verdict.
     fn write(&self, folder: &Path) -> Result<(), String> {
         let failed = |path: &Path, e: std::io::Error| format!("cannot write {}: {e}", path.display());
         std::fs::create_dir_all(folder).map_err(|e| failed(folder, e))?;
         let path = |what: &str| folder.join(format!("{}.{what}.json", self.statement.zone.name));
-        let texts = self.proof().map(|p| [p.statement().to_json().print(), p.certificate().to_json().print()]);
-        for (i, what) in ["statement", "certificate"].into_iter().enumerate() {
+        let texts = [
+            ("statement", self.proof().map(|p| p.statement().to_json().print())),
+            ("certificate", self.proof().map(|p| p.certificate().to_json().print())),
+            ("witness", self.witness().map(|w| worst_case::to_json(w, &self.statement))),
+        ];
+        for (what, text) in texts {
             let path = path(what);
-            match &texts {
-                Some(texts) => std::fs::write(&path, &texts[i]).map_err(|e| failed(&path, e))?,
+            match text {
+                Some(text) => std::fs::write(&path, text).map_err(|e| failed(&path, e))?,
                 None if path.exists() => std::fs::remove_file(&path).map_err(|e| failed(&path, e))?,
                 None => {}
             }
@@ -182,6 +192,11 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
     for zone in settled {
         let name = &zone.statement.zone.name;
         let _ = writeln!(text, "  {name:width$}  {:verdict_width$}  {}", zone.verdict(), zone.in_words());
+        if let Some(witness) = zone.witness() {
+            let file = out.map_or(String::new(), |_| format!(" (see {name}.witness.json)"));
+            let words = format!("{}{file}", worst_case::in_words(witness, &zone.statement));
+            let _ = writeln!(text, "  {:width$}  {:verdict_width$}  {words}", "", "");
+        }
         if let Some(set) = &zone.set {
             let _ = writeln!(text, "  {:width$}  {:verdict_width$}  {}", "", "", invariant::in_words(set));
         }
@@ -197,7 +212,7 @@ fn report_text(model: &Model, settled: &[Settled], out: Option<&Path>) -> String
 }
 
 /// A path for a command line.
-fn quoted(path: &Path) -> String {
+pub(super) fn quoted(path: &Path) -> String {
     let text = path.display().to_string();
     if text.contains(|c: char| c.is_whitespace() || "'\"\\$&;()".contains(c)) {
         format!("'{}'", text.replace('\'', "'\\''"))
@@ -234,7 +249,7 @@ impl Settled {
     }
 
     fn margin_words(&self, margin: &Margin) -> String {
-        let unit = margin_unit(&self.statement).map_or(String::new(), |u| format!(" {u}"));
+        let unit = unit_of(&self.statement).map_or(String::new(), |u| format!(" {u}"));
         let place = match &margin.place {
             Place::Near(t) => format!("near t = {}", to_decimal(t, 6)),
             Place::Late => "approached as t -> infinity".into(),
@@ -268,7 +283,7 @@ fn rounded_up(x: &Rational) -> String {
     }
 }
 
-fn bracket(from: &Rational, to: &Rational) -> String {
+pub(super) fn bracket(from: &Rational, to: &Rational) -> String {
     if from == to {
         return format!("at t = {}", for_people(from, 12));
     }
@@ -280,7 +295,7 @@ fn bracket(from: &Rational, to: &Rational) -> String {
 }
 
 /// The unit of the zone's polynomial where it is that of a single quantity.
-fn margin_unit(statement: &Statement) -> Option<&str> {
+pub(super) fn unit_of(statement: &Statement) -> Option<&str> {
     let Formula::Atom(atom) = &statement.zone.inside else { return None };
     let mut unit = None;
     for term in atom.polynomial.terms.iter().filter(|t| !t.powers.is_empty()) {
@@ -344,7 +359,7 @@ fn report_json(model: &Model, settled: &[Settled]) -> String {
     format!("{report:#}\n")
 }
 
-fn decimal_value(value: &Rational) -> Value {
+pub(super) fn decimal_value(value: &Rational) -> Value {
     let number: Option<f64> = to_decimal(value, 17).parse().ok();
     number.filter(|x: &f64| x.is_finite()).map_or(Value::Null, Value::from)
 }
@@ -394,6 +409,9 @@ impl Settled {
                 fields.insert("tried".into(), json!(tried));
                 fields.insert("would_help".into(), json!(help_words(reason).trim_start_matches("what would help: ")));
             }
+        }
+        if let Some(witness) = self.witness() {
+            fields.insert("witness".into(), worst_case::summary(witness, &self.statement));
         }
         match &self.set {
             Some(Ok(proof)) => drop(fields.insert("set".into(), set_value(proof))),

@@ -4,8 +4,10 @@
 
 pub mod certify;
 mod invariant;
+pub mod peak;
 mod progress;
 pub mod spectrum;
+mod worst_case;
 
 use crate::model::{Model, Need, load};
 use std::io::Write;

@@ -141,7 +141,21 @@ impl<'a> Loader<'a> {
         let (inputs, exponentials) = self.names.take_exponentials();
         let drives = drives.into_iter().chain(inputs).collect();
         let (title, source) = (title.unwrap_or_default(), refusals.text.to_string());
-        Model { title, states, starts, drives, disturbances, uncertain, outputs, exponentials, phase, zones, source }
+        let constants = self.names.constants();
+        Model {
+            title,
+            constants,
+            states,
+            starts,
+            drives,
+            disturbances,
+            uncertain,
+            outputs,
+            exponentials,
+            phase,
+            zones,
+            source,
+        }
     }
 
     fn refuse_phases(&self) {

@@ -6,6 +6,7 @@
 mod dependency;
 mod load;
 mod matrix;
+mod question;
 mod scope;
 mod section;
 mod start;
@@ -26,6 +27,8 @@ use num_traits::Zero;
 pub struct Model {
     /// The title; the file's name where the model gives none.
     pub title: String,
+    /// The constants and their values, in the order of the file.
+    pub constants: Vec<(String, Rational)>,
     /// The states in the order of the file.
     pub states: Vec<State>,
     /// The admissible starts about those of the states.
@@ -54,6 +57,11 @@ impl Model {
     /// # Panics
     /// If there is no such zone.
     pub fn statement(&self, zone: usize) -> Statement {
+        self.about(self.zones[zone].clone())
+    }
+
+    /// The statement about a zone; its claim is `never` without a margin.
+    pub fn about(&self, zone: Zone) -> Statement {
         Statement {
             title: self.title.clone(),
             states: self.states.clone(),
@@ -62,13 +70,9 @@ impl Model {
             uncertain: self.uncertain.clone(),
             drives: self.drives.clone(),
             outputs: self.outputs.clone(),
-            exponentials: if has_exponential(&self.zones[zone].inside) {
-                self.exponentials.clone()
-            } else {
-                Vec::new()
-            },
+            exponentials: if has_exponential(&zone.inside) { self.exponentials.clone() } else { Vec::new() },
             phases: vec![self.phase.clone()],
-            zone: self.zones[zone].clone(),
+            zone,
             claim: Claim::Never { margin: Rational::zero() },
         }
     }

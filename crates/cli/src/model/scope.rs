@@ -78,6 +78,15 @@ impl Names {
         })
     }
 
+    /// The constants with their values.
+    pub(super) fn constants(&self) -> Vec<(String, BigRational)> {
+        let value = |kind: &Kind| match kind {
+            Kind::Constant(value) => value.clone(),
+            _ => None,
+        };
+        self.list.iter().filter_map(|(name, kind, _)| Some((name.clone(), value(kind)?))).collect()
+    }
+
     /// The number of declared drives.
     fn drives(&self) -> usize {
         self.list.iter().filter(|(_, kind, _)| matches!(kind, Kind::Drive(_))).count()
@@ -124,6 +133,8 @@ pub(super) enum Place {
     Signal,
     Output,
     Zone,
+    /// An expression on the command line.
+    Question,
 }
 
 /// All declared names, as seen from one place.
@@ -150,7 +161,7 @@ impl NameScope<'_> {
                 "declare a [drive] with the time-dependent part and use its name",
             ),
             Place::Number | Place::Entry => refused("t is not a constant".into(), "use numbers and constants only"),
-            Place::Signal | Place::Output | Place::Zone => Value::Variable(Variable::Time),
+            Place::Signal | Place::Output | Place::Zone | Place::Question => Value::Variable(Variable::Time),
         }
     }
 
@@ -161,6 +172,10 @@ impl NameScope<'_> {
             (Kind::Disturbance(_) | Kind::Uncertain(..), Place::Zone) => refused(
                 format!("`{name}` is {word}: a zone does not use it"),
                 "describe the zone by states, drives, outputs, constants and t",
+            ),
+            (Kind::Disturbance(_) | Kind::Uncertain(..), Place::Question) => refused(
+                format!("`{name}` is {word}: the expression does not use it"),
+                "ask about states, drives, outputs, constants and t",
             ),
             (Kind::Disturbance(_) | Kind::Uncertain(..), Place::Output) => refused(
                 format!("`{name}` is {word}: an output does not use it"),
@@ -189,11 +204,15 @@ impl NameScope<'_> {
                 "write the expression of the output in its place",
             ),
             (Kind::Disturbance(i), Place::Rate) => Value::Variable(Variable::Disturbance(*i)),
-            (Kind::State(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::State(*i)),
-            (Kind::Drive(i), Place::Rate | Place::Output | Place::Zone) => Value::Variable(Variable::Drive(*i)),
+            (Kind::State(i), Place::Rate | Place::Output | Place::Zone | Place::Question) => {
+                Value::Variable(Variable::State(*i))
+            }
+            (Kind::Drive(i), Place::Rate | Place::Output | Place::Zone | Place::Question) => {
+                Value::Variable(Variable::Drive(*i))
+            }
             (Kind::Output(_, Some(value)), Place::Output) => Value::Polynomial(value.clone()),
             (Kind::Output(_, None), Place::Output) => stand_in(),
-            (Kind::Output(i, _), Place::Zone) => Value::Variable(Variable::Output(*i)),
+            (Kind::Output(i, _), Place::Zone | Place::Question) => Value::Variable(Variable::Output(*i)),
         }
     }
 }
@@ -211,7 +230,9 @@ impl Scope for NameScope<'_> {
             Place::Number | Place::Signal => matches!(kind, Kind::Constant(_)),
             Place::Entry => matches!(kind, Kind::Constant(_) | Kind::Uncertain(..)),
             Place::Rate => !matches!(kind, Kind::Output(..)),
-            Place::Output | Place::Zone => !matches!(kind, Kind::Disturbance(_) | Kind::Uncertain(..)),
+            Place::Output | Place::Zone | Place::Question => {
+                !matches!(kind, Kind::Disturbance(_) | Kind::Uncertain(..))
+            }
         };
         let mut names: Vec<String> =
             self.names.list.iter().filter(|(_, k, _)| allowed(k)).map(|(n, ..)| n.clone()).collect();
@@ -235,6 +256,7 @@ impl Scope for NameScope<'_> {
                 format!("{name} is not allowed in the argument of another function"),
                 "a signal is a sum of products of t^k, exp(r*t), sin(w*t), cos(w*t)".into(),
             ),
+            (Place::Question, _) => (format!("{name} is not allowed here"), drive.into()),
             (Place::Zone, Function::Exp | Function::Sin | Function::Cos | Function::Abs) => (
                 format!("{name} is not allowed in a zone"),
                 format!("declare a [drive] such as signal = \"{name}(2*t)\" and use its name"),

@@ -134,10 +134,13 @@ fn nonlinear<'n>(node: &'n Node, scope: &dyn Scope) -> Option<&'n Node> {
     Some(inner.unwrap_or(node))
 }
 
+/// Powers of uncertain constants, and what they are factors of.
+type Product = (Vec<(usize, i32)>, Option<Variable>);
+
 /// The known and the uncertain terms of a polynomial of degree 1; powers of an uncertain constant and of its reciprocal are
 /// one power.
 fn split(value: &Polynomial, state: usize) -> (Affine, Vec<UncertainTerm>) {
-    let mut products: BTreeMap<(Vec<(usize, i32)>, Option<Variable>), BigRational> = BTreeMap::new();
+    let mut products: BTreeMap<Product, BigRational> = BTreeMap::new();
     for (powers, coefficient) in value.terms() {
         let mut exponents: BTreeMap<usize, i32> = BTreeMap::new();
         let mut of = None;
