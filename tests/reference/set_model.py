@@ -1,0 +1,170 @@
+"""A linear system with a set of starts, known drives and bounded disturbances: exact data, the model file, and the worst case of an affine output.
+
+    x' = A x + c + B u(t) + E w(t),    w_k(t) in [lo, hi],    x(0) in a box, an ellipsoid or the hull of points
+
+Known drives and the constant 1 become states; the midpoint of a range joins the constant.
+"""
+
+from dataclasses import dataclass, field
+from fractions import Fraction as F
+
+from exponential_sum import System
+from worst_case import Extreme, Support
+
+
+@dataclass
+class Drive:
+    """signal = sum of parts: ("const", a), ("exp", a, r), ("sin", a, w), ("cos", a, w), all rational."""
+
+    name: str
+    parts: list
+
+    def text(self):
+        words = {"const": lambda a: f"({decimal(a)})", "exp": lambda a, r: f"({decimal(a)})*exp(({decimal(r)})*t)"}
+        wave = lambda kind: lambda a, w: f"({decimal(a)})*{kind}(({decimal(w)})*t)"
+        return " + ".join({**words, "sin": wave("sin"), "cos": wave("cos")}[kind](*rest) for kind, *rest in self.parts)
+
+    def states(self):
+        """Blocks (matrix, start, row of the signal), one for each part."""
+        for kind, a, *rest in self.parts:
+            if kind == "const":
+                yield [[F(0)]], [F(1)], [F(a)]
+            elif kind == "exp":
+                yield [[F(rest[0])]], [F(1)], [F(a)]
+            else:
+                w = F(rest[0])
+                yield [[F(0), w], [-w, F(0)]], [F(0), F(1)], [F(a), F(0)] if kind == "sin" else [F(0), F(a)]
+
+
+@dataclass
+class Model:
+    a: list
+    offset: list
+    # one pair (lo, hi) a state; or None with `ellipsoid` = (centre, shape) or `points`
+    box: list | None
+    ellipsoid: tuple | None = None
+    points: list | None = None
+    drives: list = field(default_factory=list)
+    b: list = field(default_factory=list)  # columns
+    disturbances: list = field(default_factory=list)  # (name, lo, hi)
+    e: list = field(default_factory=list)  # columns
+    names: list = field(default_factory=list)
+    title: str = ""
+
+    def __post_init__(self):
+        n = len(self.a)
+        self.names = self.names or [f"x{i}" for i in range(n)]
+        self.system = None
+
+    def centre(self):
+        if self.box is not None:
+            return [(F(lo) + F(hi)) / 2 for lo, hi in self.box]
+        return [F(0)] * len(self.a) if self.points is not None else [F(x) for x in self.ellipsoid[0]]
+
+    def augmented(self):
+        """The system of x, the states of the drives, and 1; its start; the row of each drive."""
+        n = len(self.a)
+        blocks = [(i, *block) for i, drive in enumerate(self.drives) for block in drive.states()]
+        size = n + sum(len(m) for _, m, _, _ in blocks) + 1
+        a = [[F(0)] * size for _ in range(size)]
+        start, rows, at = [*self.centre()], [[F(0)] * size for _ in self.drives], n
+        for i in range(n):
+            a[i][:n] = [F(x) for x in self.a[i]]
+            a[i][size - 1] = F(self.offset[i]) + sum((F(column[i]) * (F(lo) + F(hi)) / 2 for column, (_, lo, hi) in zip(self.e, self.disturbances)), F(0))
+        for drive, m, own, row in blocks:
+            for i, values in enumerate(m):
+                a[at + i][at : at + len(m)] = values
+                start.append(own[i])
+                rows[drive][at + i] = row[i]
+                for j in range(n):
+                    a[j][at + i] += F(self.b[drive][j]) * row[i]
+            at += len(m)
+        return a, [*start, F(1)], rows
+
+    def prepared(self):
+        if self.system is None:
+            a, self.start, self.rows = self.augmented()
+            self.system = System(a)
+        return self.system
+
+    def support(self, h, h_drives=(), constant=F(0)):
+        """S of the output h x + h_drives u + constant."""
+        system = self.prepared()
+        n, size = len(self.a), len(self.start)
+        row = [F(x) for x in h] + [F(0)] * (size - n)
+        for weight, drive in zip(h_drives, self.rows):
+            row = [x + F(weight) * y for x, y in zip(row, drive)]
+        row[-1] += F(constant)
+        unit = lambda i, v: [F(v) if j == i else F(0) for j in range(size)]
+        drift = system.response(row, self.start)
+        plain = [F(x) for x in h] + [F(0)] * (size - n)
+        boxes = [] if self.box is None else [system.response(plain, unit(i, (F(hi) - F(lo)) / 2)) for i, (lo, hi) in enumerate(self.box) if lo != hi]
+        inputs = [system.response(plain, [F(x) * (F(hi) - F(lo)) / 2 for x in column] + [F(0)] * (size - n)) for column, (_, lo, hi) in zip(self.e, self.disturbances) if lo != hi]
+        ellipsoid = self.ellipsoid and (self.ellipsoid[1], [system.response(plain, unit(i, 1)) for i in range(n)])
+        hull = [system.response(plain, [F(x) for x in p] + [F(0)] * (size - n)) for p in self.points] if self.points else []
+        return Support(drift, boxes, inputs, ellipsoid, hull)
+
+    def extremes(self, h, h_drives=(), constant=F(0), start=F(0), end=None):
+        """The supremum and the infimum as Extremes; the infimum's value is an upper bound."""
+        top = self.support(h, h_drives, constant).greatest(start, end)
+        low = self.support([-F(x) for x in h], [-F(x) for x in h_drives], -F(constant)).greatest(start, end)
+        return top, Extreme(None if low.value is None else -low.value, low.at, low.slack)
+
+    def text(self, zones=""):
+        """The model file in the form of expressions."""
+        lines = [f'title = "{self.title}"'] if self.title else []
+        if self.ellipsoid:
+            lines.append(f"[start]\nellipsoid = {{centre = {vector(self.ellipsoid[0])}, shape = [{', '.join(vector(r) for r in self.ellipsoid[1])}]}}")
+        if self.points:
+            lines.append(f"[start]\npoints = [{', '.join(vector(p) for p in self.points)}]")
+        for i, name in enumerate(self.names):
+            lines.append(f"[state.{name}]")
+            if self.box is not None:
+                lo, hi = self.box[i]
+                lines.append(f"start = {number(lo) if lo == hi else vector((lo, hi))}")
+            lines.append(f'rate = "{self.rate(i)}"')
+        for drive in self.drives:
+            lines.append(f'[drive.{drive.name}]\nsignal = "{drive.text()}"')
+        for name, lo, hi in self.disturbances:
+            lines.append(f"[disturbance.{name}]\nrange = {vector((lo, hi))}")
+        return "\n".join(lines) + "\n" + zones
+
+    def rate(self, i):
+        terms = [(x, name) for x, name in zip(self.a[i], self.names)]
+        terms += [(column[i], drive.name) for column, drive in zip(self.b, self.drives)]
+        terms += [(column[i], name) for column, (name, _, _) in zip(self.e, self.disturbances)]
+        return affine(terms, self.offset[i])
+
+
+def affine(terms, constant=F(0)):
+    """The text of a sum of multiples of names and a constant."""
+    text = [f"({decimal(x)})*{name}" for x, name in terms if x] + ([f"({decimal(constant)})"] if constant else [])
+    return " + ".join(text) or "0"
+
+
+def decimal(q):
+    """An exact decimal, or p/q where there is none."""
+    q = F(q)
+    d, places = q.denominator, 0
+    while d % 10 == 0:
+        d, places = d // 10, places + 1
+    twos = fives = 0
+    while d % 2 == 0:
+        d, twos = d // 2, twos + 1
+    while d % 5 == 0:
+        d, fives = d // 5, fives + 1
+    if d != 1:
+        return str(q)
+    places += max(twos, fives)
+    digits = str(abs(q.numerator) * 10**places // q.denominator).rjust(places + 1, "0")
+    return ("-" if q < 0 else "") + (digits if not places else f"{digits[:-places]}.{digits[-places:]}")
+
+
+def number(q):
+    """A number of a model file."""
+    text = decimal(q)
+    return f'"{text}"' if "/" in text else text
+
+
+def vector(values):
+    return "[" + ", ".join(number(v) for v in values) + "]"
