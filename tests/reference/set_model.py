@@ -8,8 +8,12 @@ Known drives and the constant 1 become states; the midpoint of a range joins the
 from dataclasses import dataclass, field
 from fractions import Fraction as F
 
-from exponential_sum import System
-from worst_case import Extreme, Support
+from flint import acb
+
+from exponential_sum import Sum, System, ball
+from worst_case import ZERO, Extreme, Support
+
+SMALL = 20  # states with which the constant 1 is one of them, so that its cancellations are exact
 
 
 @dataclass
@@ -84,6 +88,9 @@ class Model:
     def prepared(self):
         if self.system is None:
             a, self.start, self.rows = self.augmented()
+            self.constant = [line[-1] for line in a[:-1]]
+            if not self.is_small():
+                a = [line[:-1] + [F(0)] for line in a]
             self.system = System(a)
         return self.system
 
@@ -96,13 +103,22 @@ class Model:
             row = [x + F(weight) * y for x, y in zip(row, drive)]
         row[-1] += F(constant)
         unit = lambda i, v: [F(v) if j == i else F(0) for j in range(size)]
-        drift = system.response(row, self.start)
+        drift = system.response(row, self.start) if self.is_small() else self.long_drift(row)
         plain = [F(x) for x in h] + [F(0)] * (size - n)
         boxes = [] if self.box is None else [system.response(plain, unit(i, (F(hi) - F(lo)) / 2)) for i, (lo, hi) in enumerate(self.box) if lo != hi]
         inputs = [system.response(plain, [F(x) * (F(hi) - F(lo)) / 2 for x in column] + [F(0)] * (size - n)) for column, (_, lo, hi) in zip(self.e, self.disturbances) if lo != hi]
         ellipsoid = self.ellipsoid and (self.ellipsoid[1], [system.response(plain, unit(i, 1)) for i in range(n)])
         hull = [system.response(plain, [F(x) for x in p] + [F(0)] * (size - n)) for p in self.points] if self.points else []
         return Support(drift, boxes, inputs, ellipsoid, hull)
+
+    def is_small(self):
+        return len(self.start) <= SMALL
+
+    def long_drift(self, row):
+        """The drift without the constant 1 as a state, which would connect all blocks: the integral of h exp(A tau) c, its constant in balls."""
+        start, offset = [*self.start[:-1], F(0)], [F(x) for x in self.constant] + [F(0)]
+        primitive = self.system.response(row, offset).integral()
+        return self.system.response(row, start) + primitive + Sum({(0, ZERO): acb(ball(row[-1]) - primitive.at(F(0)))})
 
     def extremes(self, h, h_drives=(), constant=F(0), start=F(0), end=None):
         """The supremum and the infimum as Extremes; the infimum's value is an upper bound."""

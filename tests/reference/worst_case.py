@@ -174,17 +174,19 @@ class Support:
             return self.growing(start, growing)
         late = self.late()
         early = self.early(start, start + F(math.ceil(self.horizon())) + self.period())
-        scale = arb(TOLERANCE / 100) * (1 + abs(late.value))
-        return early if early.value > late.value - arb("1e-60") and (early.value > late.value + scale or self.is_periodic()) else Extreme(late.value, None, early.slack)
+        scale = float(max(abs(early.value), abs(late.value)).mid())
+        if self.is_periodic() and abs(float(early.value - late.value)) <= 1e-9 * scale:
+            return Extreme(max(early.value, late.value, key=float), early.at, early.slack)
+        return early if float(early.value - late.value) > 1e-12 * scale else Extreme(late.value, None, early.slack)
 
     def growing(self, start, keys):
         """Growth of one sign alone is told from a late value."""
         rate = max(root.float.real for _, root in keys)
         t = F(math.ceil(40 / rate if rate > 0 else 1e6))
         self.prepared(float(self.horizon()))
-        if self.ball(t) > 0:
+        if self.ball(2 * t) - self.ball(t) > abs(self.ball(t)) / 1000:
             return Extreme(None)
-        return self.early(start, start + F(math.ceil(self.horizon())))
+        return self.early(start, start + F(math.ceil(max(self.horizon(), 100))))
 
     def is_periodic(self):
         return not self.inputs and all(root.growth == 0 for f in self.sums for _, root in f.terms) and len(self.classes()[0]) <= 1
@@ -254,35 +256,32 @@ class Support:
         widths = b - a
         ends = self.bends(times, np.concatenate([widths, widths[-1:]]))
         bends = np.maximum(ends[:-1], ends[1:])
-        best, slack = times[np.argmax(values)], 0.0
+        top, best = values.max(), times[values.argmax()]
+        width, slack = float(np.max(widths)), 0.0
         scale = max(np.abs(values).max(), 1e-300)
-        top = values.max()
         for _ in range(14):
             over = np.maximum(va, vb) + bends * (b - a) ** 2 / 8
-            keep = over > top + TOLERANCE * scale
             slack = max(0.0, float(over.max() - top)) if len(over) else slack
+            keep = over > top + TOLERANCE * scale
             if not keep.any() or keep.sum() > 400000:
                 break
             a, b, bends = a[keep], b[keep], bends[keep]
+            width = float(np.max(b - a))
             cuts = a[:, None] + (b - a)[:, None] * np.linspace(0, 1, 9)[None, :]
             fine = self.floats(cuts.ravel()).reshape(cuts.shape)
             if fine.max() > top:
                 top, best = fine.max(), cuts.ravel()[fine.argmax()]
             a, b, va, vb = cuts[:, :-1].ravel(), cuts[:, 1:].ravel(), fine[:, :-1].ravel(), fine[:, 1:].ravel()
             bends = np.repeat(bends, 8)
-        return self.sharpened(start, end, best, slack)
+        return self.sharpened(start, end, float(best), width, slack)
 
-    def sharpened(self, start, end, best, slack):
-        best = float(best)
-        width = 1e-4 / max([abs(r.float) for r in self.roots()], default=1.0)
-        for _ in range(4):
-            near = np.clip(best + width * np.linspace(-1, 1, 41), float(start), float(end))
-            best = float(near[np.argmax(self.floats(near))])
-            width /= 8
-        t = min(max(F(best), start), end)
-        if best in (float(start), float(end)):
-            t = start if best == float(start) else end
-        return Extreme(self.ball(t), t, slack)
+    def sharpened(self, start, end, best, width, slack):
+        """The value in balls at the best time, found more closely, or at an end of the window."""
+        while width > 1e-9 * (1e-3 + best):
+            near = np.clip(best + width * np.linspace(-1, 1, 21), float(start), float(end))
+            best, width = float(near[np.argmax(self.floats(near))]), width / 4
+        inner = min(max(F(best), start), end)
+        return max((Extreme(self.ball(t), t, slack) for t in (inner, start, end)), key=float)
 
 
 class Torus:
