@@ -6,6 +6,7 @@ Writes NAME.toml (matrix form) and its Matrix Market files. Matrices are those o
 may be distributed with it. The matrices of `heat` and `fom` are formulas. Where the literature gives no ranges they are our own; `source` says which.
 """
 
+import json
 import shutil
 import sys
 from dataclasses import dataclass
@@ -22,6 +23,7 @@ from set_model import Model, affine, decimal, vector
 
 OWN = "ranges: our own"
 DATA = spectrum.DATA
+VALUES = Path(__file__).resolve().parent / "set_values.json"
 
 
 @dataclass
@@ -148,11 +150,19 @@ def write(folder, large, zones=()):
 def main():
     folder, chosen = Path(sys.argv[1]), sys.argv[2:] or list(MODELS)
     for name in chosen:
-        write(folder, MODELS[name](), ZONES.get(name, ()))
+        write(folder, MODELS[name](), zones_near(name))
 
 
-# Limits one per cent beyond and short of the worst case (set_values.json), for all time.
-ZONES = {}
+def zones_near(name):
+    """Limits one per cent beyond and short of the worst cases in set_values.json, as (text, until)."""
+    cases = json.loads(VALUES.read_text())["large_worst_cases"] if VALUES.exists() else []
+    for case in cases:
+        if case["name"] == name:
+            until = None if case["until"] is None else F(case["until"])
+            for relation, ends in ((">=", case["max"]), ("<=", case["min"])):
+                value = sum(map(F, ends)) / 2
+                for factor in (F(101, 100), F(99, 100)):
+                    yield f"y {relation} {float(value * factor):.6e}", until
 
 if __name__ == "__main__":
     main()

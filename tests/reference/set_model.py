@@ -154,7 +154,7 @@ class Model:
 
 def affine(terms, constant=F(0)):
     """The text of a sum of multiples of names and a constant."""
-    text = [f"({decimal(x)})*{name}" for x, name in terms if x] + ([f"({decimal(constant)})"] if constant else [])
+    text = [name if x == 1 else f"({decimal(x)})*{name}" for x, name in terms if x] + ([f"({decimal(constant)})"] if constant else [])
     return " + ".join(text) or "0"
 
 

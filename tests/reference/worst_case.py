@@ -99,6 +99,7 @@ class Support:
     """S for one output. `boxes` and `inputs` are already scaled by their half widths; `ellipsoid` = (shape Q, [f_i]); `hull` = [h exp(At) p]."""
 
     def __init__(self, drift, boxes=(), inputs=(), ellipsoid=None, hull=()):
+        self.all_boxes, self.all_inputs = list(boxes), list(inputs)  # with those that are 0
         self.drift, self.boxes, self.inputs = drift, [f for f in boxes if f.terms], [q for q in inputs if q.terms]
         self.ellipsoid, self.hull = ellipsoid, list(hull)
         self.integrals = None
@@ -169,7 +170,7 @@ class Support:
             return self.early(start, F(end))
         if any(root.growth >= 0 for q in self.inputs for _, root in q.terms):
             return Extreme(None)
-        growing = [key for f in self.sums for key in f.growing() if key[1].growth > 0 or key[0] > 0]
+        growing = self.growing_terms()
         if growing:
             return self.growing(start, growing)
         late = self.late()
@@ -187,6 +188,9 @@ class Support:
         if self.ball(2 * t) - self.ball(t) > abs(self.ball(t)) / 1000:
             return Extreme(None)
         return self.early(start, start + F(math.ceil(max(self.horizon(), 100))))
+
+    def growing_terms(self):
+        return [key for f in self.sums for key in f.growing() if key[1].growth > 0 or key[0] > 0]
 
     def is_periodic(self):
         return not self.inputs and all(root.growth == 0 for f in self.sums for _, root in f.terms) and len(self.classes()[0]) <= 1
