@@ -94,3 +94,53 @@ def disagreement(model, h, h_drives, constant, start, end, extreme, horizon, sig
         return max(beyond, (value - inside.max()) / scale)
     there = Simulation(model, h, h_drives, constant, at, steps_for(model, at, most)).values[-1] if at > 0 else s.values[0]
     return max(beyond, abs(there - value) / scale)
+
+
+def both_values(model, parts, share, t):
+    """(g_1(x), g_2(x)), scaled, at the point x of the reachable set at t where share * g_1 + (1 - share) * g_2 is greatest: by a bang-bang signal on a fine grid."""
+    a, start, rows = model.augmented()
+    a, n, size = np.array(a, dtype=float), len(model.a), len(a)
+    g = []
+    for out, sign, level, unit in parts:
+        row = np.array([float(x) for x in out.h] + [0.0] * (size - n)) + sum((float(w) * np.array(r, dtype=float) for w, r in zip(out.h_drives, rows)), np.zeros(size))
+        row[-1] += float(out.constant - level)
+        g.append(row * sign / float(unit))
+    mix = float(share) * g[0] + (1 - float(share)) * g[1]
+    whole = expm(a * t)
+    x = whole @ best_start(model, mix @ whole, np.array(start, dtype=float), n)
+    if model.e and t > 0:
+        steps = 400
+        once, own = expm(a * t / steps), np.array(mix)
+        half = expm(a * t / steps / 2)
+        columns = [np.array([float(v) for v in c] + [0.0] * (size - n)) * float(hi - lo) / 2 for c, (_, lo, hi) in zip(model.e, model.disturbances)]
+        # tau runs back from t: the state reached gets exp(A tau) b w(t - tau) d tau, w constant on each step
+        left = phi(a, t / steps)
+        at = np.eye(size)
+        for _ in range(steps):
+            for b in columns:
+                x += at @ left @ b * np.sign(own @ at @ half @ b)
+            at = at @ once
+    return [float(row @ x) for row in g]
+
+
+def phi(a, s):
+    """The integral of exp(A tau) over [0, s]."""
+    n = len(a)
+    big = np.zeros((2 * n, 2 * n))
+    big[:n, :n], big[:n, n:] = a, np.eye(n)
+    return expm(big * s)[:n, n:]
+
+
+def best_start(model, row, centre, n):
+    """The start at which the row is greatest."""
+    x, h = centre.copy(), row[:n]
+    if model.box is not None:
+        x[:n] += np.sign(h) * np.array([float(hi - lo) / 2 for lo, hi in model.box])
+    if model.ellipsoid:
+        shape = np.array(model.ellipsoid[1], dtype=float)
+        size = np.sqrt(max(0.0, h @ shape @ h))
+        x[:n] += shape @ h / size if size > 0 else 0
+    if model.points:
+        points = np.array(model.points, dtype=float)
+        x[:n] = points[np.argmax(points @ h)]
+    return x
