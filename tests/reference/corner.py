@@ -10,7 +10,6 @@ from fractions import Fraction as F
 
 import numpy as np
 
-from exponential_sum import Sum
 from worst_case import Support, grid
 
 

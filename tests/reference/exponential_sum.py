@@ -10,7 +10,7 @@ from fractions import Fraction as F
 from math import factorial
 
 import numpy as np
-from flint import acb, acb_series, arb, ctx, fmpq, fmpq_mat, fmpq_poly
+from flint import acb, arb, ctx, fmpq, fmpq_mat, fmpq_poly
 
 ctx.prec = 320
 CHUNK = 20000  # times evaluated together

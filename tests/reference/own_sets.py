@@ -156,3 +156,67 @@ def forced():
 def cases():
     for group in (damping_loops, blade_loop, damped_mass, ladder, double_integrator, oscillator, orbit, two_carts, forced):
         yield from group()
+
+
+@dataclass
+class Uncertain:
+    """Constants in ranges: `text` of the model, `at` gives the model for values of the constants, closed forms over all of them."""
+
+    name: str
+    text: str
+    output: str
+    h: list
+    ranges: list
+    at: object
+    top: object
+    low: object
+    note: str
+    start: F = F(0)
+    end: F | None = None
+
+
+def states(rows, more=""):
+    return "".join(f'[state.{name}]\nstart = {start}\nrate = "{rate}"\n' for name, start, rate in rows) + more
+
+
+def uncertain():
+    spring = [("x", 0, "v"), ("v", 1, "-k*x")]
+    yield Uncertain("uncertain stiffness", states(spring, "[uncertain.k]\nrange = [4, 9]\n"), "x", [1, 0], [(4, 9)],
+                    lambda k: free([[0, 1], [-k, 0]], [(0, 0), (1, 1)]), ball(F(1, 2)), ball(F(-1, 2)), "1/sqrt(k) at k = 4")
+    loop = [("angle", 0, "speed"), ("speed", 0, "25*(command - angle) - d*speed")]
+    yield Uncertain("uncertain damping", states(loop, '[drive.command]\nsignal = "1"\n[uncertain.d]\nrange = [5, 7]\n'), "angle", [1, 0], [(5, 7)],
+                    lambda d: Model(fractions([[0, 1], [-25, -d]]), [F(0), F(25)], [(F(0), F(0))] * 2), 1 + overshoot(F(1, 2)), arb(0), "1 + exp(-pi/sqrt 3) at d = 5")
+    for words in ("", "varying = true\n"):
+        name = "uncertain leak" + (", varying" if words else "")
+        yield Uncertain(name, states([("level", "[1, 2]", "-p*level")], f"[uncertain.p]\nrange = [1, 2]\n{words}"), "level", [1], [(1, 2)],
+                        lambda p: free([[-p]], [(1, 2)]), 2 * arb(-1).exp(), arb(-6).exp(), "2 exp(-1) at t = 1, exp(-6) at t = 3", F(1), F(3))
+    yield Uncertain("uncertain gain", states([("x", 0, "-2*x + p*w")], "[disturbance.w]\nrange = [-1, 1]\n[uncertain.p]\nrange = [1, 3]\n"), "x", [1], [(1, 3)],
+                    lambda p: free([[-2]], [(0, 0)], disturbances=[("w", F(-1), F(1))], e=[[F(p)]]), ball(F(3, 2)), ball(F(-3, 2)), "p/2 at p = 3, approached")
+    mass = [("x", 0, "v"), ("v", 0, "(1 - v - k*x)/m")]
+    yield Uncertain("uncertain mass and stiffness", states(mass, "[uncertain.m]\nrange = [1, 2]\n[uncertain.k]\nrange = [3, 5]\n"), "x", [1, 0], [(1, 2), (3, 5)],
+                    lambda m, k: Model(fractions([[0, 1], [-k / m, -1 / m]]), [F(0), 1 / m], [(F(0), F(0))] * 2), (1 + (-arb.pi() / arb(23).sqrt()).exp()) / 3, arb(0),
+                    "(1 + exp(-pi z/sqrt(1 - z^2)))/k, z = 1/(2 sqrt(k m)), at m = 2, k = 3")
+    yield Uncertain("uncertain rest point", states([("x", 1, "1 - p*x")], "[uncertain.p]\nrange = [1, 2]\n"), "x", [1], [(1, 2)],
+                    lambda p: Model([[-p]], [F(1)], [(F(1), F(1))]), arb(1), ball(F(1, 2)), "1/p: 1 throughout at p = 1, 1/2 approached at p = 2")
+
+
+@dataclass
+class Corner:
+    """Two half-spaces with a common level a: `inside` with LEVEL in its place, (h, sign) of each, the greatest a at which it is reached or approached."""
+
+    name: str
+    model: Model
+    inside: str
+    sides: list
+    top: object
+    note: str
+
+
+def corners():
+    push = lambda a, e: free(a, [(0, 0)] * 2, names=["x1", "x2"], disturbances=[("w", F(-1), F(1))], e=[[F(x) for x in e]])
+    yield Corner("mirrored states", push([[-1, 0], [0, -1]], [1, -1]), "x1 >= LEVEL and x2 >= LEVEL", [([1, 0], 1), ([0, 1], 1)], arb(0),
+                 "x1 + x2 = 0 throughout, though each comes close to 1")
+    disc = free([[0, 1], [-1, 0]], ellipsoid=([F(0), F(0)], fractions([[1, 0], [0, 1]])), names=["x", "v"])
+    yield Corner("turning disc", disc, "x >= LEVEL and v >= LEVEL", [([1, 0], 1), ([0, 1], 1)], arb(2).sqrt() / 2, "the unit disc throughout: 1/sqrt 2")
+    yield Corner("one input, two lags", push([[-1, 0], [0, -2]], [1, 2]), "x1 >= LEVEL and x2 <= -LEVEL", [([1, 0], 1), ([0, 1], -1)], arb(5).sqrt() - 2,
+                 "w = 1 for long, then -1 for s: 2q - 1 = 1 - 2q^2, q = exp(-s): sqrt 5 - 2, approached")

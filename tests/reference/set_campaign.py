@@ -3,7 +3,7 @@
     venv/bin/python set_campaign.py KEEPOUT [PROBLEMS|FIRST:LAST] [SEED]
     venv/bin/python set_campaign.py --self [PROBLEMS|FIRST:LAST] [SEED]
 
-KEEPOUT is the program's path. Each problem is a random system (`random_sets.py`) with three outputs and ten zones: half-spaces, abs(), disjunctions, corners of two
+KEEPOUT is the program's path. Each problem is a random system (`random_sets.py`, `random_set_zones.py`) with three outputs and ten zones: half-spaces, abs(), disjunctions, corners of two
 half-spaces, equalities, at relative distances of 1e-2, 1e-4 and 1e-6 on both sides of the worst case, in windows and for all time. Two commands are run:
 `keepout peak MODEL --of OUTPUT --json` for each output and `keepout certify MODEL --json`. Two processes run at a time. Wrong is
   - a peak whose upper bound is below the worst case, or whose lower bound is above it; one that is infinite and should not be, or the other way round;
@@ -37,7 +37,8 @@ from flint import arb
 import corner
 import dense_simulation
 from exponential_sum import ball
-from random_sets import KINDS, extremes, middle, model_text, problem, scale
+from random_set_zones import extremes, model_text, problem, scale
+from random_sets import KINDS
 
 PROCESSES = 2
 SECONDS, SECONDS_ALONE, SECONDS_PEAK = 40, 10, 15
@@ -219,7 +220,7 @@ def examine_reference(arguments):
     """The worst cases of one problem against the simulation: rows (label, relative difference)."""
     _, seed, number = arguments
     p, rows = problem(seed, number), []
-    for out in p.outputs:
+    for out in p.outputs if p.kind != "uncertain" else []:
         for end in (F(3), None):
             top, low = extremes(p.model, out, F(0), end)
             horizon = min(60.0, p.model.support(out.h, out.h_drives, out.constant).horizon())

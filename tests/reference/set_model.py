@@ -7,6 +7,7 @@ Known drives and the constant 1 become states; the midpoint of a range joins the
 
 from dataclasses import dataclass, field
 from fractions import Fraction as F
+from itertools import product
 
 from flint import acb
 
@@ -150,6 +151,59 @@ class Model:
         terms += [(column[i], drive.name) for column, drive in zip(self.b, self.drives)]
         terms += [(column[i], name) for column, (name, _, _) in zip(self.e, self.disturbances)]
         return affine(terms, self.offset[i])
+
+
+class UncertainModel(Model):
+    """A(p) = A + sum p_k A_k for constants p_k in ranges: worst cases by search over p, on a grid first."""
+
+    def with_uncertain(self, uncertain, slopes):
+        """`uncertain`: (name, lo, hi); `slopes`: the A_k."""
+        self.uncertain, self.slopes, self.fixed = uncertain, slopes, {}
+        return self
+
+    def at(self, p):
+        """The model for values of the constants."""
+        if p not in self.fixed:
+            a = [[x + sum((q * s[i][j] for q, s in zip(p, self.slopes)), F(0)) for j, x in enumerate(row)] for i, row in enumerate(self.a)]
+            self.fixed[p] = Model(a, self.offset, self.box, self.ellipsoid, self.points, self.drives, self.b, self.disturbances, self.e, self.names)
+        return self.fixed[p]
+
+    def extremes(self, h, h_drives=(), constant=F(0), start=F(0), end=None):
+        minus = [-F(x) for x in h], [-F(x) for x in h_drives], -F(constant)
+        top, low = self.searched(h, h_drives, constant, start, end), self.searched(*minus, start, end)
+        return top, Extreme(None if low.value is None else -low.value, low.at, low.slack)
+
+    def searched(self, h, h_drives, constant, start, end):
+        known = {}
+
+        def value(p):
+            if p not in known:
+                known[p] = self.at(p).support(h, h_drives, constant).greatest(start, end)
+            return float(known[p])
+
+        count = 9 if len(self.uncertain) == 1 else 5
+        best = max(product(*[[lo + (hi - lo) * F(k, count - 1) for k in range(count)] for _, lo, hi in self.uncertain]), key=value)
+        step = F(1, count - 1)
+        while any(lo < x < hi for x, (_, lo, hi) in zip(best, self.uncertain)) and step > F(1, 10**5):
+            step /= 3
+            near = [[min(max(x + (hi - lo) * step * k, lo), hi) for k in (-2, -1, 0, 1, 2)] for x, (_, lo, hi) in zip(best, self.uncertain)]
+            best = max(product(*near), key=value)
+        return known[best]
+
+    def rate(self, i):
+        names = [name for name, _, _ in self.uncertain]
+        factor = lambda j: affine([(s[i][j], name) for s, name in zip(self.slopes, names)], self.a[i][j])
+        loose = [any(s[i][j] for s in self.slopes) for j in range(len(self.names))]
+        own = [f"({factor(j)})*{name}" for j, name in enumerate(self.names) if loose[j]]
+        terms = [(x, name) for x, name, is_loose in zip(self.a[i], self.names, loose) if not is_loose]
+        terms += [(column[i], drive.name) for column, drive in zip(self.b, self.drives)]
+        terms += [(column[i], name) for column, (name, _, _) in zip(self.e, self.disturbances)]
+        rest = affine(terms, self.offset[i])
+        return " + ".join(own + ([rest] if rest != "0" else [])) or "0"
+
+    def text(self, zones=""):
+        words = "".join(f"[uncertain.{name}]\nrange = {vector((lo, hi))}\n" for name, lo, hi in self.uncertain)
+        return super().text(words + zones)
 
 
 def affine(terms, constant=F(0)):

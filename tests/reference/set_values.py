@@ -10,6 +10,7 @@ A pair [lower, upper] holds the worst case. For a `max` the lower end, for a `mi
 end rests on a cover in floating point (`worst_case.py`), but where `closed_form` is given both ends are its digits.
 """
 
+import itertools
 import json
 import sys
 from fractions import Fraction as F
@@ -17,8 +18,9 @@ from pathlib import Path
 
 sys.dont_write_bytecode = True
 
-from flint import arb, ctx
+from flint import ctx
 
+import corner
 import dense_simulation
 import large_models
 import own_sets
@@ -26,6 +28,7 @@ import step_response
 import worst_case
 from ball import bounds, exact, order_of, text
 from own_sets import UNBOUNDED, Case
+from random_set_zones import Output
 from set_model import Model, affine
 
 HERE = Path(__file__).resolve().parent
@@ -81,6 +84,29 @@ def compare(case, extreme, sign, known, horizon):
         raise ArithmeticError(f"{case.name}: the simulation is {apart} away")
 
 
+def uncertain_case(case):
+    """The closed form, compared with the worst cases for a grid of values of the constants."""
+    worst_case.TOLERANCE = 1e-13
+    grid = itertools.product(*[[F(lo) + (F(hi) - F(lo)) * k / 6 for k in range(7)] for lo, hi in case.ranges])
+    found = [case.at(*values).extremes(case.h, start=case.start, end=case.end) for values in grid]
+    for value, known in ((max(float(top) for top, _ in found), case.top), (min(float(low) for _, low in found), case.low)):
+        if abs(value - float(known)) > 1e-11:
+            raise ArithmeticError(f"{case.name}: {value} is not {known}")
+    return {
+        "name": case.name, "source": "our own: " + case.note, "model": case.text, "output": case.output, "from": text(case.start), "until": None if case.end is None else text(case.end),
+        "max": bounds(case.top, 24), "min": bounds(case.low, 24),
+    }
+
+
+def corner_case(case):
+    """The closed form, compared with the depth in the corner at level 0."""
+    parts = [(Output([F(x) for x in h], [], F(0), ""), sign, F(0), F(1)) for h, sign in case.sides]
+    found = corner.depth(case.model, parts, F(0), None)
+    if abs(found - float(case.top)) > 1e-11:
+        raise ArithmeticError(f"{case.name}: {found} is not {case.top}")
+    return {"name": case.name, "source": "our own: " + case.note, "model": case.model.text(), "inside": case.inside, "level": bounds(case.top, 24)}
+
+
 def filters():
     """Low-pass filters of values.json under a disturbance of at most 1."""
     known = {c["name"]: c["impulse_l1"] for c in json.loads((HERE / "values.json").read_text())["step_responses"]}
@@ -129,6 +155,8 @@ def main():
     kept = [c for c in before["large_worst_cases"] if c["name"] not in fresh]
     groups = {
         "worst_cases": [small_case(c) for c in own_sets.cases()],
+        "uncertain": [uncertain_case(c) for c in own_sets.uncertain()],
+        "corners": [corner_case(c) for c in own_sets.corners()],
         "impulse_norms": [small_case(c) for c in filters()],
         "large_worst_cases": kept + list(large_cases(fresh)),
     }
