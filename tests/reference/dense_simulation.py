@@ -87,7 +87,7 @@ def disagreement(model, h, h_drives, constant, start, end, extreme, horizon, sig
         return None
     s = Simulation(model, h, h_drives, constant, last, steps_for(model, last, most))
     inside = s.values[s.times >= float(start) - 1e-12]
-    scale = np.abs(s.values).max() + 1e-6
+    scale = np.abs(s.values).max() + 1e-4
     value = sign * float(extreme)
     beyond = max(0.0, (inside.max() - value) / scale)
     if at is None:
