@@ -115,6 +115,10 @@ impl RootTable {
 
     /// Accounts for the product of families with multiplicity: numbers as long as all coefficients together.
     pub fn spend_product(&self, factors: &[Factor], budget: &mut Budget) -> Result<(), Rejection> {
+        // Of one factor alone there is no product.
+        if let [Factor { multiplicity: 1, family }] = factors {
+            return budget.spend(self.families.get(*family).map_or(0, Polynomial::length) / 64, 1);
+        }
         let (mut degree, mut length) = (0_usize, 0_usize);
         for factor in factors {
             let Some(polynomial) = self.families.get(factor.family) else { continue };
