@@ -32,7 +32,9 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
     // polynomials with all their roots, ...). Both types can be built in memory, so it is ensured here for each caller.
     certificate.ensure_readable(limits)?;
     let mut budget = Budget::new(limits);
-    if !statement.is_single() {
+    // One trajectory is a case of many.
+    let is_many = matches!(certificate.evidence, Evidence::Many(_) | Evidence::Witness(_));
+    if is_many || !statement.is_single() {
         check_many(certificate, limits, &mut budget)?;
         return Ok(Verified { statement: statement.clone() });
     }
@@ -81,11 +83,8 @@ pub fn check(statement: &Statement, certificate: &Certificate, limits: &Limits) 
             fits.ensure(zone.until.is_none() && statement.drives.is_empty())?;
             region::check(set, proof, on, &mut budget)?;
         }
-        // One trajectory is a case of many.
-        (_, Evidence::Many(_) | Evidence::Witness(_)) => check_many(certificate, limits, &mut budget)?,
-        (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_) | Evidence::Region(_)) => {
-            return Err(fits.refuted());
-        }
+        (_, Evidence::Never { .. } | Evidence::Enters { .. } | Evidence::Inseparable(_) | Evidence::Region(_))
+        | (_, Evidence::Many(_) | Evidence::Witness(_)) => return Err(fits.refuted()),
     }
     Ok(Verified { statement: statement.clone() })
 }

@@ -95,6 +95,8 @@ struct Search<'a> {
     options: &'a Options,
     effort: u64,
     supremum: Option<(f64, f64)>,
+    /// Whether scans go on where the zone is met.
+    looks_at_all: bool,
 }
 
 impl<'a> Search<'a> {
@@ -116,7 +118,7 @@ impl<'a> Search<'a> {
                 }
             }
         });
-        Self { statement, formula, functionals, options, effort: options.effort, supremum: None }
+        Self { statement, formula, functionals, options, effort: options.effort, supremum: None, looks_at_all: false }
     }
 
     fn settle(&mut self) -> Verdict {
@@ -228,7 +230,7 @@ impl<'a> Search<'a> {
         let until = self.statement.zone.until.as_ref().map(approx_value);
         let forms = plan.forms();
         let mut scan = Scan::new(&plan, sizes.clone(), until, |sample| {
-            forms == 0 && sample.t >= from && self.inside(&|i| sample.values[i]) > 0.0
+            !self.looks_at_all && forms == 0 && sample.t >= from && self.inside(&|i| sample.values[i]) > 0.0
         });
         let mut bounds = Vec::new();
         if forms > 0 {
@@ -424,7 +426,8 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
         about
     };
     let sign = if upward { Rational::one() } else { -Rational::one() };
-    let search = Search::new(&about(&Rational::zero(), false), options);
+    let mut search = Search::new(&about(&Rational::zero(), false), options);
+    search.looks_at_all = true;
     let analysis = match search.analyse(&whole(statement), PRECISIONS[0]) {
         Ok(analysis) => analysis,
         Err(reason) => {

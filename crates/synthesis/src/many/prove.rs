@@ -3,6 +3,7 @@
 use super::plan::Plan;
 use super::scan::{REACH, Scan, bisect};
 use crate::enclosure::approx_value;
+use crate::strategy::cone::approx_dyadic;
 use keepout_checker::certificate::Angle;
 use keepout_checker::formula::{Conflict, IndexedFormula};
 use keepout_checker::limits::{Budget, Limits};
@@ -10,7 +11,6 @@ use keepout_checker::many::{Piece, Tail, TailLead, TimeCell};
 use keepout_checker::number::{Dyadic, Interval, Rational};
 use keepout_checker::support::Support;
 use keepout_checker::trace::Stretch;
-use keepout_core::ToRational;
 use num_traits::{FromPrimitive, Signed, Zero};
 use std::cmp::Ordering;
 
@@ -180,7 +180,7 @@ impl Prover<'_> {
         let (centre, half_width) = ((from + to) * &half, (to - from) * &half);
         let bits = self.bits;
         let stretch = Stretch { centre: &centre, half_width: &half_width, order, bits };
-        let share = self.goal.slack * approx_value(&(to - from)) / self.goal.horizon;
+        let share = self.goal.slack / 2.0 * approx_value(&(to - from)) / self.goal.horizon;
         let mut conflicts = Vec::new();
         let mut after = Vec::new();
         for (one, before) in self.all.iter().zip(integrals) {
@@ -192,13 +192,11 @@ impl Prover<'_> {
                 return Err(Fault::Bound);
             }
             for (k, (now, old)) in found.integrals.iter().zip(before).enumerate() {
-                let size = self.scan.sizes[k];
-                let gained = approx_value(&now.to_rational().unwrap_or_else(Rational::zero))
-                    - approx_value(&old.to_rational().unwrap_or_else(Rational::zero));
-                let form = &self.scan.supports[one.index].signals[k];
-                let (a, b) = (approx_value(from), approx_value(to));
-                // Where the sign changes, all of the gain may be lost.
-                if size * gained > share && form.value(a) * form.value(b) <= 0.0 && gained > 0.0 {
+                let gained = approx_dyadic(now) - approx_dyadic(old);
+                let truth = self.scan.integral(one.index, k, approx_value(from), approx_value(to));
+                // Rounding in floating point is no loss.
+                let spare = share + self.share_of_zero(one.index, k, approx_value(from), approx_value(to));
+                if self.scan.sizes[k] * (gained - truth) > spare + 1e-15 * self.scan.scale {
                     return Err(Fault::Signal(one.index, k));
                 }
             }
@@ -215,19 +213,46 @@ impl Prover<'_> {
         Ok(after)
     }
 
-    /// Where to cut a cell that is not accepted.
+    /// Where to cut a cell that is not accepted: just beside a zero of the response that loses too much, so near that little is
+    /// lost between; or, where zeros are near the ends alone, nearer to them.
     fn cuts(&self, a: f64, b: f64, fault: Fault) -> Vec<f64> {
         let Fault::Signal(index, k) = fault else { return Vec::new() };
         let form = &self.scan.supports[index].signals[k];
         let f = |t: f64| form.value(t);
+        // The loss on a cell around a zero is at most its length times the greatest size there.
+        let wanted = self.goal.slack / 2.0 / self.zeros(index) / self.scan.sizes[k].max(1e-300);
+        let width = |zero: f64, sign: f64, room: f64| {
+            let mut width = room / 4.0;
+            while 2.0 * width * f(zero + sign * width).abs() > wanted && width > 4e-15 * zero.abs() {
+                width /= 2.0;
+            }
+            width
+        };
         let samples: Vec<f64> = (0..=16).map(|i| a + (b - a) * f64::from(i) / 16.0).collect();
         let crossing = samples.windows(2).find(|w| f(w[0]) * f(w[1]) < 0.0).map(|w| bisect(&f, w[0], w[1]));
-        let Some(crossing) = crossing else { return Vec::new() };
-        // So short that what is lost, about |f'| width^2, is within the share.
-        let slope = ((f(crossing + 1e-3 * (b - a)) - f(crossing - 1e-3 * (b - a))) / (2e-3 * (b - a))).abs();
-        let rate = self.goal.slack / self.goal.horizon / (self.scan.sizes[k] * slope).max(1e-300);
-        let width = (rate / 4.0).min((b - a) / 16.0).max(4e-15 * b);
-        vec![crossing - width, crossing + width]
+        if let Some(zero) = crossing {
+            let half = width(zero, -1.0, zero - a).min(width(zero, 1.0, b - zero));
+            return vec![zero - half, zero + half];
+        }
+        let (start, end) = (f(a).abs(), f(b).abs());
+        let beside = width(a, 1.0, b - a);
+        if start < 1e-3 * f(a + beside).abs() {
+            return vec![a + beside];
+        }
+        vec![if start <= end { a + (b - a) / 4.0 } else { b - (b - a) / 4.0 }]
+    }
+
+    /// What may be lost on a cell with a zero of a response: an equal share for each zero.
+    fn share_of_zero(&self, index: usize, k: usize, from: f64, to: f64) -> f64 {
+        let crossings = &self.scan.crossings[index][k];
+        let next = crossings.partition_point(|c| *c < from);
+        let has_zero = from == 0.0 || crossings.get(next).is_some_and(|c| *c <= to);
+        if has_zero { self.goal.slack / 2.0 / self.zeros(index) } else { 0.0 }
+    }
+
+    /// The number of zeros of responses, those at 0 included.
+    fn zeros(&self, index: usize) -> f64 {
+        self.scan.crossings[index].iter().map(|list| list.len() + 1).sum::<usize>() as f64
     }
 
     fn tail(&mut self, from: &Rational, integrals: &[Vec<Dyadic>], effort: &mut u64) -> Option<Tail> {

@@ -203,6 +203,19 @@ impl Scan {
         support.central.value(t) + support.direct + support.starts(&self.shape, t) + added
     }
 
+    /// The integral of the size of a signal's response between two instants not far apart.
+    pub(crate) fn integral(&self, index: usize, signal: usize, from: f64, to: f64) -> f64 {
+        let form = &self.supports[index].signals[signal];
+        let f = |t: f64| form.value(t);
+        let mut ends = vec![from];
+        let crossings = &self.crossings[index][signal];
+        let first = crossings.partition_point(|c| *c <= from);
+        ends.extend(crossings[first..].iter().take_while(|c| **c < to));
+        ends.push(to);
+        let halves = ends.windows(2).flat_map(|w| [(w[0], (w[0] + w[1]) / 2.0), ((w[0] + w[1]) / 2.0, w[1])]);
+        halves.map(|(a, b)| gauss(&f, a, b).abs()).sum()
+    }
+
     /// The greatest value in the window from an instant on, with its time (infinity: only approached).
     pub(crate) fn supremum(&self, index: usize, from: f64) -> (f64, f64) {
         let inside = || self.samples.iter().enumerate().filter(|(_, s)| s.t >= from);
