@@ -11,6 +11,7 @@ use keepout_tests::case::{answer, corpus};
 use keepout_tests::system::{System, atom, rational};
 use std::fs;
 
+mod many_cases;
 mod region_cases;
 
 fn main() {
@@ -36,6 +37,7 @@ fn main() {
     reject_inseparable(&base);
     reject_exponentials(&base);
     region_cases::write_all();
+    many_cases::write_all();
 }
 
 fn write(folder: &str, rule: &str, name: &str, expected: &str, certificate: &Certificate) {
@@ -251,7 +253,7 @@ fn cells(c: &mut Certificate) -> &mut Vec<Cell> {
     match &mut c.evidence {
         Evidence::Never { cells, .. } => cells,
         Evidence::Enters { before, .. } => before,
-        Evidence::Inseparable(_) | Evidence::Region(_) => panic!("no cells"),
+        Evidence::Inseparable(_) | Evidence::Region(_) | Evidence::Many(_) | Evidence::Witness(_) => panic!("no cells"),
     }
 }
 

@@ -1,16 +1,17 @@
 //! The trusted part of Keepout.
 //!
-//! **Promise.** If [`check`] returns a [`Verified`], then the claim of its statement is true: of the one solution of the
-//! statement's differential equation that has the statement's start, driven by exactly the statement's known inputs (for the claim
-//! `region`: of all solutions with starts in its set, too). The exact meaning of a claim stands at [`statement::Claim`].
+//! **Promise.** If [`check`] returns a [`Verified`], then the claim of its statement is true: of each admissible solution of the
+//! statement's differential equation, driven by exactly the statement's known inputs: from each admissible start, for all
+//! disturbances and uncertain quantities within their ranges; where there are none of these, of the one solution that has the
+//! statement's start (for the claim `region`: of all solutions with starts in its set, too). The exact meaning of a claim stands at [`statement::Claim`].
 //!
 //! **Assumptions.** That the lines of this crate do what their comments say; that `num-bigint`, `num-integer`,
 //! `num-rational` and `num-traits` compute correctly; that compiler and machine do. Nothing else: not the program that found the
 //! certificate, no floating-point number, no tolerance. That the statement describes the plant is not claimed.
 //!
 //! Reading order: `statement`, `certificate`, `check`, `rules/`, `model`, `trace`, `root`, `far_field`, `lead`, `range`, `region`,
-//! `expansion`, `sequence`, `formula`, `exponential`, `signs`, `number/`;
-//! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `field`, `json` read and write texts.
+//! `expansion`, `many`, `division`, `substitution`, `support`, `tail`, `affine_form`, `response`, `taylor`, `admissible`, `sequence`, `formula`, `exponential`, `signs`, `number/`;
+//! `words` and `decimal` print a statement for people, `statement_text`, `certificate_text`, `set_text`, `many_text`, `field`, `json` read and write texts.
 
 pub use check::{Verified, check};
 pub use error::Rejection;
@@ -48,6 +49,7 @@ mod bisection;
 mod certificate_text;
 mod check;
 mod combination;
+mod division;
 mod far_field;
 mod field;
 mod many_text;

@@ -12,6 +12,7 @@
 //! Source: docs/theorems/worst_case.md.
 
 use crate::affine_form::expression;
+use crate::division::check_pieces;
 use crate::error::{Checked, Duty, Obligation, Rule};
 use crate::far_field::{Turns, check_angles};
 use crate::formula::Conflict;
@@ -20,7 +21,7 @@ use crate::many::{Division, Functional, Piece, Ranges, Tail};
 use crate::model::{Model, Setting};
 use crate::number::{Dyadic, Interval, Rational};
 use crate::root::RootTable;
-use crate::substitution::{Group, substituted, whole};
+use crate::substitution::{Group, substituted};
 use crate::support::{Ground, Inputs, Support};
 use crate::trace::Stretch;
 use num_traits::{One, Signed, Zero};
@@ -28,28 +29,7 @@ use std::cmp::Ordering;
 
 /// Checks that the pieces are all that is admissible, and each of them.
 pub(crate) fn check(divisions: &[Division], on: Setting, budget: &mut Budget) -> Checked {
-    let statement = &on.certificate.statement;
-    let mut open: Vec<Ranges> = vec![whole(statement)];
-    for (position, node) in divisions.iter().enumerate() {
-        let covers = Duty::new(Rule::WorstCase, Obligation::PiecesCover, position);
-        let mut ranges = open.pop().ok_or_else(|| covers.refuted())?;
-        match node {
-            Division::Cut(axis, at) => {
-                covers.ensure(statement.uncertain.get(*axis).is_none_or(|u| !u.varying))?;
-                let mut upper = ranges.clone();
-                let (Some(below), Some(above)) = (ranges.get_mut(*axis), upper.get_mut(*axis)) else {
-                    return Err(covers.refuted());
-                };
-                covers.ensure(below.from <= *at && *at <= below.to)?;
-                below.to.clone_from(at);
-                above.from.clone_from(at);
-                open.push(upper);
-                open.push(ranges);
-            }
-            Division::Piece(piece) => check_piece(piece, &ranges, on, budget)?,
-        }
-    }
-    Duty::new(Rule::WorstCase, Obligation::PiecesCover, divisions.len()).ensure(open.is_empty())
+    check_pieces(divisions, &on.certificate.statement, |piece, ranges| check_piece(piece, ranges, on, budget))
 }
 
 /// A functional to bound: its support function, a bound that it stays below, and what follows where it is negative.
