@@ -4,6 +4,8 @@
 //! [`Polynomial::taylor`], which encloses.
 
 use crate::number::{Complex, Interval, Rational};
+use num_bigint::BigInt;
+use num_integer::Integer;
 use num_traits::{One, Zero};
 
 /// A polynomial over the rationals.
@@ -50,6 +52,13 @@ impl Polynomial {
     /// The bits of all coefficients.
     pub fn length(&self) -> usize {
         self.coefficients.iter().map(length).fold(0, usize::saturating_add)
+    }
+
+    /// Bits of the longest numerator over the common denominator and of this, at most.
+    pub fn common_length(&self) -> usize {
+        let common = self.coefficients.iter().fold(BigInt::one(), |d, c| d.lcm(c.denom()));
+        let longest = self.coefficients.iter().map(|c| c.numer().bits()).max().unwrap_or(0);
+        usize::try_from(longest.saturating_add(common.bits().saturating_mul(2))).unwrap_or(usize::MAX)
     }
 
     /// self * other.

@@ -47,6 +47,8 @@ impl Root {
 #[derive(Clone, Debug)]
 pub struct RootTable {
     families: Vec<Polynomial>,
+    /// Bits of each coefficient over the family's common denominator, at most.
+    sizes: Vec<usize>,
     roots: Vec<Root>,
 }
 
@@ -60,11 +62,13 @@ impl RootTable {
         for (position, family) in families.iter().enumerate() {
             let degree = family.polynomial.degree();
             budget.spend(2 * degree * degree, bits)?;
+            budget.spend(degree, u32::try_from(family.polynomial.length()).unwrap_or(u32::MAX))?;
             let separated = Duty::new(Rule::Trace, Obligation::RootsAreSeparated, position);
             roots.extend(discs(position, family, bits).ok_or_else(|| separated.inconclusive())?);
         }
         budget.spend(2 * roots.len() * roots.len(), bits)?;
-        let table = Self { families: families.iter().map(|f| f.polynomial.clone()).collect(), roots };
+        let sizes = families.iter().map(|f| f.polynomial.common_length()).collect();
+        let table = Self { families: families.iter().map(|f| f.polynomial.clone()).collect(), sizes, roots };
         match table.colliding_family(bits) {
             None => Ok(table),
             Some(family) => Err(Duty::new(Rule::Trace, Obligation::RootsAreSeparated, family).inconclusive()),
@@ -113,18 +117,16 @@ impl RootTable {
         })
     }
 
-    /// Accounts for the product of families with multiplicity: numbers as long as all coefficients together.
+    /// Accounts for the product of families with multiplicity: over the product of their common denominators, coefficients are as long as
+    /// those of all factors together.
     pub fn spend_product(&self, factors: &[Factor], budget: &mut Budget) -> Result<(), Rejection> {
-        // Of one factor alone there is no product.
-        if let [Factor { multiplicity: 1, family }] = factors {
-            return budget.spend(self.families.get(*family).map_or(0, Polynomial::length) / 64, 1);
-        }
         let (mut degree, mut length) = (0_usize, 0_usize);
         for factor in factors {
             let Some(polynomial) = self.families.get(factor.family) else { continue };
             let times = usize::try_from(factor.multiplicity).unwrap_or(usize::MAX);
+            let size = self.sizes.get(factor.family).copied().unwrap_or(usize::MAX);
             degree = degree.saturating_add(polynomial.degree().saturating_mul(times));
-            length = length.saturating_add(polynomial.length().saturating_mul(times));
+            length = length.saturating_add(size.saturating_mul(times));
         }
         budget.spend(degree.saturating_mul(degree), u32::try_from(length).unwrap_or(u32::MAX))
     }

@@ -100,6 +100,12 @@ fn factored(shape: &[Vec<Rational>]) -> Option<(Vec<Rational>, Vec<Vec<Rational>
     Some((weights, columns))
 }
 
+/// How often a cell is halved where the sign of a signal's response is not certain.
+const HALVINGS: u32 = 18;
+
+/// About how many halves are looked at for one change of sign.
+const HALVES: usize = 40;
+
 /// A functional with all its closed forms.
 #[derive(Clone, Debug)]
 pub struct Support {
@@ -273,7 +279,11 @@ impl Support {
             let (within, inside) = match model.sign() {
                 Some(sign) if sign != Ordering::Equal => (model.integral().abs_hi(), Some(sign)),
                 Some(_) => (Dyadic::zero(), None),
-                None => (model.range().abs_hi().mul(&base.half_width.scale(1), bits, Up), None),
+                None => {
+                    let order = model.coefficients.len();
+                    budget.spend(order.saturating_mul(order).saturating_mul(HALVES), bits)?;
+                    (model.size_integral(HALVINGS), None)
+                }
             };
             match inside {
                 Some(sign) => {

@@ -120,6 +120,36 @@ impl Taylor {
         end.add(&Interval::symmetric(&primitive.slack), self.bits)
     }
 
+    /// An upper bound of the integral of |f| over the stretch: where the sign is not certain the stretch is halved, up to this often.
+    pub fn size_integral(&self, halvings: u32) -> Dyadic {
+        if self.sign().is_some() {
+            return self.integral().abs_hi();
+        }
+        let quarter = self.half_width.scale(-1);
+        if halvings == 0 {
+            // SOUND(hi): the length times the greatest size, both from above, rounded up.
+            return self.range().abs_hi().mul(&self.half_width.scale(1), self.bits, Up);
+        }
+        let halves = [quarter.neg(), quarter].map(|middle| self.half_about(&middle).size_integral(halvings - 1));
+        // SOUND(hi): a sum of upper bounds, rounded up.
+        halves.iter().fold(Dyadic::zero(), |sum, half| sum.add(half, self.bits, Up))
+    }
+
+    /// The function on the half of the stretch about -h/2 or h/2: p(middle + s), by repeated division by s - middle.
+    fn half_about(&self, middle: &Dyadic) -> Self {
+        let at = Interval::point(middle.clone());
+        let mut coefficients = self.coefficients.clone();
+        for first in 0..coefficients.len() {
+            for k in (first..coefficients.len().saturating_sub(1)).rev() {
+                let above = coefficients.get(k + 1).map(|c| c.mul(&at, self.bits));
+                if let (Some(slot), Some(above)) = (coefficients.get_mut(k), above) {
+                    *slot = slot.add(&above, self.bits);
+                }
+            }
+        }
+        Self { coefficients, half_width: self.half_width.scale(-1), ..self.clone() }
+    }
+
     /// Encloses the polynomial part at one s.
     fn polynomial_at(&self, s: &Dyadic) -> Interval {
         let s = Interval::point(s.clone());

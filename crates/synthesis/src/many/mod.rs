@@ -49,11 +49,9 @@ pub(crate) fn settle_many(statement: &Statement, options: &Options) -> Result<Ou
         Verdict::Clear(certificate) => {
             let mut proof = Proof::new(*certificate, &options.limits).map_err(Error::Refused)?;
             let mut margin = None;
-            if options.margin {
-                if let Some((wide, found)) = search.margin(&proof) {
-                    proof = wide;
-                    margin = Some(found);
-                }
+            if let Some((wide, found)) = options.margin.then(|| search.margin(&proof)).flatten() {
+                proof = wide;
+                margin = Some(found);
             }
             Ok(Outcome::Clear { proof: Box::new(proof), margin })
         }
@@ -139,13 +137,13 @@ impl<'a> Search<'a> {
         while let Some(ranges) = open.pop() {
             let analysis = match self.analyse(&ranges, bits) {
                 Ok(analysis) => analysis,
-                Err(reason) => return Verdict::Open(reason),
+                Err(reason) => return Verdict::Open(*reason),
             };
             let (distance, at) = analysis.nearest;
-            if distance >= -1e-9 * analysis.scan.scale {
-                if let Some(certificate) = self.entry(&ranges, &analysis, bits) {
-                    return Verdict::Enters(Box::new(certificate));
-                }
+            if distance >= -1e-9 * analysis.scan.scale
+                && let Some(certificate) = self.entry(&ranges, &analysis, bits)
+            {
+                return Verdict::Enters(Box::new(certificate));
             }
             let bounded = analysis.bounds.len() == analysis.plan.forms();
             let stuck = if distance <= 1e-7 * analysis.scan.scale && bounded {
@@ -208,10 +206,10 @@ impl<'a> Search<'a> {
         Some((axis, ranges[axis].centre()))
     }
 
-    fn analyse(&self, ranges: &Ranges, bits: u32) -> Result<Analysis, Reason> {
+    fn analyse(&self, ranges: &Ranges, bits: u32) -> Result<Analysis, Box<Reason>> {
         let no_plan = |fault: NoPlan| match fault {
-            NoPlan::Rejected(rejection) => Reason::Limit(rejection),
-            NoPlan::NotAffine => Reason::NotAffine,
+            NoPlan::Rejected(rejection) => Box::new(Reason::Limit(rejection)),
+            NoPlan::NotAffine => Box::new(Reason::NotAffine),
         };
         let limits = &self.options.limits;
         let polynomials = &self.formula.polynomials;
@@ -431,7 +429,7 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
     let analysis = match search.analyse(&whole(statement), PRECISIONS[0]) {
         Ok(analysis) => analysis,
         Err(reason) => {
-            peak.reason = Some(match reason {
+            peak.reason = Some(match *reason {
                 Reason::NotAffine => "it is not affine in the states with constant coefficients".into(),
                 Reason::Limit(rejection) => rejection.to_string(),
                 _ => "the work allowed was used up".into(),

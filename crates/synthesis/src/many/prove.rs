@@ -284,8 +284,8 @@ impl Prover<'_> {
         let angles = used.iter().enumerate().map(|(i, r)| Angle { root: *r, turns: unit(i), sum: None }).collect();
         let mut tail = Tail { from: from.clone(), base: used, angles, leads };
         let mut conflicts = Vec::new();
-        for position in 0..self.all.len() {
-            let upper = self.leaves(&mut tail, position, &integrals[position], effort)?;
+        for (position, integrals) in integrals.iter().enumerate() {
+            let upper = self.leaves(&mut tail, position, integrals, effort)?;
             let one = &self.all[position];
             if let Some(bound) = one.bound {
                 let stays = upper < *Interval::rational(bound, self.plan.bits).lo();

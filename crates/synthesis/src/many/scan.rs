@@ -275,7 +275,7 @@ impl Scan {
 /// The greatest value of a function of angles: on a grid, then by shrinking steps along the axes.
 fn greatest_on_torus(dimension: usize, value: impl Fn(&[f64]) -> f64) -> f64 {
     let turn = std::f64::consts::TAU;
-    let side = match dimension {
+    let side: usize = match dimension {
         0 => 1,
         1 => 720,
         2 => 90,
@@ -283,7 +283,7 @@ fn greatest_on_torus(dimension: usize, value: impl Fn(&[f64]) -> f64) -> f64 {
         _ => 6,
     };
     let mut best = (f64::NEG_INFINITY, vec![0.0; dimension]);
-    for index in 0..(side as usize).pow(dimension.min(6) as u32) {
+    for index in 0..side.pow(dimension.min(6) as u32) {
         let mut rest = index;
         let angles: Vec<f64> = (0..dimension)
             .map(|_| {
