@@ -178,3 +178,21 @@ fn zones_near_the_worst_case_are_told_from_both_sides() {
         assert_eq!(word(&s), verdict, "{limit}");
     }
 }
+
+/// y'' = 25 (1 - y) - c y', c in [6, 7]: the greatest overshoot is that of c = 6, 1 + exp(-3 pi / 4) = 1.0948.
+fn uncertain_damping(limit: &str) -> Statement {
+    let inside = half_space(&["1", "0"], limit);
+    let mut s = statement(&[&["0", "1"], &["-25", "0"]], &["0", "25"], &[], &["0", "0"], inside);
+    let range = Range { from: q("6"), to: q("7") };
+    s.uncertain.push(Uncertain { name: "c".into(), unit: None, range, varying: false });
+    let of = Some(Variable::State(1));
+    s.phases[0].uncertain.push(UncertainTerm { state: 1, factor: q("-1"), powers: vec![(0, 1)], of });
+    s
+}
+
+#[test]
+fn overshoot_with_uncertain_damping() {
+    for (limit, verdict) in [("-1.10", "clear"), ("-1.095", "clear"), ("-1.0945", "enters"), ("-1.09", "enters")] {
+        assert_eq!(word(&uncertain_damping(limit)), verdict, "{limit}");
+    }
+}
