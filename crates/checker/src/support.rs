@@ -103,8 +103,8 @@ fn factored(shape: &[Vec<Rational>]) -> Option<(Vec<Rational>, Vec<Vec<Rational>
 /// How often a cell is halved where the sign of a signal's response is not certain.
 const HALVINGS: u32 = 18;
 
-/// About how many halves are looked at for one change of sign.
-const HALVES: usize = 40;
+/// How many halvings there are at most for one signal on one cell.
+const STEPS: u32 = 200;
 
 /// A functional with all its closed forms.
 #[derive(Clone, Debug)]
@@ -280,9 +280,12 @@ impl Support {
                 Some(sign) if sign != Ordering::Equal => (model.integral().abs_hi(), Some(sign)),
                 Some(_) => (Dyadic::zero(), None),
                 None => {
-                    let order = model.coefficients.len();
-                    budget.spend(order.saturating_mul(order).saturating_mul(HALVES), bits)?;
-                    (model.size_integral(HALVINGS), None)
+                    let mut steps = STEPS;
+                    let within = model.size_integral(HALVINGS, &mut steps);
+                    let (order, taken) = (model.coefficients.len(), STEPS - steps);
+                    let work = order.saturating_mul(order).saturating_mul(2);
+                    budget.spend(work.saturating_mul(usize::try_from(taken).unwrap_or(usize::MAX)), bits)?;
+                    (within, None)
                 }
             };
             match inside {

@@ -120,17 +120,19 @@ impl Taylor {
         end.add(&Interval::symmetric(&primitive.slack), self.bits)
     }
 
-    /// An upper bound of the integral of |f| over the stretch: where the sign is not certain the stretch is halved, up to this often.
-    pub fn size_integral(&self, halvings: u32) -> Dyadic {
+    /// An upper bound of the integral of |f| over the stretch: where the sign is not certain the stretch is halved, each part
+    /// up to `halvings` times, and all together as often as `steps` allows (it is counted down).
+    pub fn size_integral(&self, halvings: u32, steps: &mut u32) -> Dyadic {
         if self.sign().is_some() {
             return self.integral().abs_hi();
         }
         let quarter = self.half_width.scale(-1);
-        if halvings == 0 {
+        if halvings == 0 || *steps == 0 {
             // SOUND(hi): the length times the greatest size, both from above, rounded up.
             return self.range().abs_hi().mul(&self.half_width.scale(1), self.bits, Up);
         }
-        let halves = [quarter.neg(), quarter].map(|middle| self.half_about(&middle).size_integral(halvings - 1));
+        *steps = steps.saturating_sub(1);
+        let halves = [quarter.neg(), quarter].map(|middle| self.half_about(&middle).size_integral(halvings - 1, steps));
         // SOUND(hi): a sum of upper bounds, rounded up.
         halves.iter().fold(Dyadic::zero(), |sum, half| sum.add(half, self.bits, Up))
     }
