@@ -1,0 +1,72 @@
+"""exponential.md: polynomials with exp of affine expressions."""
+
+from answer import Inconclusive
+from flint import arb, fmpq
+from model import add_to, degree
+from signs import sign_of
+from trace import Stretch
+
+import limits
+
+
+class Exponentials:
+    """Operations on p = sum of c_k exp(b_k)."""
+
+    @staticmethod
+    def parts(polynomial, expanded, arguments, outputs):
+        """(c_k, b_k), expanded, in order of first appearance of the exponents; None without exponentials."""
+        names = [name for _, of in polynomial for name, _ in of]
+        if not any(name in arguments for name in names):
+            return None
+        order = []
+        for _, of in polynomial:
+            key = tuple(sorted((name, k) for name, k in of if name in arguments))
+            if key not in order:
+                order.append(key)
+        found = []
+        for key in order:
+            coefficient, argument = {}, {}
+            for monomial, times in expanded.items():
+                own = tuple((name, k) for name, k in monomial if name in arguments)
+                if own == key:
+                    add_to(coefficient, tuple(pair for pair in monomial if pair[0] not in arguments), times)
+            for name, k in key:
+                for monomial, times in arguments[name].items():
+                    add_to(argument, monomial, k * times)
+            found.append((coefficient, argument))
+        return found
+
+    @staticmethod
+    def sign_at_start(problem, position):
+        """The sign at t = 0, or None."""
+        total = arb(0)
+        for c, b in problem.exponentials[position]:
+            total += arb(problem.functions[c].value_at_start()) * arb(problem.functions[b].value_at_start()).exp()
+        return sign_of(total)
+
+    @staticmethod
+    def on_stretch(problem, position, centre, half, order):
+        """An enclosure over a stretch of time."""
+        value, slope, h = arb(0), arb(0), arb(half)
+        for c, b in problem.exponentials[position]:
+            c, b = (Stretch(problem.functions[f], centre, half, order) for f in (c, b))
+            u, q = None, None
+            if h.is_zero():
+                value += c.enclosure() * b.enclosure().exp()
+                continue
+            if c.whole.is_zero() and b.whole.is_zero():
+                p, q = c.enclosure(1), b.enclosure(1)
+                u = (abs(q) * h).upper()
+            if u is None or not u <= 1:
+                value += c.enclosure() * b.enclosure().exp()
+                continue
+            start = c.coefficients[0]
+            scale = b.coefficients[0].exp()
+            growth = q * (1 - u / 2).union(1 + u)
+            value += start * scale
+            slope += scale * (p + growth * (start + symmetric(h) * p))
+        return value + symmetric(h) * slope
+
+
+def symmetric(h):
+    return arb(0, arb(h).upper())
