@@ -10,10 +10,14 @@ from signs import ALL, exact_sign, narrowed
 from trace import auxiliary, check_identity, trace
 
 
+# Any precision is sound; with a few bits more than the certificate names, rounding does not decide where that does.
+GUARD_BITS = 32
+
+
 class Problem:
     def __init__(self, statement, certificate):
         self.statement, self.certificate = statement, certificate
-        flint.ctx.prec = certificate.bits
+        flint.ctx.prec = certificate.bits + GUARD_BITS
         self.roots = Roots(certificate.families, certificate.bits)
         self.formula, self.polynomials = claimed_formula(statement)
         flow = Flow(statement)
