@@ -246,7 +246,7 @@ def read_region_evidence(value):
         function, row, exponent = fields(entry, ("function", "growth", "power"))
         return count(function), each(row, rational), count(exponent)
 
-    roots = each(roots, root_name)
+    roots = each(roots, count)
     return roots, rational(log_start), each(growths, growth), each(angles, angle), each(leads, lead), read_nodes(nodes, False)
 
 

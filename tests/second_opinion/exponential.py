@@ -1,39 +1,34 @@
 """exponential.md: polynomials with exp of affine expressions."""
 
-from answer import Inconclusive
-from flint import arb, fmpq
-from model import add_to, degree
+from flint import arb
+from model import add_to
 from signs import sign_of
 from trace import Stretch
-
-import limits
 
 
 class Exponentials:
     """Operations on p = sum of c_k exp(b_k)."""
 
     @staticmethod
-    def parts(polynomial, expanded, arguments, outputs):
-        """(c_k, b_k), expanded, in order of first appearance of the exponents; None without exponentials."""
-        names = [name for _, of in polynomial for name, _ in of]
-        if not any(name in arguments for name in names):
+    def parts(written, polynomial, arguments):
+        """(c_k, b_k) of a polynomial, as it is written and expanded, in the order of the exponents as lists; None without exponentials."""
+        order = {name: position for position, name in enumerate(arguments)}
+        coefficients = {}
+        for _, of in written:
+            coefficients[tuple(sorted((order[name], k) for name, k in of if name in order))] = {}
+        for monomial, times in polynomial.items():
+            key = tuple(sorted((order[name], k) for name, k in monomial if name in order))
+            rest = tuple(pair for pair in monomial if pair[0] not in order)
+            add_to(coefficients[key], rest, times)
+        if not any(coefficients):
             return None
-        order = []
-        for _, of in polynomial:
-            key = tuple(sorted((name, k) for name, k in of if name in arguments))
-            if key not in order:
-                order.append(key)
         found = []
-        for key in order:
-            coefficient, argument = {}, {}
-            for monomial, times in expanded.items():
-                own = tuple((name, k) for name, k in monomial if name in arguments)
-                if own == key:
-                    add_to(coefficient, tuple(pair for pair in monomial if pair[0] not in arguments), times)
-            for name, k in key:
-                for monomial, times in arguments[name].items():
+        for key in sorted(coefficients):
+            argument = {}
+            for position, k in key:
+                for monomial, times in list(arguments.values())[position].items():
                     add_to(argument, monomial, k * times)
-            found.append((coefficient, argument))
+            found.append((coefficients[key], argument))
         return found
 
     @staticmethod

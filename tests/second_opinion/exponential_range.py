@@ -1,6 +1,6 @@
 """exponential.md, large times: ranges of exponentials for all t >= t0. An end that is None is unbounded."""
 
-from answer import Refuted, ensure
+from answer import ensure
 from flint import arb
 
 
@@ -57,8 +57,7 @@ def range_of(far, position, centre, half):
     function = far.problem.functions[position]
     if function.is_zero:
         return arb(0), arb(0)
-    if position not in far.leads:
-        return None, None
+    ensure(position in far.leads, "SignOnLeaf", "a coefficient or an argument without a lead")
     lead = far.leads[position]
     v = lead.enclosure(centre, half)
     if lead.is_level and lead.power == 0:
@@ -68,6 +67,6 @@ def range_of(far, position, centre, half):
     if lead.rho < 0 and -lead.rho * t0 >= lead.power:
         low, high = v.lower() * first, v.upper() * first
         return low.min(arb(0)), high.max(arb(0))
-    if lead.is_level or lead.rho >= 0:
+    if lead.power >= 0 and (lead.is_level or lead.rho >= 0):
         return (v.lower() * first if v >= 0 else None), (v.upper() * first if v <= 0 else None)
     return None, None

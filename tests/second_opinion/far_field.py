@@ -27,9 +27,8 @@ class FarField:
             self.add_angle(angle)
         self.leads = {}
         for lead in far.leads:
-            self.problem.function_at(lead.function)
-            ensure(lead.function not in self.leads, "EvidenceFitsClaim", "two leads of a function")
-            self.leads[lead.function] = self.lead(lead)
+            found = self.lead(lead)
+            self.leads.setdefault(lead.function, found)
 
     def add_angle(self, angle):
         position, conjugate = angle.root
@@ -71,35 +70,32 @@ class FarField:
         function = self.problem.function_at(lead.function)
         if function is None:
             raise Refuted("EvidenceFitsClaim", "the lead of a polynomial with exponentials")
-        members = {root.position: (root, e) for root, e in function.members()}
-        for position in lead.roots:
-            self.roots.named(position)
-            ensure(position in members, "RealPartsAreEqual", "not a root of the function")
+        # A listed root that is no root of the function has no term there: multiplicity 0.
+        leading = [self.roots.named(position) for position in lead.roots]
+        multiplicities = {root.position: e for root, e in function.members()}
         ensure(lead.roots, "RealPartsAreEqual", "no leading root")
         self.check_equal(lead)
-        rho = members[lead.roots[0]][0].box.real
-        lowest = max((members[p][0].box.real.lower() for p in lead.roots), key=Key)
-        highest = min((members[p][0].box.real.upper() for p in lead.roots), key=Key)
-        power = max(members[p][1] for p in lead.roots) - 1
+        lowest = greatest(root.box.real.lower() for root in leading)
+        highest = -greatest(-root.box.real.upper() for root in leading)
+        power = max(multiplicities.get(root.position, 0) for root in leading) - 1
         t0 = arb(self.begin)
         waves, rest = [], arb(0)
         for root, closed in function.closed_form():
             weight = 1 if root.real else 2
-            leading = root.position in lead.roots
-            decide(leading or root.box.real < lowest, "LowerRealPartIsLess")
+            leads = root.position in lead.roots
+            decide(leads or root.box.real < lowest, "LowerRealPartIsLess")
             for j, c in enumerate(closed):
-                if leading and j == power:
+                if leads and j == power:
                     waves.append((weight * c, self.turns_of((root.position, False))))
-                elif leading:
+                elif leads:
                     rest += weight * abs(c) * t0 ** (j - power)
                 else:
                     gap = lowest - root.box.real
                     decide(gap * t0 >= j - power, "LowerTermDecreases")
                     rest += weight * abs(c) * t0 ** (j - power) * (-gap * t0).exp()
-        level = lead.line == 0 if lead.line is not None else False
-        family = self.roots.families[members[lead.roots[0]][0].family]
-        level = level or (len(lead.roots) == 1 and family.polynomial == fmpq_poly([0, 1]))
-        return Lead(power, arb(lowest).union(highest) if lowest <= highest else rho, level, waves, rest)
+        family = self.roots.families[leading[0].family]
+        level = family.polynomial == fmpq_poly([0, 1]) or (lead.line is not None and lead.line == 0)
+        return Lead(power, lowest.union(highest), level, waves, rest)
 
     def check_equal(self, lead):
         """Equal real parts, for a named reason."""
@@ -115,7 +111,7 @@ class FarField:
                 self.check_doubled(position, claim)
             ensure(all(self.roots.same(name, names[0]) for name in names), "RealPartsAreEqual", "another double")
         else:
-            ensure(len(set(lead.roots)) == 1, "RealPartsAreEqual", "no reason")
+            ensure(len(lead.roots) == 1, "RealPartsAreEqual", "no reason")
 
     def check_doubled(self, position, claim):
         if self.roots.named(position).real:
@@ -151,14 +147,10 @@ class FarField:
         return signs
 
 
-class Key:
-    """Order of exact balls."""
-
-    def __init__(self, value):
-        self.value = value
-
-    def __lt__(self, other):
-        return bool(self.value < other.value)
-
-    def __gt__(self, other):
-        return bool(self.value > other.value)
+def greatest(values):
+    """The greatest of exact balls."""
+    values = list(values)
+    found = values[0]
+    for value in values[1:]:
+        found = found.max(value)
+    return found

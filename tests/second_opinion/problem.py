@@ -23,7 +23,7 @@ class Problem:
         flow = Flow(statement)
         outputs = dict(statement.outputs)
         self.expanded = [expanded(polynomial, outputs) for polynomial in self.polynomials]
-        self.read_traces(flow, outputs)
+        self.read_traces(flow)
         self.functions += [auxiliary(self.roots, *entry) for entry in certificate.auxiliaries]
         for target, summands in certificate.identities:
             for of in [target] + [of for powers in summands for of, _ in powers]:
@@ -33,13 +33,13 @@ class Problem:
         for claim in certificate.sums:
             self.roots.check_sum(claim)
 
-    def read_traces(self, flow, outputs):
+    def read_traces(self, flow):
         """Traces of the polynomials; of coefficients and arguments of those with exponentials; of the states of a region."""
         statement = self.statement
         arguments = {name: affine_polynomial(affine) for name, affine in statement.exponentials}
         wanted, self.exponentials, terms = [], {}, []
         for position, polynomial in enumerate(self.expanded):
-            parts = Exponentials.parts(self.polynomials[position], polynomial, arguments, outputs)
+            parts = Exponentials.parts(self.polynomials[position], polynomial, arguments)
             if parts is None:
                 wanted.append(polynomial)
             else:

@@ -37,7 +37,8 @@ class Region:
     def __init__(self, problem):
         self.problem, self.roots = problem, problem.roots
         self.claim = problem.statement.claim[1]
-        self.names, self.log_start = problem.certificate.evidence[:2]
+        places, self.log_start = problem.certificate.evidence[:2]
+        self.names = [(position, False) for position in places]
         ensure(len(self.names) == len(self.claim.roots), "EvidenceFitsClaim", "a root for each named one")
         for name in self.names:
             self.roots.named(name)

@@ -5,7 +5,7 @@ from typing import Any, NamedTuple
 
 from answer import Malformed, NotCovered
 from flint import fmpq
-from reading import each, fields, positive, rational, text, truth, variant
+from reading import each, fields, integer, positive, rational, text, truth, variant
 from reading import count as position
 
 import limits
@@ -270,8 +270,6 @@ def read_region(value):
 
     def exponent(entry):
         of, growth, turns = fields(entry, ("root", "growth", "turns"))
-        from reading import integer
-
         return position(of), each(growth, rational), each(turns, integer)
 
     roots = each(roots, root)
@@ -295,8 +293,10 @@ def pair(value):
 
 
 def read_monic(value):
-    """Coefficients, constant term first, the last one 1."""
+    """Coefficients, constant term first, the last one other than 0 is 1."""
     coefficients = each(value, rational)
+    while coefficients and coefficients[-1] == 0:
+        coefficients = coefficients[:-1]
     limits.at_most(len(coefficients) - 1, limits.ROOTS, "roots")
     if len(coefficients) < 2 or coefficients[-1] != 1:
         raise Malformed("a monic polynomial of degree >= 1")
