@@ -58,12 +58,15 @@ pub(crate) fn conjunctions(formula: &Formula, position: &dyn Fn(&Atom) -> usize)
     (all.len() <= MAX_CONJUNCTIONS).then_some(all)
 }
 
+/// Shares of trajectories, each the worst for the mean with these weights.
+pub(crate) type Mixture = Vec<(f64, Vec<f64>)>;
+
 /// What is known of a conjunction.
 pub(crate) enum Separation {
     /// At each instant one of these means is negative: the weights of the half-spaces.
     Apart(Vec<Vec<Rational>>),
     /// A mixture of trajectories, each the worst of a mean, is in all half-spaces at an instant.
-    Meets { at: f64, mixture: Vec<(f64, Vec<f64>)> },
+    Meets { at: f64, mixture: Mixture },
     /// Too near to tell.
     Unclear,
 }
@@ -86,6 +89,14 @@ struct Mean {
     along: Scan,
 }
 
+/// What a game says of an instant: the least mean is between two numbers.
+struct Played {
+    upper: f64,
+    mean: Mean,
+    lower: f64,
+    mixture: Mixture,
+}
+
 impl<'a> Conjunction<'a> {
     pub(crate) fn new(scan: &'a Scan, parts: Vec<usize>, sizes: &'a [f64], from: f64) -> Self {
         let scale = |part: &usize| scan.samples.iter().fold(0.0_f64, |s, sample| s.max(sample.values[*part].abs()));
@@ -105,10 +116,11 @@ impl<'a> Conjunction<'a> {
             let Some(rest) = effort.checked_sub(10) else { return Separation::Unclear };
             *effort = rest;
             let at = if at.is_finite() { at } else { self.scan.samples.last().map_or(0.0, |s| s.t) };
-            let Some((mean, least, mixture)) = self.at_instant(at) else { return Separation::Unclear };
-            if least > NEAR {
-                return Separation::Meets { at, mixture };
+            let Some(played) = self.at_instant(at) else { return Separation::Unclear };
+            if played.lower > NEAR {
+                return Separation::Meets { at, mixture: played.mixture };
             }
+            let mean = played.mean;
             // The same again: nothing is gained.
             let is_new = mean.along.value_at(0, at) < worst - 1e-3 * worst.abs() - 1e-12;
             if !is_new {
@@ -164,43 +176,42 @@ impl<'a> Conjunction<'a> {
         best
     }
 
-    /// The mean that is least at an instant, a number below which none is there, and the mixture of trajectories that shows it.
-    fn at_instant(&self, t: f64) -> Option<(Mean, f64, Vec<(f64, Vec<f64>)>)> {
+    /// The mean that is nearly least at an instant, and a mixture of trajectories that shows how small it can be at most.
+    fn at_instant(&self, t: f64) -> Option<Played> {
         let count = self.parts.len();
         let mut mean = self.mean(vec![1.0 / count as f64; count]);
         let mut rows: Vec<Vec<f64>> = Vec::new();
-        let mut played: Vec<Vec<f64>> = Vec::new();
-        let mut found: Option<(f64, f64, Vec<(f64, Vec<f64>)>, Mean)> = None;
+        let mut weights: Vec<Vec<f64>> = Vec::new();
+        let mut best: Option<Played> = None;
         for _ in 0..MAX_ROUNDS {
             let upper = mean.along.value_at(0, t);
             rows.push(self.values_of_worst(&mean, t));
-            played.push(mean.weights.clone());
+            weights.push(mean.weights.clone());
             let solution = game::solve(&rows)?;
-            let against = |i: usize| rows.iter().zip(&solution.rows).map(|(row, w)| row[i] * w).sum::<f64>();
-            let lower = (0..count).map(against).fold(f64::INFINITY, f64::min);
-            let mixture = || {
-                let pairs = solution.rows.iter().zip(&played).filter(|(w, _)| **w > 0.0);
-                pairs.map(|(w, weights)| (*w, weights.clone())).collect::<Vec<_>>()
-            };
-            let (best_upper, best_lower) = found.as_ref().map_or((f64::INFINITY, f64::NEG_INFINITY), |f| (f.0, f.1));
             let next = self.mean(solution.columns.clone());
             let tried = std::mem::replace(&mut mean, next);
-            if found.is_none() || upper < best_upper || lower > best_lower {
-                let (kept_mixture, kept_mean) = match found.take() {
-                    Some((_, _, m, old)) => {
-                        (if lower > best_lower { mixture() } else { m }, if upper < best_upper { tried } else { old })
-                    }
-                    None => (mixture(), tried),
-                };
-                found = Some((upper.min(best_upper), lower.max(best_lower), kept_mixture, kept_mean));
+            let known = best.get_or_insert_with(|| Played {
+                upper: f64::INFINITY,
+                mean: self.mean(tried.weights.clone()),
+                lower: f64::NEG_INFINITY,
+                mixture: Vec::new(),
+            });
+            if upper < known.upper {
+                (known.upper, known.mean) = (upper, tried);
             }
-            let (upper, lower) = (upper.min(best_upper), lower.max(best_lower));
+            let against = |i: usize| rows.iter().zip(&solution.rows).map(|(row, w)| row[i] * w).sum::<f64>();
+            let lower = (0..count).map(against).fold(f64::INFINITY, f64::min);
+            if lower > known.lower {
+                let pairs = solution.rows.iter().zip(&weights).filter(|(w, _)| **w > 0.0);
+                (known.lower, known.mixture) = (lower, pairs.map(|(w, mean)| (*w, mean.clone())).collect());
+            }
             // Near enough: the sign is clear, and a tenth of the size is not to be had.
-            if upper - lower <= (0.1 * upper.abs().min(lower.abs())).max(1e-12) {
+            let near = 0.1 * known.upper.abs().min(known.lower.abs());
+            if known.upper - known.lower <= near.max(1e-12) {
                 break;
             }
         }
-        found.map(|(_, lower, mixture, mean)| (mean, lower, mixture))
+        best
     }
 
     /// The values of the scaled functions at an instant along the trajectory that is the worst for a mean there.
