@@ -196,3 +196,38 @@ fn overshoot_with_uncertain_damping() {
         assert_eq!(word(&uncertain_damping(limit)), verdict, "{limit}");
     }
 }
+
+fn both(first: Formula, second: Formula) -> Formula {
+    Formula::And(vec![first, second])
+}
+
+#[test]
+fn conjunctions_that_no_half_space_decides() {
+    // x' = -x + d, y' = -y - d: each comes near to 1, and x + y = 0.
+    let pair = |a: &str, b: &str| {
+        let inside = both(half_space(&["1", "0"], a), half_space(&["0", "1"], b));
+        statement(&[&["-1", "0"], &["0", "-1"]], &["0", "0"], &[&["1", "-1"]], &["0", "0"], inside)
+    };
+    assert_eq!(word(&pair("-0.1", "-0.1")), "clear");
+    assert_eq!(word(&pair("-0.000001", "0")), "clear");
+    // x >= -0.5 and y >= 0.4 late: by a signal between its bounds.
+    let mut s = pair("0.5", "-0.4");
+    s.zone.from = q("20");
+    assert_eq!(word(&s), "enters");
+    s.zone.until = Some(q("21"));
+    assert_eq!(word(&s), "enters");
+    let mut s = pair("0.39", "-0.4");
+    s.zone.from = q("20");
+    assert_eq!(word(&s), "clear");
+}
+
+#[test]
+fn conjunctions_of_position_and_speed() {
+    // y >= a and y' >= a in s^2 + 1.2 s + 1: the greatest a is the least L1 norm of means of the two responses.
+    // 0.70362689382903..., at 0.43782080 and 0.56217920 (golden section on closed forms of the integrals between zeros, mpmath).
+    for (a, verdict) in [("-0.71", "clear"), ("-0.7036270", "clear"), ("-0.7036268", "enters"), ("-0.6", "enters")] {
+        let mut s = filter(&["1", "1.2"], "1");
+        s.zone.inside = both(half_space(&["1", "0"], a), half_space(&["0", "1"], a));
+        assert_eq!(word(&s), verdict, "{a}");
+    }
+}

@@ -35,6 +35,26 @@ impl ApproxForm {
         Self { terms: form.terms.iter().map(term).collect() }
     }
 
+    /// A sum of multiples of forms.
+    fn mixed(weighted: &[(f64, &Self)]) -> Self {
+        let mut terms: Vec<ApproxTerm> = Vec::new();
+        for (weight, term) in weighted.iter().flat_map(|(w, form)| form.terms.iter().map(move |t| (w, t))) {
+            let scaled = term.coefficients.iter().map(|(a, b)| (weight * a, weight * b));
+            // Forms over the same certified roots have the same numbers.
+            match terms.iter_mut().find(|t| t.rho == term.rho && t.omega == term.omega) {
+                Some(known) => {
+                    let length = known.coefficients.len().max(term.coefficients.len());
+                    known.coefficients.resize(length, (0.0, 0.0));
+                    known.coefficients.iter_mut().zip(scaled).for_each(|(c, (a, b))| *c = (c.0 + a, c.1 + b));
+                }
+                None => {
+                    terms.push(ApproxTerm { rho: term.rho, omega: term.omega, coefficients: scaled.collect() });
+                }
+            }
+        }
+        Self { terms }
+    }
+
     pub(crate) fn value(&self, t: f64) -> f64 {
         self.terms.iter().map(|term| term.value(t)).sum()
     }
@@ -117,6 +137,21 @@ impl ApproxSupport {
         }
     }
 
+    /// The support function of a sum of multiples, with factors that are not negative, of functions with these.
+    pub(crate) fn mixed(weighted: &[(f64, &Self)]) -> Self {
+        let of = |pick: &dyn Fn(&'_ Self) -> &'_ ApproxForm| {
+            let forms: Vec<(f64, &ApproxForm)> = weighted.iter().map(|(w, s)| (*w, pick(s))).collect();
+            ApproxForm::mixed(&forms)
+        };
+        let (starts, signals) = weighted.first().map_or((0, 0), |(_, s)| (s.responses.len(), s.signals.len()));
+        Self {
+            central: of(&|s| &s.central),
+            responses: (0..starts).map(|j| of(&|s| &s.responses[j])).collect(),
+            signals: (0..signals).map(|k| of(&|s| &s.signals[k])).collect(),
+            direct: weighted.iter().map(|(w, s)| w * s.direct).sum(),
+        }
+    }
+
     pub(crate) fn all(&self) -> impl Iterator<Item = &ApproxForm> {
         std::iter::once(&self.central).chain(&self.responses).chain(&self.signals)
     }
@@ -136,6 +171,21 @@ pub(crate) fn combined(shape: &Shape, values: impl Iterator<Item = f64>) -> f64 
         Shape::Ellipsoid(weights) => {
             let weighted = values.zip(weights).map(|(f, d)| crate::enclosure::approx_value(d) * f * f);
             weighted.sum::<f64>().sqrt()
+        }
+    }
+}
+
+/// The factors of the starts' vectors in the start that makes the sum of the responses with these values greatest.
+pub(crate) fn worst_factors(shape: &Shape, values: &[f64]) -> Vec<f64> {
+    match shape {
+        Shape::Sum => values.iter().map(|x| if *x >= 0.0 { 1.0 } else { -1.0 }).collect(),
+        Shape::Hull => {
+            let best = (0..values.len()).max_by(|a, b| values[*a].total_cmp(&values[*b])).filter(|i| values[*i] > 0.0);
+            (0..values.len()).map(|i| if best == Some(i) { 1.0 } else { 0.0 }).collect()
+        }
+        Shape::Ellipsoid(weights) => {
+            let norm = combined(shape, values.iter().copied()).max(1e-300);
+            values.iter().zip(weights).map(|(f, d)| crate::enclosure::approx_value(d) * f / norm).collect()
         }
     }
 }

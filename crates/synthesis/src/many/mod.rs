@@ -4,6 +4,8 @@
 //! by a worst trajectory, and accepted by the checker before it is returned.
 
 mod approx;
+mod conjunction;
+mod game;
 mod plan;
 mod prove;
 mod scan;
@@ -12,6 +14,7 @@ mod witness;
 use crate::enclosure::approx_value;
 use crate::options::Options;
 use crate::outcome::{Error, Margin, Outcome, Place, Proof, Reason};
+use conjunction::{Conjunction, Half, Separation, conjunctions};
 use keepout_checker::certificate::{Certificate, Evidence};
 use keepout_checker::formula::{IndexedFormula, claimed_formula};
 use keepout_checker::many::{Division, Functional, Ranges};
@@ -84,12 +87,25 @@ struct Analysis {
     bounds: Vec<Rational>,
     /// How far the zone is from being reached, and when it is nearest (infinity: in the limit).
     nearest: (f64, f64),
+    functionals: Vec<Functional>,
+}
+
+/// What the games of the conjunctions say of a piece.
+enum Separated {
+    Apart(Box<Analysis>),
+    Meets(Box<Certificate>),
+    Unclear,
 }
 
 struct Search<'a> {
     statement: Statement,
     formula: IndexedFormula,
+    /// The zone as a disjunction of conjunctions of half-spaces.
+    conjunctions: Vec<Vec<Half>>,
+    /// For each half-space its function.
     functionals: Vec<Functional>,
+    /// Means that have been of use.
+    means: Vec<Functional>,
     options: &'a Options,
     effort: u64,
     supremum: Option<(f64, f64)>,
@@ -116,7 +132,21 @@ impl<'a> Search<'a> {
                 }
             }
         });
-        Self { statement, formula, functionals, options, effort: options.effort, supremum: None, looks_at_all: false }
+        let position = |atom: &Atom| formula.polynomials.iter().position(|p| *p == atom.polynomial).unwrap_or(0);
+        // Too many: each atom alone, as if all had to be refuted.
+        let alone = || functionals.iter().map(|f| f.polynomials.iter().map(|(p, w)| (*p, w.is_positive())).collect());
+        let conjunctions = conjunctions(&claimed, &position).unwrap_or_else(|| alone().collect());
+        Self {
+            statement,
+            formula,
+            conjunctions,
+            functionals,
+            means: Vec::new(),
+            options,
+            effort: options.effort,
+            supremum: None,
+            looks_at_all: false,
+        }
     }
 
     fn settle(&mut self) -> Verdict {
@@ -135,10 +165,17 @@ impl<'a> Search<'a> {
         let mut divisions = Vec::new();
         let mut open: Vec<Ranges> = vec![whole(&self.statement)];
         while let Some(ranges) = open.pop() {
-            let analysis = match self.analyse(&ranges, bits) {
+            let mut analysis = match self.analyse(&ranges, &self.functionals, bits) {
                 Ok(analysis) => analysis,
                 Err(reason) => return Verdict::Open(*reason),
             };
+            if analysis.nearest.0 >= -1e-9 * analysis.scan.scale && self.conjunctions.iter().any(|c| c.len() > 1) {
+                match self.separated(&ranges, &analysis, bits) {
+                    Separated::Apart(better) => analysis = *better,
+                    Separated::Meets(certificate) => return Verdict::Enters(certificate),
+                    Separated::Unclear => {}
+                }
+            }
             let (distance, at) = analysis.nearest;
             if distance >= -1e-9 * analysis.scan.scale
                 && let Some(certificate) = self.entry(&ranges, &analysis, bits)
@@ -206,15 +243,90 @@ impl<'a> Search<'a> {
         Some((axis, ranges[axis].centre()))
     }
 
-    fn analyse(&self, ranges: &Ranges, bits: u32) -> Result<Analysis, Box<Reason>> {
+    /// Means of half-spaces' functions where these alone do not show a conjunction to be false; or a mixture of trajectories.
+    fn separated(&mut self, ranges: &Ranges, analysis: &Analysis, bits: u32) -> Separated {
+        if !self.means.is_empty() {
+            let all: Vec<Functional> = self.functionals.iter().chain(&self.means).cloned().collect();
+            if let Ok(better) = self.analyse(ranges, &all, bits)
+                && better.nearest.0 < -1e-9 * better.scan.scale
+            {
+                return Separated::Apart(Box::new(better));
+            }
+        }
+        let from = approx_value(&self.statement.zone.from);
+        let forms = analysis.plan.forms();
+        let mut wanted: Vec<Functional> = Vec::new();
+        for conjunction in self.conjunctions.clone() {
+            let one = |half: &Half| Functional { polynomials: vec![(half.0, signed(half.1))], variables: Vec::new() };
+            let find = |half: &Half| self.functionals.iter().position(|f| *f == one(half)).map(|i| forms + i);
+            let Some(parts) = conjunction.iter().map(find).collect::<Option<Vec<usize>>>() else {
+                return Separated::Unclear;
+            };
+            let game = Conjunction::new(&analysis.scan, parts.clone(), &analysis.scan.sizes, from);
+            match game.separate(&mut self.effort) {
+                Separation::Apart(means) => wanted.extend(means.iter().map(|w| mean(&conjunction, w))),
+                Separation::Meets { at, mixture } if analysis.plan.groups.is_empty() => {
+                    return self.met(ranges, analysis, (&game, at, &mixture), bits);
+                }
+                Separation::Meets { .. } | Separation::Unclear => {
+                    // What uncertain terms may add is not known to be in reach: without it.
+                    let mut sizes = analysis.scan.sizes.clone();
+                    let first = sizes.len() - analysis.plan.groups.len();
+                    sizes[first..].fill(0.0);
+                    let game = Conjunction::new(&analysis.scan, parts, &sizes, from);
+                    if let (false, Separation::Meets { at, mixture }) =
+                        (analysis.plan.groups.is_empty(), game.separate(&mut self.effort))
+                    {
+                        return self.met(ranges, analysis, (&game, at, &mixture), bits);
+                    }
+                    return Separated::Unclear;
+                }
+            }
+        }
+        wanted.dedup();
+        let Ok(better) = self.analyse(ranges, &wanted, bits) else { return Separated::Unclear };
+        self.means.extend(wanted.into_iter().filter(|f| f.polynomials.len() > 1));
+        Separated::Apart(Box::new(better))
+    }
+
+    /// The certificate of a mixture of trajectories, each the worst of a mean at an instant.
+    fn met(
+        &self,
+        ranges: &Ranges,
+        analysis: &Analysis,
+        (game, at, mixture): (&Conjunction, f64, &[(f64, Vec<f64>)]),
+        bits: u32,
+    ) -> Separated {
+        let values: Vec<Rational> = ranges[..self.statement.uncertain.len()].iter().map(|r| r.centre()).collect();
+        let mut at = witness::instant(at, if at > 0.0 { at * 1e-9 } else { 1.0 }).max(self.statement.zone.from.clone());
+        if let Some(until) = &self.statement.zone.until {
+            at = at.min(until.clone());
+        }
+        let weights: Vec<Rational> = mixture.iter().map(|(w, _)| rounded_near(*w)).collect();
+        let total: Rational = weights.iter().sum();
+        let one = |(weight, (_, mean)): (Rational, &(f64, Vec<f64>))| {
+            let along = game.along(mean);
+            let choice = witness::worst(&analysis.plan, &along, 0, &at, &self.statement, values.clone());
+            (weight / &total, choice)
+        };
+        let choices: Vec<(Rational, witness::Choice)> = weights.into_iter().zip(mixture).map(one).collect();
+        let zone = IndexedFormula::new(&self.statement.zone.inside);
+        let limits = &self.options.limits;
+        let certificate = witness::blended(&choices)
+            .and_then(|choice| witness::certificate(&choice, &self.statement, &zone, bits, limits))
+            .filter(|c| keepout_checker::check(&c.statement, c, limits).is_ok());
+        certificate.map_or(Separated::Unclear, |c| Separated::Meets(Box::new(c)))
+    }
+
+    fn analyse(&self, ranges: &Ranges, functionals: &[Functional], bits: u32) -> Result<Analysis, Box<Reason>> {
         let no_plan = |fault: NoPlan| match fault {
             NoPlan::Rejected(rejection) => Box::new(Reason::Limit(rejection)),
             NoPlan::NotAffine => Box::new(Reason::NotAffine),
         };
         let limits = &self.options.limits;
         let polynomials = &self.formula.polynomials;
-        let mut plan = Plan::new(&self.statement, ranges, &self.functionals, polynomials, (bits, false), limits)
-            .map_err(no_plan)?;
+        let mut plan =
+            Plan::new(&self.statement, ranges, functionals, polynomials, (bits, false), limits).map_err(no_plan)?;
         let first = plan.inputs.signals.len() - plan.groups.len();
         let mut sizes: Vec<f64> = plan.inputs.signals.iter().map(|(_, w)| approx_value(w)).collect();
         for (k, group) in plan.groups.iter().enumerate() {
@@ -227,8 +339,9 @@ impl<'a> Search<'a> {
         let from = approx_value(&self.statement.zone.from);
         let until = self.statement.zone.until.as_ref().map(approx_value);
         let forms = plan.forms();
+        let looks_at_all = self.looks_at_all || self.conjunctions.iter().any(|c| c.len() > 1);
         let mut scan = Scan::new(&plan, sizes.clone(), until, |sample| {
-            !self.looks_at_all && forms == 0 && sample.t >= from && self.inside(&|i| sample.values[i]) > 0.0
+            !looks_at_all && forms == 0 && sample.t >= from && self.inside(functionals, &|i| sample.values[i]) > 0.0
         });
         let mut bounds = Vec::new();
         if forms > 0 {
@@ -266,34 +379,35 @@ impl<'a> Search<'a> {
                 scan.renew();
             }
         }
-        let nearest = self.nearest(&scan, forms, from);
-        Ok(Analysis { plan, scan, bounds, nearest })
+        let nearest = self.nearest(&scan, functionals, forms, from);
+        Ok(Analysis { plan, scan, bounds, nearest, functionals: functionals.to_vec() })
     }
 
-    /// How far inside the zone the largest value at an instant is: positive inside, for one-sided zones exactly.
-    fn inside(&self, value: &dyn Fn(usize) -> f64) -> f64 {
-        let claimed = claimed_formula(&self.statement).unwrap_or_else(|| self.statement.zone.inside.clone());
-        depth(&claimed, &|atom| {
-            let position = self.formula.polynomials.iter().position(|p| *p == atom.polynomial).unwrap_or(0);
-            let weights = orientations(atom.relation);
-            let find = |w: &Rational| self.functionals.iter().position(|f| f.polynomials[0] == (position, w.clone()));
-            weights.iter().filter_map(find).map(value).fold(f64::INFINITY, f64::min)
-        })
+    /// How far inside the zone the largest value at an instant is, by the given functions: an upper bound.
+    fn inside(&self, functionals: &[Functional], value: &dyn Fn(usize) -> f64) -> f64 {
+        let speaks_of = |functional: &Functional, conjunction: &[Half]| {
+            functional.polynomials.iter().all(|(position, w)| conjunction.contains(&(*position, w.is_positive())))
+        };
+        let least = |conjunction: &Vec<Half>| {
+            let listed = functionals.iter().enumerate().filter(|(_, f)| speaks_of(f, conjunction));
+            listed.map(|(i, _)| value(i)).fold(f64::INFINITY, f64::min)
+        };
+        self.conjunctions.iter().map(least).fold(f64::NEG_INFINITY, f64::max)
     }
 
-    fn nearest(&self, scan: &Scan, forms: usize, from: f64) -> (f64, f64) {
-        if let [_] = self.functionals.as_slice() {
+    fn nearest(&self, scan: &Scan, functionals: &[Functional], forms: usize, from: f64) -> (f64, f64) {
+        if let [_] = functionals {
             return scan.supremum(forms, from);
         }
         let mut best = (f64::NEG_INFINITY, from);
         for sample in scan.samples.iter().filter(|s| s.t >= from) {
-            let here = self.inside(&|i| sample.values[forms + i]);
+            let here = self.inside(functionals, &|i| sample.values[forms + i]);
             if here > best.0 {
                 best = (here, sample.t);
             }
         }
         if scan.limits.iter().skip(forms).all(Option::is_some) && !scan.limits.is_empty() {
-            let late = self.inside(&|i| scan.limits[forms + i].unwrap_or(f64::INFINITY));
+            let late = self.inside(functionals, &|i| scan.limits[forms + i].unwrap_or(f64::INFINITY));
             if late > best.0 {
                 best = (late, f64::INFINITY);
             }
@@ -304,7 +418,7 @@ impl<'a> Search<'a> {
             for i in -16_i32..=16 {
                 let t = best.1 + step * f64::from(i) / 16.0;
                 if t >= from && self.statement.zone.until.as_ref().is_none_or(|u| t <= approx_value(u)) {
-                    let here = self.inside(&|k| scan.value_at(forms + k, t));
+                    let here = self.inside(functionals, &|k| scan.value_at(forms + k, t));
                     if here > best.0 {
                         best = (here, t);
                     }
@@ -345,7 +459,7 @@ impl<'a> Search<'a> {
         // The instants that are farthest inside.
         let mut inside: Vec<(f64, f64)> = (analysis.scan.samples.iter())
             .filter(|s| s.t >= from)
-            .map(|s| (self.inside(&|i| s.values[forms + i]), s.t))
+            .map(|s| (self.inside(&analysis.functionals, &|i| s.values[forms + i]), s.t))
             .filter(|(depth, _)| *depth > 0.0)
             .collect();
         inside.sort_by(|a, b| b.0.total_cmp(&a.0));
@@ -357,7 +471,7 @@ impl<'a> Search<'a> {
             if let Some(until) = until {
                 at = at.min(until.clone());
             }
-            for index in 0..self.functionals.len() {
+            for index in 0..analysis.functionals.len() {
                 let choice =
                     witness::worst(&analysis.plan, &analysis.scan, forms + index, &at, &self.statement, values.clone());
                 let zone = IndexedFormula::new(&self.statement.zone.inside);
@@ -426,7 +540,7 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
     let sign = if upward { Rational::one() } else { -Rational::one() };
     let mut search = Search::new(&about(&Rational::zero(), false), options);
     search.looks_at_all = true;
-    let analysis = match search.analyse(&whole(statement), PRECISIONS[0]) {
+    let analysis = match search.analyse(&whole(statement), &search.functionals, PRECISIONS[0]) {
         Ok(analysis) => analysis,
         Err(reason) => {
             peak.reason = Some(match *reason {
@@ -509,7 +623,7 @@ fn refine_uncertain(
             range.to = value;
         }
         let search = Search::new(&about(&Rational::zero(), false), options);
-        if let Ok(analysis) = search.analyse(&point, PRECISIONS[0]) {
+        if let Ok(analysis) = search.analyse(&point, &search.functionals, PRECISIONS[0]) {
             best = best.max(analysis.nearest.0);
         }
     }
@@ -552,10 +666,21 @@ fn orientations(relation: Relation) -> Vec<Rational> {
     }
 }
 
-fn depth(formula: &Formula, value: &dyn Fn(&Atom) -> f64) -> f64 {
-    match formula {
-        Formula::Atom(atom) => value(atom),
-        Formula::And(parts) => parts.iter().map(|p| depth(p, value)).fold(f64::INFINITY, f64::min),
-        Formula::Or(parts) => parts.iter().map(|p| depth(p, value)).fold(f64::NEG_INFINITY, f64::max),
+fn signed(positive: bool) -> Rational {
+    if positive { Rational::one() } else { -Rational::one() }
+}
+
+/// The mean of half-spaces' functions with these weights.
+fn mean(conjunction: &[Half], weights: &[Rational]) -> Functional {
+    let mut polynomials: Vec<(usize, Rational)> = Vec::new();
+    for ((position, positive), weight) in conjunction.iter().zip(weights).filter(|(_, w)| !w.is_zero()) {
+        let weight = weight * signed(*positive);
+        match polynomials.iter_mut().find(|(p, _)| p == position) {
+            Some((_, known)) => *known += weight,
+            None => polynomials.push((*position, weight)),
+        }
     }
+    polynomials.retain(|(_, w)| !w.is_zero());
+    polynomials.sort_by_key(|(position, _)| *position);
+    Functional { polynomials, variables: Vec::new() }
 }

@@ -1,6 +1,6 @@
 //! Support functions along time in floating point: where they are greatest, and where the responses change their signs.
 
-use super::approx::ApproxSupport;
+use super::approx::{ApproxForm, ApproxSupport};
 use super::plan::Plan;
 use keepout_checker::support::Shape;
 
@@ -90,6 +90,50 @@ impl Scan {
         if until.is_none() && settled {
             self.limits = (0..self.supports.len()).map(|i| self.limit(i)).collect();
         }
+    }
+
+    /// Another support function at the same instants.
+    pub(crate) fn along(&self, support: ApproxSupport, sizes: Vec<f64>) -> Self {
+        let signals = support.signals.len();
+        let mut scan = Self {
+            supports: vec![support],
+            shape: self.shape.clone(),
+            sizes,
+            samples: Vec::new(),
+            crossings: vec![vec![Vec::new(); signals]],
+            limits: vec![None],
+            scale: 0.0,
+            marginal: self.marginal,
+        };
+        for sample in &self.samples {
+            let next = if scan.samples.is_empty() {
+                scan.sample(sample.t, vec![vec![0.0; signals]])
+            } else {
+                scan.advance(sample.t)
+            };
+            scan.grow_scale(&next);
+            scan.samples.push(next);
+        }
+        if self.limits.iter().any(Option::is_some) {
+            scan.limits = vec![scan.limit(0)];
+        }
+        scan
+    }
+
+    /// The integral up to an instant of another function against the sign of a signal's response.
+    pub(crate) fn integral_against(&self, index: usize, signal: usize, other: &ApproxForm, to: f64) -> f64 {
+        let form = &self.supports[index].signals[signal];
+        let crossings = &self.crossings[index][signal];
+        let mut ends: Vec<f64> = self.samples.iter().map(|s| s.t).chain(crossings.iter().copied()).collect();
+        ends.retain(|t| *t < to);
+        ends.push(to);
+        ends.sort_by(f64::total_cmp);
+        let f = |t: f64| other.value(t);
+        let one = |w: &[f64]| {
+            let sign = if form.value((w[0] + w[1]) / 2.0) >= 0.0 { 1.0 } else { -1.0 };
+            sign * gauss(&f, w[0], w[1])
+        };
+        ends.windows(2).map(one).sum()
     }
 
     /// Values and limits for new sizes of the signals.

@@ -177,3 +177,28 @@ fn needed(statement: &Statement, formula: &IndexedFormula) -> Vec<Functional> {
 pub(crate) fn instant(t: f64, grain: f64) -> Rational {
     super::prove::rounded(t, grain.max(t.abs() * 1e-15)).max(Rational::zero())
 }
+
+/// The mixture of trajectories up to the same instant, with weights of sum 1.
+pub(crate) fn blended(choices: &[(Rational, Choice)]) -> Option<Choice> {
+    let (_, first) = choices.first()?;
+    let sum = |vector: &dyn Fn(&Choice) -> &Vec<Rational>| -> Vec<Rational> {
+        let entry = |i: usize| choices.iter().map(|(w, c)| w * &vector(c)[i]).sum();
+        (0..vector(first).len()).map(entry).collect()
+    };
+    let signal = |k: usize| {
+        let mut ends: BTreeSet<&Rational> = BTreeSet::new();
+        ends.extend(choices.iter().flat_map(|(_, c)| c.signals[k].iter().map(|(until, _)| until)));
+        let level = |end: &Rational| {
+            let own = |c: &Choice| c.signals[k].iter().find(|(until, _)| until >= end).map(|(_, level)| level.clone());
+            choices.iter().filter_map(|(w, c)| own(c).map(|level| w * level)).sum::<Rational>()
+        };
+        ends.into_iter().map(|end| (end.clone(), level(end))).collect()
+    };
+    Some(Choice {
+        at: first.at.clone(),
+        start: sum(&|c| &c.start),
+        weights: sum(&|c| &c.weights),
+        uncertain: first.uncertain.clone(),
+        signals: (0..first.signals.len()).map(signal).collect(),
+    })
+}
