@@ -21,7 +21,7 @@ class Cell(NamedTuple):
     to: Any
     order: int
     signs: tuple
-    start: tuple
+    start: Any
     pivot: Any
 
 
@@ -47,7 +47,7 @@ class Leaf(NamedTuple):
 class Combination(NamedTuple):
     """The real or imaginary part of a root as a row of base ones, and why."""
 
-    root: tuple
+    root: int
     row: tuple
     line: Any
     sum: Any
@@ -150,8 +150,8 @@ def read_cell(value):
     to, order, signs, start, pivot = fields(value, ("to", "order", "signs"), ("start", "pivot"))
     order = positive(order)
     limits.at_most(order, limits.ORDER, "order")
-    start = () if start is None else each(start, read_start)
-    if start and pivot is not None:
+    start = optional(start, lambda v: each(v, read_start))
+    if start is not None and pivot is not None:
         raise Malformed("start or pivot, not both")
     return Cell(rational(to), order, each(signs, signed), start, optional(pivot, count))
 
@@ -172,7 +172,7 @@ def read_far(value):
 
     def angle(entry):
         root, turns, reason = fields(entry, ("root", "turns"), ("sum",))
-        return Combination(root_name(root), each(turns, multiplier), None, optional(reason, count))
+        return Combination(count(root), each(turns, multiplier), None, optional(reason, count))
 
     def lead(entry):
         function, roots, line, doubled = fields(entry, ("function", "roots"), ("line", "doubled"))
@@ -236,11 +236,11 @@ def read_region_evidence(value):
         root, row, line, reason = fields(entry, ("root", "row"), ("line", "sum"))
         if line is not None and reason is not None:
             raise Malformed("line or sum, not both")
-        return Combination(root_name(root), each(row, rational), optional(line, rational), optional(reason, count))
+        return Combination(count(root), each(row, rational), optional(line, rational), optional(reason, count))
 
     def angle(entry):
         root, row, reason = fields(entry, ("root", "row"), ("sum",))
-        return Combination(root_name(root), each(row, rational), None, optional(reason, count))
+        return Combination(count(root), each(row, rational), None, optional(reason, count))
 
     def lead(entry):
         function, row, exponent = fields(entry, ("function", "growth", "power"))

@@ -26,7 +26,7 @@ def check_instant(problem, start, cell):
         return truth(problem.formula, problem.narrowed(signs)) is True
 
     signs = listed_signs(problem, start, cell)
-    if cell.start:
+    if cell.start is not None:
         later = later_signs(problem, signs, start, cell)
         ensure(proves(problem.exact_signs()) or (cell.to > 0 and proves(later)), "ZoneIsProvedAtInstant")
     elif cell.pivot is not None:

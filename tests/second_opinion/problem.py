@@ -69,6 +69,11 @@ class Problem:
             raise Malformed("a position in the list of functions", str(position))
         return self.functions[position]
 
+    def sum_at(self, position):
+        if position >= len(self.certificate.sums):
+            raise Malformed("a position in the list of sums", str(position))
+        return self.certificate.sums[position]
+
     def open_signs(self):
         """All three signs for each function."""
         return [ALL for _ in self.functions]
