@@ -1,6 +1,6 @@
 """Signs on one closed stretch of time (cover.md, entry.md)."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Refuted, decide, ensure
 from exponential import Exponentials
 from signs import exact_sign, sign_of
 from trace import Stretch

@@ -3,7 +3,7 @@
 from typing import Any, NamedTuple
 
 from answer import Malformed
-from reading import count, dyadic, each, fields, integer, positive, power, rational, root_name, signed, text, variant
+from reading import count, dyadic, each, fields, integer, positive, power, rational, root_name, signed, variant
 from statement import read_monic, read_statement
 
 import limits

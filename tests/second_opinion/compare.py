@@ -4,6 +4,7 @@ Every case of the corpus (a line, then a certificate, which carries its statemen
 given as a certificate for its own statement or for the one it was made from. Prints each difference on accept / not accept;
 differences among the other answers are counted, and so are certificates that keepout-check
 accepts only with more bits or Taylor terms. Exit status 1 if there is a difference. `--save FOLDER` keeps differing mutants.
+`--pairs FOLDER` compares NAME.statement.json with NAME.certificate.json in a folder instead, for all names.
 """
 
 import argparse
@@ -139,6 +140,14 @@ def compare_mutants(comparison, accepted, number, seed):
     comparison.report("mutants")
 
 
+def compare_pairs(comparison, folder):
+    for path in sorted(folder.rglob("*.statement.json")):
+        other = path.with_name(path.name.replace(".statement.json", ".certificate.json"))
+        if other.exists():
+            comparison.compare(path.relative_to(folder), path.read_bytes(), other.read_bytes())
+    comparison.report("pairs")
+
+
 def main():
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("program")
@@ -146,8 +155,13 @@ def main():
     parser.add_argument("--mutants", type=int, default=0)
     parser.add_argument("--seed", type=int, default=1)
     parser.add_argument("--save", type=Path)
+    parser.add_argument("--pairs", type=Path)
     given = parser.parse_args()
     with tempfile.TemporaryDirectory() as folder:
+        if given.pairs:
+            pairs = Comparison(given.program, folder, given.save)
+            compare_pairs(pairs, given.pairs)
+            return 1 if pairs.differences else 0
         corpus = Comparison(given.program, folder, given.save)
         compare_corpus(corpus, given.corpus)
         mutants = Comparison(given.program, folder, given.save and given.save / "mutants")

@@ -1,6 +1,6 @@
 """entry.md: an instant at which the formula is true."""
 
-from answer import Inconclusive, decide, ensure
+from answer import decide, ensure
 from cell import enclosure_on, later_signs, listed_signs, with_sign
 from cover import check_cover
 from signs import exact_sign, sign_of, truth

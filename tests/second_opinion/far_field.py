@@ -1,10 +1,10 @@
 """Leads, angles and signs for all times from t0 on (cone.md)."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Malformed, Refuted, decide, ensure
 from bisection import waves_on
 from exponential_range import range_of_sum
-from flint import arb, fmpq, fmpq_poly
-from signs import exact_sign, sign_of
+from flint import arb, fmpq_poly
+from signs import sign_of
 
 
 class Lead:

@@ -1,6 +1,6 @@
 """region.md: a set from which every start is safe for ever."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Malformed, Refuted, decide, ensure
 from bisection import leaves, waves_on
 from combination import check_rows
 from flint import acb, arb, fmpq
