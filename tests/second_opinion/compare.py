@@ -4,7 +4,8 @@ Every case of the corpus (a line, then a certificate, which carries its statemen
 given as a certificate for its own statement or for the one it was made from. Prints each difference on accept / not accept;
 differences among the other answers are counted, and so are certificates that keepout-check
 accepts only with more bits or Taylor terms. Exit status 1 if there is a difference. `--save FOLDER` keeps differing mutants.
-`--pairs FOLDER` compares NAME.statement.json with NAME.certificate.json in a folder instead, for all names.
+`--pairs FOLDER` compares NAME.statement.json with NAME.certificate.json in a folder instead, for all names,
+and makes mutants of these.
 """
 
 import argparse
@@ -158,16 +159,17 @@ def main():
     parser.add_argument("--pairs", type=Path)
     given = parser.parse_args()
     with tempfile.TemporaryDirectory() as folder:
-        if given.pairs:
-            pairs = Comparison(given.program, folder, given.save)
-            compare_pairs(pairs, given.pairs)
-            return 1 if pairs.differences else 0
-        corpus = Comparison(given.program, folder, given.save)
-        compare_corpus(corpus, given.corpus)
+        plain = Comparison(given.program, folder, given.save)
         mutants = Comparison(given.program, folder, given.save and given.save / "mutants")
+        if given.pairs:
+            compare_pairs(plain, given.pairs)
+            accepted = [(path, path.read_text(encoding="utf-8")) for path in sorted(given.pairs.rglob("*.certificate.json"))]
+        else:
+            compare_corpus(plain, given.corpus)
+            accepted = list(cases(given.corpus / "accept"))
         if given.mutants:
-            compare_mutants(mutants, list(cases(given.corpus / "accept")), given.mutants, given.seed)
-    return 1 if corpus.differences + mutants.differences else 0
+            compare_mutants(mutants, accepted, given.mutants, given.seed)
+    return 1 if plain.differences + mutants.differences else 0
 
 
 if __name__ == "__main__":
