@@ -86,6 +86,7 @@ class Comparison:
         self.kinds[WORDS.get(theirs, f"status {theirs}"), WORDS[ours]] += 1
         if ours == 0 and theirs == 2 and self.accepts_sharper(certificate):
             self.counts["only accepted by keepout-check with more bits or terms"] += 1
+            print(f"PRECISION {name}: keepout-check: {words}", flush=True)
         elif (ours == 0) != (theirs == 0):
             self.differences += 1
             print(f"DIFFERENT {name}\n  keepout-check: {theirs} {words}\n  check.py: {ours} {why}", flush=True)

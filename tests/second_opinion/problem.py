@@ -25,6 +25,9 @@ class Problem:
         self.expanded = [expanded(polynomial, outputs) for polynomial in self.polynomials]
         self.read_traces(flow)
         self.functions += [auxiliary(self.roots, *entry) for entry in certificate.auxiliaries]
+        for function in self.functions:
+            if function is not None:
+                function.closed_form()
         for target, summands in certificate.identities:
             for of in [target] + [of for powers in summands for of, _ in powers]:
                 self.function_at(of)
