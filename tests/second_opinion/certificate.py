@@ -2,7 +2,7 @@
 
 from typing import Any, NamedTuple
 
-from answer import Malformed
+from answer import Malformed, NotCovered
 from reading import count, dyadic, each, fields, integer, positive, power, rational, root_name, signed, variant
 from statement import read_monic, read_statement
 
@@ -77,7 +77,9 @@ def read_certificate(value):
     limits.at_most(bits, limits.BITS, "bits")
     families = each(families, read_family, limits.ROOTS, "roots")
     limits.at_most(sum(len(centres) for _, centres in families), limits.ROOTS, "roots")
-    kind, evidence = variant(evidence, tuple(EVIDENCE))
+    kind, evidence = variant(evidence, (*EVIDENCE, *NOT_COVERED))
+    if kind in NOT_COVERED:
+        raise NotCovered(kind)
     return Certificate(
         read_statement(statement),
         bits,
@@ -256,3 +258,4 @@ EVIDENCE = {
     "inseparable": read_inseparable,
     "region": read_region_evidence,
 }
+NOT_COVERED = ("many", "witness")
