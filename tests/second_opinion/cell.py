@@ -1,6 +1,6 @@
 """Signs on one closed stretch of time (cover.md, entry.md)."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Refuted, decide, ensure
 from exponential import Exponentials
 from signs import exact_sign, sign_of
 from trace import Stretch
@@ -28,7 +28,7 @@ def check_sign(problem, position, sign, begin, cell):
 
 def listed_signs(problem, begin, cell):
     """The sets of signs on the cell, before identities."""
-    signs = problem.exact_signs() if cell.to == 0 else problem.open_signs()
+    signs = problem.open_signs()
     for position, sign in cell.signs:
         check_sign(problem, position, sign, begin, cell)
         signs[position] = frozenset(sign)
@@ -47,8 +47,8 @@ def later_signs(problem, signs, begin, cell):
         ensure(all(series[k] == 0 for k in range(power)), "VanishesAtStart")
         if function.is_zero:
             ensure(sign == "0", "SignOnCell")
-        elif cell.to != 0:
-            stretch = Stretch(function, 0, cell.to, max(cell.order, power + 1))
+        else:
+            stretch = Stretch(function, 0, cell.to, cell.order)
             found = sign_of(stretch.enclosure(power))
             ensure(found in (None, sign), "SignOnCell")
             decide(found == sign, "SignOnCell", f"function {position} at the start")

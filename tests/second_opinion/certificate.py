@@ -2,8 +2,8 @@
 
 from typing import Any, NamedTuple
 
-from answer import Malformed
-from reading import count, dyadic, each, fields, integer, positive, power, rational, root_name, signed, text, variant
+from answer import Malformed, NotCovered
+from reading import count, dyadic, each, fields, integer, positive, power, rational, root_name, signed, variant
 from statement import read_monic, read_statement
 
 import limits
@@ -21,7 +21,7 @@ class Cell(NamedTuple):
     to: Any
     order: int
     signs: tuple
-    start: tuple
+    start: Any
     pivot: Any
 
 
@@ -47,7 +47,7 @@ class Leaf(NamedTuple):
 class Combination(NamedTuple):
     """The real or imaginary part of a root as a row of base ones, and why."""
 
-    root: tuple
+    root: int
     row: tuple
     line: Any
     sum: Any
@@ -77,7 +77,9 @@ def read_certificate(value):
     limits.at_most(bits, limits.BITS, "bits")
     families = each(families, read_family, limits.ROOTS, "roots")
     limits.at_most(sum(len(centres) for _, centres in families), limits.ROOTS, "roots")
-    kind, evidence = variant(evidence, tuple(EVIDENCE))
+    kind, evidence = variant(evidence, (*EVIDENCE, *NOT_COVERED))
+    if kind in NOT_COVERED:
+        raise NotCovered(kind)
     return Certificate(
         read_statement(statement),
         bits,
@@ -150,8 +152,8 @@ def read_cell(value):
     to, order, signs, start, pivot = fields(value, ("to", "order", "signs"), ("start", "pivot"))
     order = positive(order)
     limits.at_most(order, limits.ORDER, "order")
-    start = () if start is None else each(start, read_start)
-    if start and pivot is not None:
+    start = optional(start, lambda v: each(v, read_start))
+    if start is not None and pivot is not None:
         raise Malformed("start or pivot, not both")
     return Cell(rational(to), order, each(signs, signed), start, optional(pivot, count))
 
@@ -172,7 +174,7 @@ def read_far(value):
 
     def angle(entry):
         root, turns, reason = fields(entry, ("root", "turns"), ("sum",))
-        return Combination(root_name(root), each(turns, multiplier), None, optional(reason, count))
+        return Combination(count(root), each(turns, multiplier), None, optional(reason, count))
 
     def lead(entry):
         function, roots, line, doubled = fields(entry, ("function", "roots"), ("line", "doubled"))
@@ -236,11 +238,11 @@ def read_region_evidence(value):
         root, row, line, reason = fields(entry, ("root", "row"), ("line", "sum"))
         if line is not None and reason is not None:
             raise Malformed("line or sum, not both")
-        return Combination(root_name(root), each(row, rational), optional(line, rational), optional(reason, count))
+        return Combination(count(root), each(row, rational), optional(line, rational), optional(reason, count))
 
     def angle(entry):
         root, row, reason = fields(entry, ("root", "row"), ("sum",))
-        return Combination(root_name(root), each(row, rational), None, optional(reason, count))
+        return Combination(count(root), each(row, rational), None, optional(reason, count))
 
     def lead(entry):
         function, row, exponent = fields(entry, ("function", "growth", "power"))
@@ -256,3 +258,4 @@ EVIDENCE = {
     "inseparable": read_inseparable,
     "region": read_region_evidence,
 }
+NOT_COVERED = ("many", "witness")

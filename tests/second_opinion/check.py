@@ -6,7 +6,7 @@ Exit status: 0 verified, 1 refuted, 2 inconclusive or a limit, 3 malformed or fo
 import sys
 from pathlib import Path
 
-from answer import Answer, Malformed, NotCovered, Refuted
+from answer import Answer, Malformed, Refuted
 from certificate import read_certificate
 from cone import check_eventually, check_never
 from entry import check_entry

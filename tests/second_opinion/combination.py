@@ -36,26 +36,26 @@ def growth_row(problem, region, rates, entry):
         known = dict(region.growths)
         ensure(row == by_sum(problem, known, entry, lambda name: 1), "RateIsCombination")
     else:
-        places = [1 + j for j, name in enumerate(rates) if name[0] == entry.root[0]]
-        ensure(any(row == unit(place, len(row)) for place in places), "RateIsCombination", "no base rate")
+        places = [1 + j for j, name in enumerate(rates) if name[0] == entry.root]
+        ensure(places and row == unit(places[0], len(row)), "RateIsCombination", "no base rate")
     return row
 
 
 def angle_row(problem, region, base, entry):
-    """The row of the upper root: that of the listed one, up to conjugation."""
-    row = [-n for n in entry.row] if entry.root[1] else list(entry.row)
+    """The row of the listed (upper) root."""
+    row = list(entry.row)
 
     def direction(name):
         return 0 if problem.roots.named(name).real else -1 if name[1] else 1
 
-    if entry.sum is not None:
+    if entry.sum is not None and problem.roots.named(entry.root).real:
+        problem.sum_at(entry.sum)
+        ensure(not any(row), "AngleIsCombination", "a real root")
+    elif entry.sum is not None:
         ensure(row == by_sum(problem, dict(region.turns), entry, direction), "AngleIsCombination")
     else:
-        units = []
-        for j, name in enumerate(base):
-            if name[0] == entry.root[0] and not problem.roots.named(name).real:
-                units.append([-n for n in unit(j, len(row))] if name[1] else unit(j, len(row)))
-        ensure(row in units, "AngleIsCombination", "no base frequency")
+        places = [j for j, name in enumerate(base) if name[0] == entry.root]
+        ensure(len(places) == 1 and row == unit(places[0], len(row)), "AngleIsCombination", "no base frequency")
     return row
 
 
@@ -65,13 +65,11 @@ def unit(place, length):
 
 def by_sum(problem, known, entry, direction):
     """The row that the sum of the parts minus the root, being 0, gives to the entry's root."""
-    if entry.sum >= len(problem.certificate.sums):
-        raise Malformed("a position in the list of sums", str(entry.sum))
-    claim = problem.certificate.sums[entry.sum]
+    claim = problem.sum_at(entry.sum)
     own, total = 0, [fmpq(0)] * len(entry.row)
     for times, name in (*claim.parts, (-1, claim.root)):
         times *= direction(name)
-        if name[0] == entry.root[0]:
+        if name[0] == entry.root:
             own += times
         elif times:
             ensure(name[0] in known, "RateIsCombination", "a root that does not stand before")

@@ -3,7 +3,9 @@
 Every case of the corpus (a line, then a certificate, which carries its statement) and N mutants of accepted ones. A mutant is
 given as a certificate for its own statement or for the one it was made from. Prints each difference on accept / not accept;
 differences among the other answers are counted, and so are certificates that keepout-check
-accepts only with more bits or Taylor terms. Exit status 1 if there is a difference. `--save FOLDER` keeps differing mutants.
+accepts only with more bits, more Taylor terms and better centres. Exit status 1 if there is a difference. `--save FOLDER` keeps differing mutants.
+`--pairs FOLDER` compares NAME.statement.json with NAME.certificate.json in a folder instead, for all names,
+and makes mutants of these.
 """
 
 import argparse
@@ -16,9 +18,12 @@ import tempfile
 from collections import Counter
 from pathlib import Path
 
+import flint
 from answer import Answer
+from certificate import read_family
 from check import check
 from mutation import mutant
+from roots import Roots
 
 WORDS = {0: "verified", 1: "refuted", 2: "inconclusive", 3: "malformed", 4: "not covered"}
 SECONDS = 120
@@ -83,16 +88,21 @@ class Comparison:
         self.counts["compared"] += 1
         self.kinds[WORDS.get(theirs, f"status {theirs}"), WORDS[ours]] += 1
         if ours == 0 and theirs == 2 and self.accepts_sharper(certificate):
-            self.counts["only accepted by keepout-check with more bits or terms"] += 1
+            self.counts["only accepted by keepout-check with more bits, terms, better centres"] += 1
+            print(f"PRECISION {name}: keepout-check: {words}", flush=True)
         elif (ours == 0) != (theirs == 0):
             self.differences += 1
             print(f"DIFFERENT {name}\n  keepout-check: {theirs} {words}\n  check.py: {ours} {why}", flush=True)
             self.keep(statement, certificate)
 
     def accepts_sharper(self, certificate):
-        """Whether keepout-check accepts, if the certificate names more bits and Taylor terms: the difference is one of precision."""
+        """Whether keepout-check accepts, if the certificate names more bits, more Taylor terms and better centres: the difference is one of precision."""
         value = json.loads(certificate)
         value["bits"] = str(int(value["bits"]) + 64)
+        with flint.ctx.workprec(int(value["bits"]) + 20):
+            roots = iter(Roots(tuple(map(read_family, value["families"])), int(value["bits"])).all)
+            for family in value["families"]:
+                family["centres"] = [centre(next(roots)) for _ in family["centres"]]
         evidence = next(iter(value["evidence"].values()))
         cells = evidence.get("cells", []) + evidence.get("before", []) + [evidence.get("cell", {"order": "1"})]
         for cell in cells:
@@ -112,6 +122,11 @@ class Comparison:
             print(f"  keepout-check {theirs}, check.py {ours}: {n}")
 
 
+def centre(root):
+    """The middle of a root's box, as a centre of a certificate."""
+    return {part: "{}p{}".format(*value.mid().man_exp()) for part, value in (("re", root.box.real), ("im", root.box.imag))}
+
+
 def own_statement(certificate):
     return json.dumps(json.loads(certificate)["statement"]).encode()
 
@@ -127,6 +142,7 @@ def compare_corpus(comparison, corpus):
 
 
 def compare_mutants(comparison, accepted, number, seed):
+    accepted = [(path, text) for path, text in accepted if second(own_statement(text), text.encode())[0] == 0]
     for i in range(number):
         rng = random.Random(f"{seed}/{i}")
         path, text = rng.choice(accepted)
@@ -139,6 +155,14 @@ def compare_mutants(comparison, accepted, number, seed):
     comparison.report("mutants")
 
 
+def compare_pairs(comparison, folder):
+    for path in sorted(folder.rglob("*.statement.json")):
+        other = path.with_name(path.name.replace(".statement.json", ".certificate.json"))
+        if other.exists():
+            comparison.compare(path.relative_to(folder), path.read_bytes(), other.read_bytes())
+    comparison.report("pairs")
+
+
 def main():
     parser = argparse.ArgumentParser(description=__doc__)
     parser.add_argument("program")
@@ -146,14 +170,20 @@ def main():
     parser.add_argument("--mutants", type=int, default=0)
     parser.add_argument("--seed", type=int, default=1)
     parser.add_argument("--save", type=Path)
+    parser.add_argument("--pairs", type=Path)
     given = parser.parse_args()
     with tempfile.TemporaryDirectory() as folder:
-        corpus = Comparison(given.program, folder, given.save)
-        compare_corpus(corpus, given.corpus)
+        plain = Comparison(given.program, folder, given.save)
         mutants = Comparison(given.program, folder, given.save and given.save / "mutants")
+        if given.pairs:
+            compare_pairs(plain, given.pairs)
+            accepted = [(path, path.read_text(encoding="utf-8")) for path in sorted(given.pairs.rglob("*.certificate.json"))]
+        else:
+            compare_corpus(plain, given.corpus)
+            accepted = list(cases(given.corpus / "accept"))
         if given.mutants:
-            compare_mutants(mutants, list(cases(given.corpus / "accept")), given.mutants, given.seed)
-    return 1 if corpus.differences + mutants.differences else 0
+            compare_mutants(mutants, accepted, given.mutants, given.seed)
+    return 1 if plain.differences + mutants.differences else 0
 
 
 if __name__ == "__main__":

@@ -18,7 +18,7 @@ def check_cover(problem, cells, begin, end):
 def check_cell(problem, begin, cell):
     signs = listed_signs(problem, begin, cell)
     cases = [signs]
-    if cell.start:
+    if cell.start is not None:
         cases = [problem.exact_signs(), later_signs(problem, signs, begin, cell)]
     elif cell.pivot is not None:
         cases = [with_sign(problem, signs, cell.pivot, sign) for sign in "-0+"]

@@ -1,6 +1,6 @@
 """entry.md: an instant at which the formula is true."""
 
-from answer import Inconclusive, decide, ensure
+from answer import decide, ensure
 from cell import enclosure_on, later_signs, listed_signs, with_sign
 from cover import check_cover
 from signs import exact_sign, sign_of, truth
@@ -26,7 +26,7 @@ def check_instant(problem, start, cell):
         return truth(problem.formula, problem.narrowed(signs)) is True
 
     signs = listed_signs(problem, start, cell)
-    if cell.start:
+    if cell.start is not None:
         later = later_signs(problem, signs, start, cell)
         ensure(proves(problem.exact_signs()) or (cell.to > 0 and proves(later)), "ZoneIsProvedAtInstant")
     elif cell.pivot is not None:

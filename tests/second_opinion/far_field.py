@@ -1,10 +1,10 @@
 """Leads, angles and signs for all times from t0 on (cone.md)."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Malformed, Refuted, decide, ensure
 from bisection import waves_on
 from exponential_range import range_of_sum
-from flint import arb, fmpq, fmpq_poly
-from signs import exact_sign, sign_of
+from flint import arb, fmpq_poly
+from signs import sign_of
 
 
 class Lead:
@@ -27,35 +27,25 @@ class FarField:
             self.add_angle(angle)
         self.leads = {}
         for lead in far.leads:
-            found = self.lead(lead)
-            self.leads.setdefault(lead.function, found)
+            self.leads[lead.function] = self.lead(lead)
 
     def add_angle(self, angle):
-        position, conjugate = angle.root
-        self.roots.named(position)
+        position = self.roots.named(angle.root).position
         if len(angle.row) != len(self.base):
             raise Malformed("one turn for each base root")
         if angle.sum is None:
             places = [i for i, root in enumerate(self.base) if root.position == position]
-            units = [[int(i == place) for i in range(len(self.base))] for place in places]
-            turns = [-n for n in angle.row] if conjugate else list(angle.row)
-            ensure(turns in units, "AngleIsCombination")
+            ensure(len(places) == 1, "AngleIsCombination", "not one of the base roots")
+            turns = [int(i == places[0]) for i in range(len(self.base))]
         else:
-            claim = self.problem.certificate.sums[self.sum_at(angle.sum)]
+            claim = self.problem.sum_at(angle.sum)
             ensure(claim.root[0] == position, "AngleIsCombination", "another root")
             turns = [0] * len(self.base)
             for times, of in claim.parts:
                 turns = [a + times * b for a, b in zip(turns, self.turns_of(of))]
-            if claim.root[1] != conjugate:
-                turns = [-n for n in turns]
-            ensure(turns == list(angle.row), "AngleIsCombination")
-            turns = [-n for n in turns] if conjugate else turns
+            turns = [-n for n in turns] if claim.root[1] else turns
+        ensure(turns == list(angle.row), "AngleIsCombination")
         self.angles[position] = turns
-
-    def sum_at(self, position):
-        if position >= len(self.problem.certificate.sums):
-            raise Malformed("a position in the list of sums", str(position))
-        return position
 
     def turns_of(self, name):
         """The integer vector of a root's angle."""
@@ -106,7 +96,7 @@ class FarField:
             ensure(len(lead.doubled) == len(lead.roots), "RealPartsAreEqual", "a sum for each root")
             names = []
             for position, place in zip(lead.roots, lead.doubled):
-                claim = self.problem.certificate.sums[self.sum_at(place)]
+                claim = self.problem.sum_at(place)
                 names.append(claim.root)
                 self.check_doubled(position, claim)
             ensure(all(self.roots.same(name, names[0]) for name in names), "RealPartsAreEqual", "another double")

@@ -2,7 +2,7 @@
 
 from math import isqrt, lcm
 
-from answer import Malformed, Refuted, decide, ensure
+from answer import Malformed, decide, ensure
 from far_field import FarField
 from flint import arb, fmpq, fmpq_poly
 from signs import truth

@@ -1,16 +1,26 @@
 """Random changes of a certificate: of its structure and of its numbers."""
 
+import copy
 import re
 from fractions import Fraction
+
+LABELS = ("format", "title", "name", "unit", "ref")
 
 
 def mutant(value, rng):
     """A changed copy of a JSON value, and what was changed."""
     words = []
-    for _ in range(1 if rng.random() < 0.8 else 2):
-        place, key = rng.choice(places(value, rng))
-        words.append(change(place, key, rng))
-    return value, "; ".join(words)
+    changed = copy.deepcopy(value)
+    while changed == value or (len(words) < 2 and rng.random() < 0.2):
+        words.append(change(*chosen(changed, rng), rng))
+    return changed, "; ".join(words)
+
+
+def chosen(value, rng):
+    """A container and a key, mostly those of a text other than a label."""
+    found = places(value, rng)
+    texts = [(place, key) for place, key in found if isinstance(place[key], str) and key not in LABELS]
+    return rng.choice(texts if texts and rng.random() < 0.7 else found)
 
 
 def places(value, rng):

@@ -25,6 +25,9 @@ class Problem:
         self.expanded = [expanded(polynomial, outputs) for polynomial in self.polynomials]
         self.read_traces(flow)
         self.functions += [auxiliary(self.roots, *entry) for entry in certificate.auxiliaries]
+        for function in self.functions:
+            if function is not None:
+                function.closed_form()
         for target, summands in certificate.identities:
             for of in [target] + [of for powers in summands for of, _ in powers]:
                 self.function_at(of)
@@ -68,6 +71,11 @@ class Problem:
         if position >= len(self.functions):
             raise Malformed("a position in the list of functions", str(position))
         return self.functions[position]
+
+    def sum_at(self, position):
+        if position >= len(self.certificate.sums):
+            raise Malformed("a position in the list of sums", str(position))
+        return self.certificate.sums[position]
 
     def open_signs(self):
         """All three signs for each function."""

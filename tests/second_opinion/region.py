@@ -1,6 +1,6 @@
 """region.md: a set from which every start is safe for ever."""
 
-from answer import Inconclusive, Malformed, Refuted, decide, ensure
+from answer import Malformed, Refuted, decide, ensure
 from bisection import leaves, waves_on
 from combination import check_rows
 from flint import acb, arb, fmpq
@@ -67,7 +67,7 @@ class Region:
         """All exponents of all states are listed, none twice; one that may be 0 stands still."""
         self.exponents = {}
         for place, growth, turns in self.claim.exponents:
-            position, conjugate = self.names[place]
+            position, _ = self.names[place]
             ensure(position not in self.exponents, "ExponentsAreListed", "an exponent twice")
             root = self.roots.named(position)
             ensure(position in self.growths, "RateIsCombination", "an exponent without a row")
@@ -75,7 +75,6 @@ class Region:
             if not root.real:
                 ensure(position in self.turns, "AngleIsCombination", "an exponent without a row")
             row = [fmpq(n) for n in turns]
-            row = [-n for n in row] if conjugate and not root.real else row
             ensure((self.turns[position] if not root.real else [0] * len(row)) == row, "AngleIsCombination")
             if root.box.contains(0):
                 ensure(not any(growth) and not any(turns), "ExponentsAreListed", "an exponent that may be 0")
@@ -148,10 +147,10 @@ class Region:
 
     def fields(self, leads):
         """For each polynomial of the zone "0", or the waves of its lead and a bound of the rest (Lemma 4)."""
+        # The last lead of a function counts; those of functions beside the zone's polynomials are of no use.
         chosen = {}
         for position, growth, power in leads:
-            ensure(position < len(self.problem.polynomials), "EvidenceFitsClaim", "the lead of another function")
-            ensure(position not in chosen, "EvidenceFitsClaim", "two leads of a function")
+            self.problem.function_at(position)
             if len(growth) != 1 + len(self.claim.rates):
                 raise Malformed("one growth for y and each rate")
             chosen[position] = (growth, power)

@@ -5,9 +5,10 @@ from typing import Any, NamedTuple
 
 import flint
 from answer import Inconclusive, Malformed, decide, ensure
-from flint import acb, arb, fmpq, fmpq_poly
+from flint import acb, acb_poly, arb, fmpq, fmpq_poly
 
 EXTRA_BITS = 64
+NEWTON_STEPS = 8
 
 
 class Root(NamedTuple):
@@ -45,13 +46,15 @@ class Roots:
             refuse_overlaps([disc for family in found for disc in family])
             self.families, self.all = [], []
             for (polynomial, _), family in zip(families, found):
-                members = tuple(self.listed(disc) for disc in family)
-                self.families.append(Family(fmpq_poly(list(polynomial)), members))
+                polynomial = fmpq_poly(list(polynomial))
+                members = tuple(self.listed(disc, polynomial) for disc in family)
+                self.families.append(Family(polynomial, members))
 
-    def listed(self, disc):
+    def listed(self, disc, polynomial):
         re, im, radius = disc
         real = im == 0
         box = acb(arb(re, radius), arb(0) if real else arb(im, radius))
+        box = refined(box, polynomial)
         self.all.append(Root(len(self.all), len(self.families), box, real))
         return self.all[-1]
 
@@ -125,6 +128,18 @@ def power_sums(polynomial, size):
     for k in range(1, size + 1):
         sums.append(-sum((e[j] * sums[k - j] for j in range(1, min(k - 1, d) + 1)), fmpq(0)) - k * e[k])
     return sums
+
+
+def refined(box, polynomial):
+    """The box of a root cut by Newton steps: the root is in m - q(m) / q'(box), by the mean value along the segment from m."""
+    q, slope = acb_poly(polynomial), acb_poly(polynomial.derivative())
+    for _ in range(NEWTON_STEPS):
+        if slope(box).contains(0):
+            return box
+        middle = acb(box.real.mid(), box.imag.mid())
+        step = middle - q(middle) / slope(box)
+        box = acb(box.real.intersection(step.real), box.imag.intersection(step.imag))
+    return box
 
 
 def discs(polynomial, centres):

@@ -126,6 +126,8 @@ def label(value):
 
 def read_state(value):
     name, start, unit = fields(value, ("name", "start"), ("unit",))
+    if isinstance(start, dict):
+        raise NotCovered("a range of starts")
     return (read_name(name), rational(start)), label(unit)
 
 
@@ -181,7 +183,9 @@ def read_phase(value, names):
     (rates,) = fields(value, ("rates",))
 
     def rate(entry):
-        of, terms, offset = fields(entry, ("of", "terms", "offset"))
+        of, terms, offset, uncertain = fields(entry, ("of", "terms", "offset"), ("uncertain",))
+        if uncertain is not None:
+            raise NotCovered("uncertain terms")
         return text(of), read_affine(terms, offset, names.affine())
 
     rates = each(rates, rate)
@@ -245,11 +249,14 @@ def read_claim(value, inside, until):
     if kind == "enters":
         begin, end, first = fields(held, ("from", "to", "first"))
         begin, end = rational(begin), rational(end)
-        if begin > end:
-            raise Malformed("from <= to")
+        if not 0 <= begin <= end:
+            raise Malformed("0 <= from <= to")
         return kind, begin, end, truth(first)
     if kind == "eventually":
-        return kind, rational(*fields(held, ("from",)))
+        begin = rational(*fields(held, ("from",)))
+        if begin < 0:
+            raise Malformed("from >= 0")
+        return kind, begin
     if kind == "inseparable":
         fields(held, ())
         return (kind,)
