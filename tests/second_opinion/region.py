@@ -49,6 +49,7 @@ class Region:
             family = self.roots.families[self.roots.named(name).family]
             ensure([family.polynomial[k] for k in range(family.degree + 1)] == list(polynomial), "RootIsNamed")
             own = self.roots.value(name)
+            ensure(self.roots.named(name).real == (im == (0, 0)), "RootIsNamed", "a segment of the real axis for a real root")
             decide(lies_in(own.real, re) and lies_in(own.imag, im), "RootIsNamed", "not in the rectangle")
             for root in family.roots:
                 for conjugate in (False,) if root.real else (False, True):
