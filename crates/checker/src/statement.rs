@@ -181,7 +181,7 @@ pub struct Exponential {
 pub struct Phase {
     /// The time derivative of each state, but for the uncertain terms.
     pub rates: Vec<Affine>,
-    /// Further terms of the rates.
+    /// Further terms of the rates, in the order of the states: the text of a statement has them state by state.
     pub uncertain: Vec<UncertainTerm>,
 }
 

@@ -4,7 +4,7 @@ use super::progress::Progress;
 use super::{CLEAR, ENTERED, UNSETTLED, WRONG, complain, invariant, loaded, print, worst_case};
 use crate::diagnostic::nearest;
 use crate::model::{Model, Need};
-use crate::number::{decimal, for_people, to_decimal};
+use crate::number::{Rounding, for_people, rounded, to_decimal};
 use keepout_checker::many::Witness;
 use keepout_checker::statement::{Claim, Formula, Rational, Statement, Variable};
 use keepout_synthesis::{Margin, Options, Outcome, Place, Proof, Reason, certify, certify_eventually};
@@ -240,7 +240,9 @@ impl Settled {
                 Claim::Never { .. } | Claim::Eventually { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Eventually { proof }) => match &proof.statement().claim {
-                Claim::Eventually { from } => format!("for good from t = {} on, at the latest", rounded_up(from)),
+                Claim::Eventually { from } => {
+                    format!("for good from t = {} on, at the latest", rounded(from, 7, Rounding::Up))
+                }
                 Claim::Never { .. } | Claim::Enters { .. } | Claim::Inseparable | Claim::Region(_) => String::new(),
             },
             Ok(Outcome::Inseparable { .. }) => INSEPARABLE.into(),
@@ -272,16 +274,6 @@ impl Settled {
 const INSEPARABLE: &str = "phases that the oscillations come arbitrarily close to lead into the zone at \
     every late time: no invariant of the class can keep the trajectory clear of it. This does not say that the zone is \
     entered, nor that it is not; a zone moved away by any margin can be settled";
-
-/// A decimal of seven digits, not below the number, which is not negative.
-fn rounded_up(x: &Rational) -> String {
-    let cut = to_decimal(x, 7);
-    if decimal(&cut).is_ok_and(|cut| cut == *x) {
-        cut
-    } else {
-        to_decimal(&(x * Rational::new(10_000_002.into(), 10_000_000.into())), 7)
-    }
-}
 
 pub(super) fn bracket(from: &Rational, to: &Rational) -> String {
     if from == to {

@@ -5,10 +5,13 @@ use super::{CLEAR, UNSETTLED, WRONG, complain, loaded, print};
 use crate::diagnostic::Diagnostics;
 use crate::model::{Model, Need};
 use crate::number::{Rounding, rounded, rounded_float};
-use keepout_checker::statement::{Atom, Claim, Expression, Formula, Rational, Relation, Statement, Zone};
+use keepout_checker::statement::{
+    Atom, Claim, Expression, Formula, Rational, Relation, Statement, Term, Variable, Zone,
+};
 use keepout_synthesis::{Options, Peak, Proof, peak};
 use num_traits::{Signed, Zero};
 use serde_json::{Map, Value, json};
+use std::collections::BTreeMap;
 use std::fmt::Write as _;
 use std::panic::AssertUnwindSafe;
 use std::path::{Path, PathBuf};
@@ -139,6 +142,14 @@ impl Kind {
 }
 
 impl Side {
+    fn of(self, found: &Peak) -> Option<(&Rational, &Proof)> {
+        let bound = match self {
+            Self::Upper => &found.upper,
+            Self::Lower => &found.lower,
+        };
+        bound.as_ref().map(|(value, proof)| (value, proof.as_ref()))
+    }
+
     fn key(self) -> &'static str {
         match self {
             Self::Upper => "upper",
@@ -168,9 +179,61 @@ fn find(statement: &Statement, kind: Kind, options: &Options) -> Peak {
     let search = || peak(statement, kind == Kind::Maximum, options);
     let nothing = |reason: String| Peak { upper: None, lower: None, reason: Some(reason) };
     match std::panic::catch_unwind(AssertUnwindSafe(search)) {
-        Ok(found) => found.unwrap_or_else(|e| nothing(e.to_string())),
+        Ok(found) => found.map_or_else(|e| nothing(e.to_string()), |found| proved(found, statement, kind)),
         Err(_) => nothing("a defect of this program stopped the search; please report the model".into()),
     }
+}
+
+/// The bounds without those that their proofs do not say: what is told follows from what was verified, not from the search.
+fn proved(found: Peak, question: &Statement, kind: Kind) -> Peak {
+    let keep = |bound: Option<(Rational, Box<Proof>)>, side| bound.filter(|(v, p)| says(p, v, question, (kind, side)));
+    let told = SIDES.map(|side| side.of(&found).is_some());
+    let Peak { upper, lower, reason } = found;
+    let (upper, lower) = (keep(upper, Side::Upper), keep(lower, Side::Lower));
+    let is_kept = [upper.is_some(), lower.is_some()] == told;
+    let defect = "a defect of this program: a proof is not about the bound that was found; please report the model";
+    Peak { upper, lower, reason: if is_kept { reason } else { Some(defect.into()) } }
+}
+
+/// Whether a proof is about the question's expression p, system and window, and implies the bound: of a maximum `p <= value` always,
+/// or `p >= value` at some instant; of a minimum the same with the signs turned.
+fn says(proof: &Proof, value: &Rational, question: &Statement, (kind, side): (Kind, Side)) -> bool {
+    let said = proof.statement();
+    let zone = Zone { inside: question.zone.inside.clone(), ..said.zone.clone() };
+    let same_system = Statement { zone, claim: question.claim.clone(), ..said.clone() } == *question;
+    let (Formula::Atom(said_atom), Formula::Atom(atom)) = (&said.zone.inside, &question.zone.inside) else {
+        return false;
+    };
+    let ((said_terms, said_constant), (terms, constant)) = (parts(&said_atom.polynomial), parts(&atom.polynomial));
+    if !same_system || said_terms != terms {
+        return false;
+    }
+    // The zone is `p > level` or `p >= level`, of a minimum `p < level` or `p <= level`.
+    let level = constant - said_constant;
+    let upward = match said_atom.relation {
+        Relation::Positive | Relation::NonNegative => true,
+        Relation::Negative | Relation::NonPositive => false,
+        Relation::Zero | Relation::NonZero => return false,
+    };
+    let is_enough = if side == Side::Upper { *value >= level } else { *value <= level };
+    let is_claimed = match &said.claim {
+        // Not in the zone: so p is at most, of a minimum at least, the level. A margin says more.
+        Claim::Never { .. } => side == kind.outer(),
+        Claim::Enters { .. } => side == kind.inner(),
+        Claim::Eventually { .. } | Claim::Inseparable | Claim::Region(_) => false,
+    };
+    is_enough && is_claimed && upward == (kind == Kind::Maximum)
+}
+
+/// Coefficients of products of powers.
+type Coefficients<'a> = BTreeMap<&'a [(Variable, u32)], &'a Rational>;
+
+/// The terms of a polynomial that are not constant, and its constant.
+fn parts(polynomial: &Expression) -> (Coefficients<'_>, Rational) {
+    let is_constant = |term: &&Term| term.powers.is_empty();
+    let varying = polynomial.terms.iter().filter(|t| !is_constant(t));
+    let constant = polynomial.terms.iter().find(is_constant).map_or_else(Rational::zero, |t| t.coefficient.clone());
+    (varying.map(|t| (t.powers.as_slice(), &t.coefficient)).collect(), constant)
 }
 
 /// An extreme and its bounds.
@@ -181,11 +244,7 @@ struct Extreme {
 
 impl Extreme {
     fn bound(&self, side: Side) -> Option<(&Rational, &Proof)> {
-        let bound = match side {
-            Side::Upper => &self.found.upper,
-            Side::Lower => &self.found.lower,
-        };
-        bound.as_ref().map(|(value, proof)| (value, proof.as_ref()))
+        side.of(&self.found)
     }
 
     fn is_bounded(&self) -> bool {
@@ -343,6 +402,58 @@ mod tests {
         let model = model("x > 2");
         let polynomial = model.affine("x", "--of").unwrap_or_else(|d| panic!("{d}"));
         model.about(zone(polynomial, "x", Rational::zero(), None))
+    }
+
+    /// A proof about the zone with this condition, named as that of a question.
+    fn proof_for(condition: &str) -> Box<Proof> {
+        let mut statement = statement();
+        statement.zone.inside = model(condition).zones.remove(0).inside;
+        match certify(&statement, &Options { margin: false, ..Options::default() }) {
+            Ok(Outcome::Clear { proof, .. } | Outcome::Enters { proof }) => proof,
+            other => panic!("{condition}: {other:?}"),
+        }
+    }
+
+    #[test]
+    fn a_bound_is_told_only_if_its_proof_says_it() {
+        use Kind::{Maximum, Minimum};
+        use Side::{Lower, Upper};
+        let third = |p: i64| Rational::new(p.into(), 3.into());
+        let holds = |condition: &str, p: i64, what| says(&proof_for(condition), &third(p), &statement(), what);
+        // x = exp(-t) is never above 4/3, and 2/3 or more at t = 0.
+        assert!(holds("x > 4/3", 4, (Maximum, Upper)) && holds("x >= 4/3", 5, (Maximum, Upper)));
+        assert!(holds("x >= 2/3", 2, (Maximum, Lower)) && holds("x > 2/3", 1, (Maximum, Lower)));
+        assert!(holds("x < -1/3", -1, (Minimum, Lower)) && holds("x <= 2/3", 2, (Minimum, Upper)));
+        // More than what is proved.
+        assert!(!holds("x > 4/3", 3, (Maximum, Upper)) && !holds("x >= 2/3", 3, (Maximum, Lower)));
+        assert!(!holds("x < -1/3", 0, (Minimum, Lower)) && !holds("x <= 2/3", 1, (Minimum, Upper)));
+        // Another claim, another side, another expression.
+        assert!(!holds("x >= 2/3", 2, (Maximum, Upper)) && !holds("x > 4/3", 4, (Maximum, Lower)));
+        assert!(!holds("x > 4/3", 4, (Minimum, Upper)) && !holds("x <= 2/3", 2, (Maximum, Lower)));
+        assert!(!holds("2*x > 8/3", 8, (Maximum, Upper)) && !holds("x = 2", 6, (Maximum, Upper)));
+        assert!(!holds("x > 4/3 and t > 5", 4, (Maximum, Upper)));
+        // Another system, another window.
+        let mut other = statement();
+        other.states[0].start = third(1);
+        assert!(!says(&proof_for("x > 4/3"), &third(4), &other, (Maximum, Upper)));
+        other = statement();
+        other.zone.until = Some(third(1));
+        assert!(!says(&proof_for("x > 4/3"), &third(4), &other, (Maximum, Upper)));
+    }
+
+    #[test]
+    fn a_bound_that_is_not_proved_is_left_out_and_called_a_defect() {
+        let third = |p: i64| Rational::new(p.into(), 3.into());
+        let found = |value: Rational| Peak {
+            upper: Some((value, proof_for("x > 4/3"))),
+            lower: Some((third(2), proof_for("x >= 2/3"))),
+            reason: None,
+        };
+        let right = proved(found(third(4)), &statement(), Kind::Maximum);
+        assert!(right.upper.is_some() && right.lower.is_some() && right.reason.is_none());
+        let wrong = proved(found(third(3)), &statement(), Kind::Maximum);
+        assert!(wrong.upper.is_none() && wrong.lower.is_some());
+        assert!(wrong.reason.is_some_and(|r| r.starts_with("a defect of this program")));
     }
 
     #[test]

@@ -102,6 +102,8 @@ impl<'a> Form<'a> {
         {
             entry.add(None, i, &mut phase.rates[i], &mut phase.uncertain);
         }
+        // A statement's text has them state by state: a certificate speaks of this order.
+        phase.uncertain.sort_by_key(|term| term.state);
         let (states, radii) = self.states(names, refusals);
         Dynamics { states, radii, phase }
     }
