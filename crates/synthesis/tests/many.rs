@@ -270,3 +270,31 @@ fn waves_that_last() {
     s.starts = Starts::Box(vec![q("0.1"), q("0"), q("0.2"), q("0")]);
     peaks(&s, 2.3, 1e-6);
 }
+
+#[test]
+fn conjunctions_over_sets_of_starts() {
+    let list = |rows: &[&[&str]]| rows.iter().map(|r| r.iter().map(|x| q(x)).collect()).collect::<Vec<Vec<Rational>>>();
+    let corner = |a: &str| both(half_space(&["1", "0"], a), half_space(&["0", "1"], a));
+    // A triangle: x and y are both 1/2 at best, in the middle of its side.
+    let triangle = || Starts::Hull(list(&[&["1", "0"], &["0", "1"]]));
+    // A disc: 1 / sqrt(2).
+    let disc = || Starts::Ellipsoid(list(&[&["1", "0"], &["0", "1"]]));
+    // A rhombus: 1/2 again.
+    let rhombus = || Starts::Zonotope(list(&[&["0.5", "0.5"], &["0.5", "-0.5"]]));
+    let cases: [(Starts, &str, &str); 6] = [
+        (triangle(), "-0.501", "clear"),
+        (triangle(), "-0.499", "enters"),
+        (disc(), "-0.7072", "clear"),
+        (disc(), "-0.7071", "enters"),
+        (rhombus(), "-0.501", "clear"),
+        (rhombus(), "-0.499", "enters"),
+    ];
+    for (starts, a, verdict) in cases {
+        let s = two_decays(starts, &["0", "0"], corner(a));
+        assert_eq!(word(&s), verdict, "{a}");
+    }
+    // One of two corners, each out of reach.
+    let other = both(half_space(&["-1", "0"], "-0.501"), half_space(&["0", "-1"], "-0.501"));
+    let s = two_decays(rhombus(), &["0", "0"], Formula::Or(vec![corner("-0.501"), other]));
+    assert_eq!(word(&s), "clear");
+}
