@@ -57,7 +57,8 @@ fn statement(a: &[&[&str]], c: &[&str], columns: &[&[&str]], x0: &[&str], inside
 /// y^(n) + ... + a_0 y = b d with |d| <= 1, at rest at first.
 fn filter(coefficients: &[&str], gain: &str) -> Statement {
     let n = coefficients.len();
-    let negative: Vec<String> = coefficients.iter().map(|c| format!("-{c}")).collect();
+    let negative: Vec<String> =
+        coefficients.iter().map(|c| if *c == "0" { "0".into() } else { format!("-{c}") }).collect();
     let mut rows: Vec<Vec<&str>> = (1..n).map(|i| (0..n).map(|j| if i == j { "1" } else { "0" }).collect()).collect();
     rows.push(negative.iter().map(String::as_str).collect());
     let rows: Vec<&[&str]> = rows.iter().map(Vec::as_slice).collect();
@@ -230,4 +231,70 @@ fn conjunctions_of_position_and_speed() {
         s.zone.inside = both(half_space(&["1", "0"], a), half_space(&["0", "1"], a));
         assert_eq!(word(&s), verdict, "{a}");
     }
+}
+
+#[test]
+fn growth_and_windows() {
+    let grows = |until: Option<&str>| {
+        let mut s = statement(&[&["1"]], &["0"], &[&["1"]], &["0"], half_space(&["1"], "0"));
+        s.zone.until = until.map(q);
+        s
+    };
+    peaks(&grows(Some("1")), 1.0_f64.exp() - 1.0, 1e-6);
+    let endless = peak(&grows(None), true, &Options::default()).unwrap();
+    assert!(endless.upper.is_none() && endless.reason.is_some());
+    for limit in ["-10", "-1000"] {
+        let mut s = grows(None);
+        s.zone.inside = half_space(&["1"], limit);
+        assert_eq!(word(&s), "enters");
+    }
+    // A resonance: at most about 2 t / pi.
+    let mut s = filter(&["1", "0"], "1");
+    s.zone.inside = half_space(&["1", "0"], "-50");
+    assert_eq!(word(&s), "enters");
+    s.zone.until = Some(q("78"));
+    assert_eq!(word(&s), "clear");
+    // Nothing moves.
+    let s = statement(&[&["-1"]], &["0"], &[&["1"]], &["0"], half_space(&["0"], "0"));
+    let found = peak(&s, true, &Options::default()).unwrap();
+    assert!(
+        found.upper.is_some_and(|(x, _)| x <= q("0.000001")) && found.lower.is_some_and(|(x, _)| x >= q("-0.000001"))
+    );
+}
+
+#[test]
+fn waves_that_last() {
+    // x'' = -x, y'' = -2 y from boxes around (1, 0) and (1, 0): the two angles are free.
+    let a: &[&[&str]] = &[&["0", "1", "0", "0"], &["-1", "0", "0", "0"], &["0", "0", "0", "1"], &["0", "0", "-2", "0"]];
+    let mut s = statement(a, &["0"; 4], &[], &["1", "0", "1", "0"], half_space(&["1", "0", "1", "0"], "0"));
+    s.starts = Starts::Box(vec![q("0.1"), q("0"), q("0.2"), q("0")]);
+    peaks(&s, 2.3, 1e-6);
+}
+
+#[test]
+fn conjunctions_over_sets_of_starts() {
+    let list = |rows: &[&[&str]]| rows.iter().map(|r| r.iter().map(|x| q(x)).collect()).collect::<Vec<Vec<Rational>>>();
+    let corner = |a: &str| both(half_space(&["1", "0"], a), half_space(&["0", "1"], a));
+    // A triangle: x and y are both 1/2 at best, in the middle of its side.
+    let triangle = || Starts::Hull(list(&[&["1", "0"], &["0", "1"]]));
+    // A disc: 1 / sqrt(2).
+    let disc = || Starts::Ellipsoid(list(&[&["1", "0"], &["0", "1"]]));
+    // A rhombus: 1/2 again.
+    let rhombus = || Starts::Zonotope(list(&[&["0.5", "0.5"], &["0.5", "-0.5"]]));
+    let cases: [(Starts, &str, &str); 6] = [
+        (triangle(), "-0.501", "clear"),
+        (triangle(), "-0.499", "enters"),
+        (disc(), "-0.7072", "clear"),
+        (disc(), "-0.7071", "enters"),
+        (rhombus(), "-0.501", "clear"),
+        (rhombus(), "-0.499", "enters"),
+    ];
+    for (starts, a, verdict) in cases {
+        let s = two_decays(starts, &["0", "0"], corner(a));
+        assert_eq!(word(&s), verdict, "{a}");
+    }
+    // One of two corners, each out of reach.
+    let other = both(half_space(&["-1", "0"], "-0.501"), half_space(&["0", "-1"], "-0.501"));
+    let s = two_decays(rhombus(), &["0", "0"], Formula::Or(vec![corner("-0.501"), other]));
+    assert_eq!(word(&s), "clear");
 }

@@ -553,7 +553,7 @@ pub fn peak(statement: &Statement, upward: bool, options: &Options) -> Result<Pe
     };
     let grows = analysis.scan.limits.iter().any(Option::is_none) && statement.zone.until.is_none();
     let options = Options { margin: false, ..options.clone() };
-    let scale = analysis.scan.scale.max(analysis.nearest.0.abs());
+    let scale = Some(analysis.scan.scale.max(analysis.nearest.0.abs())).filter(|s| *s > 0.0).unwrap_or(1.0);
     let mut centre = analysis.nearest.0;
     if !statement.uncertain.is_empty() {
         centre = refine_uncertain(statement, &about, &options, centre);
